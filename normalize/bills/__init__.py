@@ -1,0 +1,1 @@
+"""What was billed: raw files become usage periods and a ledger of every repair."""

@@ -1,0 +1,1 @@
+"""How use answers to weather: the change-point fit, its uncertainty and its checks."""

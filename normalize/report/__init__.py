@@ -1,0 +1,1 @@
+"""Words and pictures: results become HTML, JSON and plain text.  Nothing is computed here."""
