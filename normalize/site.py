@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
+
+from normalize.sitefile import AccountPlan, Change, Upgrade
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -17,43 +19,6 @@ if TYPE_CHECKING:
     from normalize.units import Factor
     from normalize.weather.temperature import DailyTemperature
     from normalize.weather.year import LongTermYear
-
-
-@dataclass(frozen=True, slots=True)
-class Upgrade:
-    """One upgrade. start, end : day numbers, the work window ``[start, end)`` half-open."""
-
-    name: str
-    start: int
-    end: int
-    cost: float | None = None
-    accounts: tuple[str, ...] = ()  # the accounts it touches; empty means all
-
-
-@dataclass(frozen=True, slots=True)
-class Change:
-    """Something else that changed. since, until : day numbers or None."""
-
-    what: str
-    since: int | None = None
-    until: int | None = None
-
-
-@dataclass(frozen=True, slots=True)
-class AccountPlan:
-    """What site.toml says of one account."""
-
-    name: str
-    fuel: str
-    bills: Path
-    unit: str | None = None
-    price: float | None = None
-    co2_kg_per_unit: float | None = None
-    occupied_since: int | None = None
-    space_heating: bool = True
-    net_metered: bool = False
-    forms: tuple[str, ...] | None = None
-    reader: dict[str, object] = field(default_factory=dict)  # answers to the bill reader's questions
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,0 +1,83 @@
+"""site.toml, the one file a user writes: what it may say, and what it says.
+
+Read here, strictly: an unknown key is an error that names the nearest known one, a path
+stays inside the folder, a date is a date.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+
+@dataclass(frozen=True, slots=True)
+class Upgrade:
+    """One upgrade. start, end : day numbers, the work window ``[start, end)`` half-open."""
+
+    name: str
+    start: int
+    end: int
+    cost: float | None = None
+    accounts: tuple[str, ...] = ()  # the accounts it touches; empty means all
+
+
+@dataclass(frozen=True, slots=True)
+class Change:
+    """Something else that changed. since, until : day numbers or None."""
+
+    what: str
+    since: int | None = None
+    until: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class AccountPlan:
+    """What site.toml says of one account."""
+
+    name: str
+    fuel: str
+    bills: Path
+    unit: str | None = None
+    price: float | None = None
+    co2_kg_per_unit: float | None = None
+    occupied_since: int | None = None
+    space_heating: bool = True
+    net_metered: bool = False
+    forms: tuple[str, ...] | None = None
+    reader: dict[str, object] = field(default_factory=dict)  # answers to the bill reader's questions
+
+
+@dataclass(frozen=True, slots=True)
+class WeatherPlan:
+    """What site.toml says of the weather.
+
+    observed : the station's file; None when the weather comes from the bills.
+    long_term_file : a typical-year or normals file; None for the mean of whole years.
+    long_term_years : how many whole years are averaged when there is no such file.
+    from_bills : use the mean temperatures that the bills themselves carry.
+    reader : answers to the weather reader's questions (unit, columns, dates …).
+    """
+
+    observed: Path | None
+    long_term_file: Path | None = None
+    long_term_years: int = 10
+    from_bills: bool = False
+    reader: dict[str, object] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
+class SiteFile:
+    """site.toml, read and checked. sha256 : of the file's bytes."""
+
+    name: str
+    folder: Path
+    floor_area_ft2: float | None
+    currency: str
+    weather: WeatherPlan
+    accounts: tuple[AccountPlan, ...]
+    upgrades: tuple[Upgrade, ...]
+    changes: tuple[Change, ...]
+    sha256: str
