@@ -1,8 +1,4 @@
-"""site.toml, the one file a user writes: what it may say, and what it says.
-
-Read here, strictly: an unknown key is an error that names the nearest known one, a path
-stays inside the folder, a date is a date.
-"""
+"""What a site folder says, as values.  Days are numbers counted from 1970-01-01."""
 
 from __future__ import annotations
 
@@ -15,7 +11,10 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class Upgrade:
-    """One upgrade. start, end : day numbers, the work window ``[start, end)`` half-open."""
+    """One upgrade. start, end : day numbers, the work window ``[start, end)`` half-open.
+
+    cost : what it cost, in the site's currency.
+    """
 
     name: str
     start: int
@@ -26,7 +25,7 @@ class Upgrade:
 
 @dataclass(frozen=True, slots=True)
 class Change:
-    """Something else that changed. since, until : day numbers or None."""
+    """Something else that changed. since, until : day numbers ``[since, until)`` or None."""
 
     what: str
     since: int | None = None
@@ -35,7 +34,15 @@ class Change:
 
 @dataclass(frozen=True, slots=True)
 class AccountPlan:
-    """What site.toml says of one account."""
+    """What site.toml says of one account.
+
+    fuel, unit : as written; the bill reader makes them canonical.
+    bills : inside the site's folder; need not exist (the bill reader says so).
+    price : of the last unit, in the site's currency.  co2_kg_per_unit : kg of CO₂.
+    occupied_since : day number; bills before it belong to an earlier occupant.
+    forms : the forms to try; None for those that suit the fuel.
+    reader : answers to the bill reader's questions, its keywords.
+    """
 
     name: str
     fuel: str
@@ -47,7 +54,7 @@ class AccountPlan:
     space_heating: bool = True
     net_metered: bool = False
     forms: tuple[str, ...] | None = None
-    reader: dict[str, object] = field(default_factory=dict)  # answers to the bill reader's questions
+    reader: dict[str, object] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,7 +64,8 @@ class WeatherPlan:
     observed : the station's file; None when the weather comes from the bills.
     long_term_file : a typical-year or normals file; None for the mean of whole years.
     long_term_years : how many whole years are averaged when there is no such file.
-    from_bills : use the mean temperatures that the bills themselves carry.
+    from_bills : fit on the mean temperatures that the bills themselves carry; a station's
+        file may still be given, for the long-term year.
     reader : answers to the weather reader's questions (unit, columns, dates …).
     """
 

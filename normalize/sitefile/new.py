@@ -1,0 +1,114 @@
+"""A new site folder: a commented site.toml, and a template for bills as CSV and as XLSX."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+from typing import Final
+
+from normalize.errors import SiteError, UnwritableReport
+
+HEADER: Final = ("start", "end", "usage", "unit", "cost", "estimated")
+
+SITE_TEXT: Final = """\
+# What normalize needs to know about one building. Lines that start with # are notes or
+# examples: take the # away to use one. Days are written 2023-09-11.
+
+[site]
+name = "My house"
+# floor_area_ft2 = 1840            # heated floor area, if you know it
+
+[weather]
+observed = "station.csv"           # daily or hourly temperatures of the nearest good station
+long_term = { years = 10 }         # a normal year is the mean of so many whole years
+# long_term = { file = "typical_year.epw" }    # or a typical-year file
+# unit = "F"                       # only if the file does not say it
+
+# One [[account]] for each fuel. Bills need the day the meter was read (or the first and last
+# day), the use, and if possible the cost. Fill in bills.csv or bills.xlsx, or name the file
+# that your supplier gave you.
+[[account]]
+name = "gas"
+fuel = "natural gas"               # or "electricity", "heating oil", "propane"
+bills = "bills.csv"
+# unit = "therm"                   # only if the file does not say it
+# price = 1.32                     # what one more unit costs, without the fixed charge
+# occupied_since = 2021-06-01      # leave out the bills of whoever lived there before
+# space_heating = false            # for an account that heats only water
+
+# The work: first and last day, or only the month, start = "2023-09".
+[[upgrade]]
+name = "attic insulation"
+start = 2023-09-11
+end = 2023-09-22
+# cost = 4150
+
+# What else changed? It is shown beside the answer, because bills cannot tell causes apart.
+# [[change]]
+# what = "second adult works from home"
+# since = "2024-02"
+"""
+
+README_TEXT: Final = """\
+1. Open site.toml in any text editor and write down the building, the fuels and the work.
+2. Put your bills into bills.csv (or bills.xlsx), one line for each bill, at least nine months
+   before the work and nine after it; twelve or more are better.
+   start, end   first day of the bill, and the day on which the meter was read at its end
+   usage, unit  what was used, and in what: therm, kWh, gallon …
+   cost         what it cost, if you have it
+   estimated    yes when the meter was not read but guessed
+3. Save the temperatures of a weather station near you as station.csv: a column date and a
+   column temperature_f or temperature_c, one line a day, from before the first bill on.
+   Ten whole years or more make a normal year.
+4. Type: normalize savings THIS-FOLDER
+"""
+
+
+def write_new_site(folder: str | Path) -> tuple[Path, ...]:
+    """Write a new site folder; returns its files.
+
+    Raises SiteError if one of the files is there already (nothing is overwritten then), and
+    UnwritableReport if the place cannot be written.
+    """
+    folder = Path(folder)
+    writers: dict[str, Callable[[Path], None]] = {
+        "site.toml": lambda path: _write_text(path, SITE_TEXT),
+        "bills.csv": lambda path: _write_text(path, ",".join(HEADER) + "\r\n"),
+        "bills.xlsx": _write_workbook,
+        "README.txt": lambda path: _write_text(path, README_TEXT),
+    }
+    if folder.exists() and not folder.is_dir():
+        raise SiteError("there is a file of that name", where=str(folder), wanted="a new folder")
+    for name in writers:
+        if (folder / name).exists() or (folder / name).is_symlink():
+            raise SiteError(
+                f"{name} is there already; nothing was written",
+                where=str(folder),
+                next_step="Choose another folder, or remove the file.",
+            )
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        for name, write in writers.items():
+            write(folder / name)
+    except OSError as error:
+        raise UnwritableReport(
+            f"the folder cannot be written ({error.strerror})", where=str(folder)
+        ) from None
+    return tuple(folder / name for name in writers)
+
+
+def _write_text(path: Path, text: str) -> None:
+    with path.open("x", encoding="utf-8", newline="") as file:
+        file.write(text)
+
+
+def _write_workbook(path: Path) -> None:
+    from openpyxl import Workbook
+
+    book = Workbook(write_only=True)
+    sheet = book.create_sheet("bills")
+    for letter in "ABCDEF":
+        sheet.column_dimensions[letter].width = 14
+    sheet.append(list(HEADER))
+    with path.open("xb") as file:
+        book.save(file)
