@@ -14,6 +14,7 @@ from normalize.errors import MissingFile, SiteError, UnknownKey
 from normalize.fitting.forms import FORMS
 from normalize.sitefile.table import Table, line_numbers, nearest, shown
 from normalize.sitefile.values import AccountPlan, Change, SiteFile, Upgrade, WeatherPlan
+from normalize.units import canonical_fuel, canonical_unit
 
 SITE_FILE: Final = "site.toml"
 MAX_BYTES: Final = 1_000_000  # a site file is a page of text; more is something else
@@ -275,13 +276,14 @@ def _must_exist(path: Path, where: str) -> None:
 
 def _account(table: Table, folder: Path) -> AccountPlan:
     table.check_keys((*ACCOUNT_KEYS, *BILL_READER_KEYS))
-    fuel = table.required_text("fuel")
+    fuel = canonical_fuel(table.required_text("fuel"), where=table.where("fuel"))
+    unit = table.text("unit")
     since = table.days("occupied_since")
     return AccountPlan(
         name=table.text("name") or fuel,
         fuel=fuel,
         bills=table.required_path("bills", folder),
-        unit=table.text("unit"),
+        unit=canonical_unit(unit, fuel, where=table.where("unit")) if unit else None,
         price=table.number("price", low=0.0, high=HIGHEST_PRICE, unit="money for one unit"),
         co2_kg_per_unit=table.number("co2_kg_per_unit", low=0.0, high=HIGHEST_CO2, unit="kg"),
         occupied_since=since[0] if since else None,

@@ -36,7 +36,7 @@ class Change:
 class AccountPlan:
     """What site.toml says of one account.
 
-    fuel, unit : as written; the bill reader makes them canonical.
+    fuel, unit : canonical names of ``normalize.units``; unit None where the bills say it.
     bills : inside the site's folder; need not exist (the bill reader says so).
     price : of the last unit, in the site's currency.  co2_kg_per_unit : kg of CO₂.
     occupied_since : day number; bills before it belong to an earlier occupant.
