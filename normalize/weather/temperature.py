@@ -26,6 +26,8 @@ class DailyTemperature:
     source : (file name, SHA-256) pairs.
     notes : what the reader had to do, as sentences.
     by_bill : true when the temperatures are the bills' own means, laid over their days.
+    max_f, min_f : (n_days,) float64, daily maximum and minimum, °F, as given and never
+        filled; None where the file has none.
     """
 
     station: str
@@ -36,6 +38,8 @@ class DailyTemperature:
     source: tuple[tuple[str, str], ...] = ()
     notes: tuple[str, ...] = ()
     by_bill: bool = False
+    max_f: NDArray[np.float64] | None = None
+    min_f: NDArray[np.float64] | None = None
 
     @property
     def n_days(self) -> int:
