@@ -1,0 +1,1 @@
+"""What make_sample_data.py builds an invented place from."""
