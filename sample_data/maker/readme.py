@@ -31,7 +31,8 @@ the same bytes whenever it is run; change it, not the files.  A test runs it and
 - `mill_library/`, a small public library; new windows and controls, 2023-06-05 to 2023-08-18.
   - `gas.xlsx`: a sheet kept by hand: titles, a merged header, numbers stored as text, one row
     twice, one estimate.
-  - `electricity.xlsx`: light, machines and cooling; one bill missing, one estimate.
+  - `electricity.xlsx`: light, machines and cooling; one bill missing, one estimate.  The longer
+    hours that `site.toml` mentions leave no trace in the bills.
 
 The last winter before the works was cold and the first after them mild, so that comparing bills
 without the weather flatters the work.  The stations' files (2012-01-01 to 2026-06-30, daily
