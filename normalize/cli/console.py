@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import codecs
+import re
 import sys
+from collections.abc import Sequence
 from typing import Final
 
 # What a console without Unicode shows instead; anything else becomes "?".
@@ -25,7 +27,7 @@ _PLAIN: Final = {
     "≥": ">=",
     "≈": "~",
     "→": "->",
-    "°": " deg ",
+    "°": "deg ",
     "²": "2",
     "₂": "2",
     "³": "3",
@@ -36,6 +38,8 @@ _PLAIN: Final = {
     "\u202f": " ",
     "\u2009": " ",
 }
+
+_SPACES: Final = frozenset("\n\u00a0\u202f\u2009")
 
 
 def _in_plain_letters(error: UnicodeError) -> tuple[str, int]:
@@ -54,11 +58,44 @@ def forgiving_streams() -> None:
             reconfigure(errors="normalize_plain")
 
 
+def show(text: str) -> None:
+    """A result, on stdout.  (click's own echo sends UTF-8 even to a console without it.)"""
+    sys.stdout.write(harmless(text) + "\n")
+    sys.stdout.flush()
+
+
 def say(message: str) -> None:
     """One line to the person, apart from the results: on stderr."""
-    import click
+    sys.stderr.write(f"normalize: {harmless(message)}\n")
+    sys.stderr.flush()
 
-    click.echo(f"normalize: {message}", err=True)
+
+def harmless(text: str) -> str:
+    """Text from a file as a console may show it: no escape codes, no tricks with direction.
+
+    >>> harmless("a\\x1b[31mb")
+    'a?[31mb'
+    """
+    return "".join(c if c.isprintable() or c in _SPACES else "?" for c in text)
+
+
+def private(text: str, *, known: Sequence[str]) -> str:
+    """A message with long numbers masked, as they may be account numbers.
+
+    known : words that the person has just typed, which may be shown.
+
+    >>> private("a/12345678.csv: line 7 of 987654321", known=["a/12345678.csv"])
+    'a/12345678.csv: line 7 of …4321'
+    """
+    from normalize.report.numbers import mask
+
+    typed = [word for word in known if word and word in text]
+    # Longest first: one word may stand within another.
+    split = "|".join(re.escape(word) for word in sorted(typed, key=len, reverse=True))
+    if not split:
+        return mask(text)
+    parts = re.split(f"({split})", text)
+    return "".join(part if i % 2 else mask(part) for i, part in enumerate(parts))
 
 
 def say_if_preparing() -> None:

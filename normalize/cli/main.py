@@ -14,7 +14,7 @@ from typing import Final
 
 import click
 
-from normalize.cli.console import forgiving_streams, say
+from normalize.cli.console import forgiving_streams, private, say, show
 from normalize.errors import NormalizeError
 
 # Name → what it does, in one line.  Each is normalize/cli/NAME.py with a command `command`.
@@ -44,8 +44,7 @@ class LazyGroup(click.Group):
         if cmd_name not in COMMANDS:
             return None
         module = importlib.import_module(f"normalize.cli.{cmd_name.replace('-', '_')}")
-        command = module.command
-        assert isinstance(command, click.Command)
+        command: click.Command = module.command
         return command
 
     def resolve_command(
@@ -70,7 +69,7 @@ def _show_version(ctx: click.Context, _param: click.Parameter, value: bool) -> N
     if value and not ctx.resilient_parsing:
         from normalize import __version__
 
-        click.echo(f"normalize {__version__}")
+        show(f"normalize {__version__}")
         ctx.exit()
 
 
@@ -107,7 +106,7 @@ def main(args: Sequence[str] | None = None) -> int:
         error.show()
         return WRONG_USAGE
     except NormalizeError as error:
-        say(str(error))
+        say(private(str(error), known=sys.argv[1:] if args is None else args))
         return NEEDS_A_PERSON
     except BrokenPipeError:
         # The reader, such as `head`, has left.  Python would complain once more at exit.

@@ -6,6 +6,7 @@ from pathlib import Path
 
 import click
 
+from normalize.cli.console import show
 from normalize.cli.options import FOLDER
 
 
@@ -23,8 +24,8 @@ def command(folder: Path) -> None:
     from normalize.sitefile import write_new_site
 
     for path in write_new_site(folder):
-        click.echo(f"wrote {path}")
-    click.echo(
+        show(f"wrote {path}")
+    show(
         f"\nNext: fill in {folder / 'site.toml'} and the bills, add the weather of a station near "
         f"by as station.csv,\nthen type: normalize savings {folder}"
     )

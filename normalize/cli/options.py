@@ -3,15 +3,19 @@
 from __future__ import annotations
 
 import os
+import sys
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Final
 
 import click
 
+from normalize.cli.console import say_if_preparing
 from normalize.errors import UnwritableReport
 
 if TYPE_CHECKING:
     from collections.abc import Callable
+
+    from normalize.site import SiteResult
 
 FOLDER: Final = click.Path(path_type=Path)
 FILE: Final = click.Path(path_type=Path)
@@ -29,7 +33,7 @@ def json_option(command: Callable[..., Any]) -> Callable[..., Any]:
     )(command)
 
 
-class Confidence(click.ParamType):
+class Confidence(click.ParamType[float]):
     """A confidence as a fraction (0.9) or in per cent (90%)."""
 
     name = "confidence"
@@ -61,7 +65,7 @@ def write_json(text: str, target: str, *, inputs: tuple[Path, ...] = ()) -> None
     if not text.endswith("\n"):
         text += "\n"
     if target == STDOUT:
-        click.echo(text, nl=False)
+        sys.stdout.write(text)
         return
     path = Path(target)
     if path.exists() and any(i.exists() and path.samefile(i) for i in inputs):
@@ -79,3 +83,17 @@ def write_json(text: str, target: str, *, inputs: tuple[Path, ...] = ()) -> None
     except (OSError, ValueError) as error:
         reason = error.strerror if isinstance(error, OSError) else "no name for a file"
         raise UnwritableReport(f"cannot be written ({reason})", where=target) from None
+
+
+def assess_folder(folder: Path, *, confidence: float) -> SiteResult:
+    """Read and assess a site, with a word when the first run takes longer."""
+    from normalize.site import assess, read_site
+
+    say_if_preparing()
+    return assess(read_site(folder), confidence=confidence)
+
+
+def input_files(result: SiteResult) -> tuple[Path, ...]:
+    """The files that a site was read from."""
+    site = result.site
+    return tuple(site.folder / name for name, _ in site.inputs)

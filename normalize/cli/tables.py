@@ -38,15 +38,6 @@ def paragraph(text: str, *, width: int = 88, indent: str = "") -> str:
     return "\n".join(wrap(text, width, initial_indent=indent, subsequent_indent=indent))
 
 
-def clean(text: str) -> str:
-    """Text from a file as a console may show it: no escape codes, no line breaks.
-
-    >>> clean("a\\x1b[31mb\\nc")
-    'a?[31mb?c'
-    """
-    return "".join(letter if letter.isprintable() else "?" for letter in text)
-
-
 def _width(text: str) -> int:
     wide = sum(unicodedata.east_asian_width(letter) in "WF" for letter in text)
     joined = sum(unicodedata.combining(letter) > 0 for letter in text)

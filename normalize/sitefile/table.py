@@ -160,14 +160,13 @@ class Table:
         if value is None:
             return None
         wanted = f'a date such as {key} = 2023-09-11, or a month such as {key} = "2023-09"'
+        span: tuple[int, int] | None = None
         if isinstance(value, datetime):
             span = _one_day(value.date())
         elif isinstance(value, date):
             span = _one_day(value)
         elif isinstance(value, str):
             span = _span(value.strip())
-        else:
-            span = None
         if span is None:
             raise self.bad(key, shown(value), wanted)
         if span[0] < FIRST_SANE_DAY or span[1] > LAST_SANE_DAY:

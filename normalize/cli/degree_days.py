@@ -1,0 +1,189 @@
+"""``normalize degree-days FILE``: monthly and annual tables at any base."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from normalize.cli.console import show
+from normalize.cli.options import FILE, STDOUT, json_option, write_json
+from normalize.cli.tables import paragraph, table
+
+if TYPE_CHECKING:
+    from normalize.weather.degree_days import Base, DegreeDayRow, DegreeDayTable
+    from normalize.weather.temperature import DailyTemperature
+
+
+@click.command(
+    "degree-days",
+    epilog="Example: normalize degree-days station.csv --base 65F --base 18C --by year",
+    short_help="Degree-days of a weather file, by month or by year, at any base.",
+)
+@click.argument("file", type=FILE)
+@click.option(
+    "--base",
+    "bases",
+    metavar="TEMP",
+    multiple=True,
+    default=("65F",),
+    show_default=True,
+    help="Base temperature with its unit, such as 65F or 18C; may be given several times.",
+)
+@click.option(
+    "--by",
+    type=click.Choice(["month", "year"]),
+    help="One table only; otherwise months and years are both shown.",
+)
+@click.option(
+    "--whole-degrees",
+    is_flag=True,
+    help="Count as the weather service does: maximum and minimum in whole °F, their mean "
+    "rounded half up.",
+)
+@json_option
+@click.option("--unit", type=click.Choice(["F", "C"]), help="Where the file does not say.")
+@click.option("--date-column", metavar="NAME", help="The column of dates.")
+@click.option("--temperature-column", metavar="NAME", help="The column of mean temperatures.")
+@click.option("--max-column", metavar="NAME", help="The column of daily maxima.")
+@click.option("--min-column", metavar="NAME", help="The column of daily minima.")
+@click.option(
+    "--dates",
+    type=click.Choice(["month first", "day first", "year first"]),
+    help="The order of dates such as 01/02/2023.",
+)
+@click.option(
+    "--time-zone-offset",
+    type=float,
+    metavar="HOURS",
+    help="From UTC to local standard time, for files whose hours are UTC.",
+)
+@click.option("--station", metavar="NAME", help="Its name, or which of several in the file.")
+def command(
+    file: Path,
+    bases: tuple[str, ...],
+    by: str | None,
+    whole_degrees: bool,
+    json_to: str | None,
+    unit: str | None,
+    date_column: str | None,
+    temperature_column: str | None,
+    max_column: str | None,
+    min_column: str | None,
+    dates: str | None,
+    time_zone_offset: float | None,
+    station: str | None,
+) -> None:
+    """Show heating and cooling degree-days of a weather FILE, daily or hourly.
+
+    A month or year with a missing day has no total, and says how many days are missing;
+    gaps of up to three days are filled and counted.
+    """
+    from normalize.weather.read import read_weather
+
+    chosen = [_base(text) for text in bases]
+    weather = read_weather(
+        file,
+        unit=unit,
+        date_column=date_column,
+        temperature_column=temperature_column,
+        max_column=max_column,
+        min_column=min_column,
+        dates=dates,
+        time_zone_offset=time_zone_offset,
+        station=station,
+    )
+    tables = _tables(weather, chosen, by, whole_degrees=whole_degrees)
+    if json_to is not None:
+        write_json(to_json(tables), json_to, inputs=(file,))
+    if json_to != STDOUT:
+        show(to_text(tables, weather.notes))
+
+
+def _base(text: str) -> Base:
+    from normalize.errors import WeatherError
+    from normalize.weather.degree_days import parse_base
+
+    try:
+        return parse_base(text)
+    except WeatherError as error:
+        raise click.BadParameter(str(error), param_hint="--base") from None
+
+
+def _tables(
+    weather: DailyTemperature, bases: Sequence[Base], by: str | None, *, whole_degrees: bool
+) -> list[DegreeDayTable]:
+    from normalize.weather.degree_days import annual_degree_days, monthly_degree_days
+
+    makers = {"month": monthly_degree_days, "year": annual_degree_days}
+    return [
+        make(weather, base, whole_degrees=whole_degrees)
+        for name, make in makers.items()
+        if by in (None, name)
+        for base in bases
+    ]
+
+
+def to_text(tables: Sequence[DegreeDayTable], notes: Sequence[str] = ()) -> str:
+    """Tables in plain text, with a word about every row that is not whole."""
+    blocks = []
+    for t in tables:
+        head = [t.by, f"heating {t.unit}", f"cooling {t.unit}", "mean °F", ""]
+        blocks.append(
+            f"{t.station}: degree-days by {t.by}, base {t.base} (each day: {t.method})\n\n"
+            + table(head, [_row(row) for row in t.rows])
+        )
+    blocks += [paragraph(note) for note in notes]
+    return "\n\n".join(blocks)
+
+
+def _row(row: DegreeDayRow) -> list[str]:
+    from normalize.report.numbers import plain
+
+    remarks = []
+    if row.days_missing:
+        remarks.append(f"{row.days_missing} days missing")
+    if row.days_filled:
+        remarks.append(f"{row.days_filled} filled")
+    return [
+        row.label,
+        plain(row.heating, 1),
+        plain(row.cooling, 1),
+        plain(row.mean_f, 1),
+        ", ".join(remarks),
+    ]
+
+
+def to_json(tables: Sequence[DegreeDayTable]) -> str:
+    """The same as JSON, schema 1; a row that is not whole has null for its totals."""
+    import json
+
+    whole = {
+        "schema": 1,
+        "station": tables[0].station,
+        "method": tables[0].method,
+        "tables": [
+            {
+                "by": t.by,
+                "base": t.base.degrees,
+                "base_unit": t.base.unit,
+                "unit": t.unit,
+                "rows": [
+                    {
+                        t.by: row.label,
+                        "heating": row.heating,
+                        "cooling": row.cooling,
+                        "mean_f": row.mean_f,
+                        "days_present": row.days_present,
+                        "days_missing": row.days_missing,
+                        "days_filled": row.days_filled,
+                    }
+                    for row in t.rows
+                ],
+            }
+            for t in tables
+        ],
+    }
+    return json.dumps(whole, indent=2, ensure_ascii=False, allow_nan=False)
