@@ -41,7 +41,7 @@ prove:
 # Pages that are generated: the commands' reference, and the answer shown in the README.
 docs:
 	@sh .ci/venv base
-	$(RUN) -m normalize.cli.reference
+	$(RUN) docs/generate.py
 
 clean:
 	rm -rf .venv .pytest_cache .mypy_cache .ruff_cache .hypothesis build dist

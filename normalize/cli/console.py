@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import codecs
 import re
+import shutil
 import sys
 from collections.abc import Sequence
 from typing import Final
@@ -56,6 +57,22 @@ def forgiving_streams() -> None:
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:
             reconfigure(errors="normalize_plain")
+
+
+def console_width() -> int:
+    """Characters a line: the terminal's, up to 100; 80 where the output goes elsewhere."""
+    if not sys.stdout.isatty():
+        return 80
+    return max(40, min(100, shutil.get_terminal_size().columns))
+
+
+def only_ascii() -> bool:
+    """Whether stdout cannot carry more than plain letters."""
+    try:
+        "°−–τ²".encode(sys.stdout.encoding or "utf-8")
+    except (UnicodeEncodeError, LookupError):
+        return True
+    return False
 
 
 def show(text: str) -> None:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from normalize.cli.console import say, show
+from normalize.cli.console import console_width, only_ascii, say, show
 from normalize.cli.options import (
     FOLDER,
     STDOUT,
@@ -65,13 +65,14 @@ def command(
     if json_to is not None:
         from normalize.report.json import to_json
 
-        write_json(
-            to_json(result, show_accounts=show_accounts), json_to, inputs=input_files(result)
-        )
+        write_json(to_json(result), json_to, inputs=input_files(result))
     if json_to != STDOUT:
         from normalize.report.text import to_text
 
-        show(to_text(result, statistics=True, show_accounts=show_accounts))
+        text = to_text(
+            result, width=console_width(), ascii=only_ascii(), show_accounts=show_accounts
+        )
+        show(text.rstrip("\n"))
     if report_to is not None:
         from normalize.report.html import write_html
 
