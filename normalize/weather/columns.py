@@ -64,6 +64,10 @@ _STATION_RANK: Final = {
     ("station",): 2,
     ("site",): 3,
     ("station", "id"): 4,
+    ("location",): 5,
+    ("place",): 5,
+    ("city",): 5,
+    ("origin",): 5,
 }
 _DEGREE: Final = "[°º˚\u00c2\ufffd]+"
 _UNIT: Final = {

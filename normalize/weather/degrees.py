@@ -53,6 +53,7 @@ _NUMBER: Final = re.compile(
 HOT_FOR_C: Final = 60.0  # no place on Earth has a daily mean or maximum above it in °C
 HOT_DAYS: Final = 10  # and at least so many, so that typing errors cannot decide
 FULL_YEAR_DAYS: Final = 330
+COLD_FOR_C: Final = -45.0  # colder, and the file may be an ice cap's in °F or Siberia's in °C
 COOL_FOR_F: Final = 45.0  # no day of a whole year above it in °F: ice caps only
 WARM_FOR_C: Final = 10.0  # the hottest day of a year in any place with buildings, in °C
 
@@ -119,8 +120,9 @@ def unit_by_values(highest: NDArray[np.float64], day: NDArray[np.int64]) -> tupl
     highest : (n,) each row's highest temperature, unit unknown; day : (n,) day numbers.
 
     °F when at least 10 rows, and 1 in 200, are above 60: nothing on Earth is in °C.
-    °C when a whole year (330 days or more, in all twelve months) has no row above 45 but
-    some above 10: in °F such a place never thaws for long, an ice cap.
+    °C when a whole year (330 days or more, in all twelve months) has no row above 45, some
+    above 10 and none below -45: in °F such a place barely thaws all year, and only the
+    coasts of Antarctica are like that (their few stations must say "F").
     Everything else (a winter alone, a few days) is in doubt, and the user is asked.
     """
     ok = np.isfinite(highest) & (highest <= HOTTEST_F)
@@ -131,8 +133,10 @@ def unit_by_values(highest: NDArray[np.float64], day: NDArray[np.int64]) -> tupl
     if hot >= max(HOT_DAYS, values.size / 200):
         return "F", f"values rise above {HOT_FOR_C:.0f}, which °C never do"
     months = days.astype("datetime64[D]").astype("datetime64[M]").astype(np.int64) % 12
-    whole = np.unique(days).size >= FULL_YEAR_DAYS and np.unique(months).size == 12
-    if whole and WARM_FOR_C < float(values.max()) <= COOL_FOR_F:
+    n_days, n_months = len(set(days.tolist())), len(set(months.tolist()))
+    whole = n_days >= FULL_YEAR_DAYS and n_months == 12
+    warmest, coldest = float(values.max()), float(values.min())
+    if whole and WARM_FOR_C < warmest <= COOL_FOR_F and coldest >= COLD_FOR_C:
         return "C", f"no value of a whole year is above {COOL_FOR_F:.0f}, which °F would be"
     return None
 

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
 
 MIN_READINGS_A_DAY: Final = 3  # at different times, for a file to count as hourly
 _PREAMBLE_UNIT: Final = re.compile(r"\b(units?|temperature)\b.*", re.IGNORECASE)
+_PREAMBLE_UTC: Final = re.compile(r"\b(UTC|GMT)\b(?!\s*[-+]\s*\d)")  # as gridded exports state it
 _PREAMBLE_STATION: Final = re.compile(
     r"^[#\s\"]*station(?:[ _]name)?\"?\s*[:=,;\t]\s*\"?([^\",;\t]+)", re.I
 )
@@ -62,7 +63,8 @@ def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
     readings = _coerce(table, columns, kept, source.name, options)
     hourly = _is_hourly(readings.stamps)
     assemble = assemble_hours if hourly else assemble_days
-    return assemble(readings, station, columns.utc, options)
+    utc = columns.utc or any(_PREAMBLE_UTC.search(text) for text in table.preamble)
+    return assemble(readings, station, utc, options)
 
 
 FORMAT = Format(name="table of temperatures", recognises=_recognises, read_days=_read_days)
@@ -181,8 +183,8 @@ def _temperatures(
         at = next(i for i, column in zip(used, numbers, strict=True) if odd[0] in column.odd)
         example = table.column(at)[odd[0]]
         notes.append(
-            f"{counted(len(odd), 'row')} with text for a temperature "
-            f"(such as {clean_name(example)[:20]!r}) count as missing {at_lines(line[odd].tolist())}."
+            f"{counted(len(odd), 'row')} with text for a temperature (such as "
+            f"{clean_name(example)[:20]!r}) count as missing {at_lines(line[odd].tolist())}."
         )
     values = np.array([column.value for column in numbers])
     highest = np.fmax.reduce(values, axis=0)
@@ -215,8 +217,6 @@ def _preamble_unit(table: Table) -> str | None:
 
 def _is_hourly(stamps: Stamps) -> bool:
     ok = stamps.day != NO_DAY
-    days = np.unique(stamps.day[ok]).size
-    return bool(
-        ok.sum() >= MIN_READINGS_A_DAY * days
-        and np.unique(stamps.minute[ok]).size >= MIN_READINGS_A_DAY
-    )
+    days = len(set(stamps.day[ok].tolist()))  # np.unique would load numpy.ma, 15 ms
+    times = len(set(stamps.minute[ok].tolist()))
+    return bool(ok.sum() >= MIN_READINGS_A_DAY * days and times >= MIN_READINGS_A_DAY)

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
 METHOD_GIVEN: Final = "as given"
 METHOD_MAX_MIN: Final = "mean of daily maximum and minimum"
 METHOD_HOURS: Final = "mean of hours"
+MAX_CONFLICTS: Final = 0.1  # of days or hours given twice with different values; else a few typos
 MAX_LOST_SHARE: Final = 0.5  # of the days with max and min, that a mean column may leave empty
 
 
@@ -37,7 +38,7 @@ def assemble_days(
     if high is not None and low is not None:
         _drop_crossed(high, low, readings.notes)
     temp, method = _daily_mean(mean, high, low, readings.notes)
-    first, temp, high, low = _lay_out(day, temp, high, low, readings.notes)
+    first, temp, high, low = _lay_out(day, temp, high, low, readings)
     if not np.isfinite(temp).any():
         raise _no_temperature(readings.where)
     if utc:
@@ -84,12 +85,12 @@ def _lay_out(
     temp: NDArray[np.float64],
     high: NDArray[np.float64] | None,
     low: NDArray[np.float64] | None,
-    notes: list[str],
+    readings: Readings,
 ) -> tuple[int, NDArray[np.float64], NDArray[np.float64] | None, NDArray[np.float64] | None]:
     """Values at their places in the calendar; days given twice resolved, or made missing."""
     first, n_days = int(day.min()), int(day.max() - day.min()) + 1
     place = day - first
-    differing = _resolve_doubles(first, place, temp, notes)
+    differing = _resolve_doubles(first, place, temp, readings)
 
     def laid(column: NDArray[np.float64]) -> NDArray[np.float64]:
         out = np.full(n_days, np.nan)
@@ -104,7 +105,7 @@ def _lay_out(
 
 
 def _resolve_doubles(
-    first: int, place: NDArray[np.int64], temp: NDArray[np.float64], notes: list[str]
+    first: int, place: NDArray[np.int64], temp: NDArray[np.float64], readings: Readings
 ) -> NDArray[np.int64]:
     """Places of days that were given more than once with different temperatures."""
     given = np.isfinite(temp)
@@ -112,14 +113,20 @@ def _resolve_doubles(
     order = np.lexsort((temp, place))
     same_day = np.diff(place[order]) == 0
     same_value = np.diff(temp[order]) == 0
+    if not same_day.any():
+        return np.empty(0, dtype=np.int64)
     doubled = np.unique(place[order][1:][same_day])
     differing = np.unique(place[order][1:][same_day & ~same_value])
     same = doubled.size - differing.size
+    if differing.size > MAX_CONFLICTS * len(set(place.tolist())):
+        raise _several_stations(f"{differing.size} days", readings.where)
     if same:
-        notes.append(f"{counted(same, 'day')} given more than once with one value count once.")
+        readings.notes.append(
+            f"{counted(same, 'day')} given more than once with one value count once."
+        )
     if differing.size:
         dates = listed((first + differing).astype("datetime64[D]"))
-        notes.append(
+        readings.notes.append(
             f"{counted(differing.size, 'day')} given more than once with different temperatures "
             f"count as missing: {dates}."
         )
@@ -140,6 +147,8 @@ def assemble_hours(
     ok = readings.stamps.day != NO_DAY
     stamp = _local_minutes(readings.stamps, utc, readings.where, options, readings.notes)[ok]
     means = means_of_days(stamp, readings.mean[ok])
+    if means.conflicting > MAX_CONFLICTS * int(means.hours.sum() + means.conflicting):
+        raise _several_stations(f"{means.conflicting} readings", readings.where)
     if not np.isfinite(means.mean).any():
         most = int(means.hours.max()) if means.hours.size else 0
         raise UnreadableWeather(
@@ -220,6 +229,15 @@ def _trimmed(
         notes=tuple(notes),
         max_f=high[cut].copy() if high is not None else None,
         min_f=low[cut].copy() if low is not None else None,
+    )
+
+
+def _several_stations(what: str, where: str) -> UnreadableWeather:
+    return UnreadableWeather(
+        f"{what} stand in the file more than once with different temperatures",
+        where=where,
+        wanted="one station, each day or hour once",
+        next_step="If the file holds several stations, keep the rows of one.",
     )
 
 
