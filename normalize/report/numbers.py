@@ -27,6 +27,7 @@ MONTHS: Final = (
 MIN_MASKED_DIGITS: Final = 6  # shorter runs are house numbers, years and amounts
 SHOWN_DIGITS: Final = 4  # enough to tell one's own accounts apart (common practice, no source)
 MAX_NAME: Final = 200  # a longer name is cut; nobody reads it and it can break a page
+MAX_TEXT: Final = 2000  # so is a sentence
 
 _DIGITS = re.compile(
     r"\d{4}-\d{2}-\d{2}(?!\d)"  # a date: kept
@@ -43,8 +44,8 @@ _ASCII = str.maketrans(
     {
         NBSP: " ", MINUS: "-", NDASH: "-", "\u2014": "-", "\u2018": "'", "\u2019": "'",
         "\u201c": '"', "\u201d": '"', "\u2026": "...", "×": "x", "±": "+/-", "°": " deg ",
-        "·": "*", "≥": ">=", "≤": "<=", "²": "2", "₂": "2", "⁺": "+", "τ": "tau",
-        "ρ": "rho", "§": "section ", "€": "EUR ", "£": "GBP ", "÷": "/", "Σ": "sum of ",
+        "·": "*", "≥": ">=", "≤": "<=", "²": "^2", "₂": "2", "⁺": "+", "τ": "tau",
+        "ρ": "rho", "§": "section ", "€": "EUR ", "£": "GBP ", "÷": "/", "Σ": "sum of",
         "½": "1/2", "⅓": "1/3",
     }
 )  # fmt: skip
@@ -57,7 +58,7 @@ def clean(text: str) -> str:
     'gas[31m bills 2'
     """
     kept = []
-    for char in text[: 4 * MAX_NAME]:
+    for char in text[:MAX_TEXT]:
         kind = unicodedata.category(char)
         if char in "\t\n\r" or kind in ("Zl", "Zp"):
             kept.append(" ")
@@ -171,6 +172,18 @@ def full(value: float | None) -> str:
     return (MINUS if value < 0 else "") + text
 
 
+def short(value: float | None) -> str:
+    """A coefficient inside an equation: four significant digits, no trailing zeros.
+
+    >>> short(0.61), short(1234.56), short(-0.09412)
+    ('0.61', '1,235', '−0.09412')
+    """
+    text = significant(value, 4)
+    if "." in text and "e" not in text:
+        text = text.rstrip("0").rstrip(".")
+    return text
+
+
 def percent(fraction: float | None, digits: int = 2) -> str:
     """A fraction as percent for a sentence.
 
@@ -214,6 +227,15 @@ def price(value: float | None, currency: str) -> str:
     if abs(value) < 1.0 and abs(value - round(value, 2)) > 1e-9:
         text = plain(value, 4).rstrip("0")
     return _with_currency(text, currency)
+
+
+def amount(value: float | None, currency: str) -> str:
+    """An amount of money in full.
+
+    >>> amount(4150.0, "USD"), amount(0.5, "USD")
+    ('$4,150', '$0.50')
+    """
+    return _with_currency(plain(value, 2).removesuffix(".00"), currency)
 
 
 def _with_currency(text: str, currency: str) -> str:

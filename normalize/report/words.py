@@ -6,14 +6,14 @@ range includes zero "could not be told from no change"; an increase is called on
 
 from __future__ import annotations
 
-from collections.abc import Callable  # noqa: TC003  NamedTuple keeps its annotations
+from collections.abc import Callable
 from typing import TYPE_CHECKING, Final, NamedTuple
 
 from normalize.report import numbers as n
 from normalize.units import FUELS
 
 if TYPE_CHECKING:
-    from normalize.savings.results import Amount, Estimate, Total
+    from normalize.savings.results import Estimate
     from normalize.site import AccountResult, SiteResult
     from normalize.units import Factor
 
@@ -29,10 +29,6 @@ UNIT_WORDS: Final = {
     "short ton": ("short ton", "short tons"),
     "tonne": ("tonne", "tonnes"),
 }
-CAUSE: Final = (
-    "This is a change in use after the work. Bills cannot say what caused it: whatever else "
-    "changed at the same time is in the number too."
-)
 NORMAL_YEAR: Final = "in a normal year"
 MAX_DIGITS: Final = 4  # a range so tight that more would be needed is shown as it rounds
 DAYS_A_MONTH: Final = 30.4375  # for saying how long, never for computing
@@ -85,6 +81,13 @@ def fuel_word(fuel: str) -> str:
     return n.name(fuel) if known is None else known.plain
 
 
+def account_title(account: AccountResult) -> str:
+    """The fuel, and the account's own name where it says more."""
+    title, name = upper(n.name(account.fuel)), n.name(account.account)
+    told = {account.fuel.lower(), fuel_word(account.fuel).lower()}
+    return title if name.lower() in told else f"{title}, account {name}"
+
+
 def unit_word(unit: str, *, one: bool = False) -> str:
     """The unit in a sentence.
 
@@ -116,7 +119,7 @@ def in_units(estimate: Estimate) -> Range:
 
 
 def verdict_of(spread: Range) -> str:
-    """ "reduction", "increase", "cannot tell", "no range" or "unknown".
+    """One of "reduction", "increase", "cannot tell", "no range", "unknown".
 
     >>> verdict_of(Range(3.0, -1.0, 7.0))
     'cannot tell'
@@ -171,9 +174,9 @@ def finding(estimate: Estimate, fuel: str, unit: str) -> str:
     fuel = fuel_word(fuel)
     verdict = verdict_of(spread)
     if verdict == "unknown":
-        return f"{_upper(fuel)}: not known"
+        return f"{upper(fuel)}: not known"
     if verdict == "cannot tell":
-        return f"{_upper(fuel)}: could not be told from no change"
+        return f"{upper(fuel)}: could not be told from no change"
     return f"{signed(spread.value, form, digits_for(spread, form))} {fuel}"
 
 
@@ -196,7 +199,7 @@ def normalized_sentence(
     ranged = span_words(spread, form, digits)
     if verdict == "cannot tell":
         return (
-            f"{_upper(fuel)} use {NORMAL_YEAR}{which} could not be told from no change: it is "
+            f"{upper(fuel)} use {NORMAL_YEAR}{which} could not be told from no change: it is "
             f"somewhere {ranged}."
         )
     return (
@@ -291,7 +294,7 @@ def answer(
     if account.unavailable:
         return (
             f"For {fuel_word(account.fuel)}{which} there is no answer: "
-            f"{_stop(n.clean(account.unavailable))}",
+            f"{stop(n.clean(account.unavailable))}",
         )
     save = account.savings
     normal = normalized_sentence(
@@ -318,7 +321,7 @@ def headline(account: AccountResult, *, subject: str = "This site", which: str =
 
 
 def which_of(account: AccountResult, result: SiteResult, *, show_accounts: bool = False) -> str:
-    """ " on the account shop" where several accounts carry the same fuel; else nothing."""
+    """The account's name as " on the account shop" where accounts share a fuel; else nothing."""
     same = [a for a in result.accounts if fuel_word(a.fuel) == fuel_word(account.fuel)]
     if len(same) < 2:
         return ""
@@ -362,50 +365,12 @@ def factor_source(factor: Factor) -> str:
     return f"{source} (memory)".strip() if factor.memory and "(memory)" not in source else source
 
 
-def total_sentences(total: Total, currency: str, *, normal: bool = True) -> tuple[str, ...]:
-    """All accounts together: energy, money, carbon, each with both ranges."""
-    when = NORMAL_YEAR if normal else "since the work"
-    parts = (
-        ("energy", total.energy_mmbtu, unit_form("million Btu")),
-        ("cost", total.cost, money_form(currency)),
-        ("carbon dioxide", total.co2_kg, unit_form("kg")),
-    )
-    return tuple(total_sentence(what, amount, form, when) for what, amount, form in parts)
-
-
-def total_sentence(what: str, amount: Amount, form: Form, when: str = NORMAL_YEAR) -> str:
-    """One total in words, with what it leaves out."""
-    spread = Range(amount.value, amount.low, amount.high)
-    out = f" This leaves out {_listed(amount.missing)}." if amount.missing else ""
-    if amount.unavailable is not None or verdict_of(spread) == "unknown":
-        why = n.clean(amount.unavailable or "no finite number came out")
-        return f"The total {what} {when} is not known: {_stop(why)}{out}"
-    digits = digits_for(spread, form)
-    ranged = span_words(spread, form, digits)
-    worst = Range(amount.value, amount.worst_low, amount.worst_high)
-    if n.known(worst.low) and n.known(worst.high):
-        ranged += f"; if all errors lean the same way, {span_words(worst, form, digits)}"
-    if verdict_of(spread) == "cannot tell":
-        return f"All accounts together, {what} {when} could not be told from no change ({ranged}).{out}"
-    verb = f"{signed(spread.value, form, digits)}"
-    return f"All accounts together, {what} {when}: {verb} ({ranged}).{out}"
-
-
-def range_note(confidence: float) -> str:
-    """What the ranges mean."""
-    return (
-        f"Ranges are {confidence_word(confidence)} ranges. They speak of the scatter of the bills, "
-        "with bills that err together allowed for; not of the people, the weather station or the "
-        "choice of the normal year."
-    )
-
-
 def _spoken(estimate: Estimate, unit: str) -> tuple[Range, Form]:
     """Percent where there is one, the account's unit where there is none to divide by."""
     share = in_percent(estimate)
-    if verdict_of(share) not in ("unknown", "no range"):
-        if verdict_of(share) == verdict_of(in_units(estimate)):
-            return share, percent_form()
+    said = verdict_of(share)
+    if said not in ("unknown", "no range") and said == verdict_of(in_units(estimate)):
+        return share, percent_form()
     return in_units(estimate), unit_form(unit_word(unit))
 
 
@@ -423,22 +388,20 @@ def _also(start: str, spread: Range, form: Form, per: str) -> str:
 def _not_known(what: str, estimate: Estimate) -> str:
     why = n.clean(estimate.unavailable or "no finite number came out of the computation")
     if estimate.known_from is None:
-        return f"{_upper(what)} is not known: {_stop(why)}"
+        return f"{upper(what)} is not known: {stop(why)}"
     when = n.long_date(estimate.known_from)
     return (
-        f"{_upper(what)} is not known yet: {_stop(why)} It will be known from about {when}, if "
+        f"{upper(what)} is not known yet: {stop(why)} It will be known from about {when}, if "
         "bills keep coming."
     )
 
 
-def _listed(items: tuple[str, ...]) -> str:
-    names = [n.mask(n.name(item)) for item in items]
-    if len(names) < 2:
-        return "".join(names)
-    return f"{', '.join(names[:-1])} and {names[-1]}"
+def upper(text: str) -> str:
+    """Text with its first letter as a capital.
 
-
-def _upper(text: str) -> str:
+    >>> upper("gas use")
+    'Gas use'
+    """
     return text[:1].upper() + text[1:]
 
 
@@ -450,5 +413,10 @@ def _lower_first(text: str) -> str:
     return text
 
 
-def _stop(text: str) -> str:
+def stop(text: str) -> str:
+    """Text that ends as a sentence.
+
+    >>> stop("one bill"), stop("which?")
+    ('one bill.', 'which?')
+    """
     return text if text.endswith((".", "?", "!")) else f"{text}."

@@ -344,10 +344,9 @@ def make_site(
     )
 
 
-SAFETY = (
-    "A drop in use in an occupied home in winter may mean a heating failure; make sure that the "
-    "heating works.",
-    "Tightening a house calls for a ventilation and combustion-safety check by licensed people.",
+CAUTIONS = (
+    "The station is on a hill 12 miles from the site.",
+    "The second adult began to work from home on 2024-02-01, inside the reporting period.",
 )
 
 
@@ -392,7 +391,7 @@ def gas_house() -> SiteResult:
                          total_of(913.0, 680.0, 1146.0)),
         avoided=Total(total_of(29.5, 22.8, 36.1), total_of(396.0, 280.0, 512.0),
                       total_of(1574.0, 1170.0, 1978.0)),
-        cautions=SAFETY,
+        cautions=CAUTIONS,
     )  # fmt: skip
 
 
@@ -429,7 +428,7 @@ def farm() -> SiteResult:
                          total_of(3910.0, 3190.0, 4630.0)),
         avoided=Total(total_of(42.2, 32.5, 51.9), total_of(881.0, 595.0, 1167.0),
                       total_of(2600.0, 1870.0, 3330.0)),
-        cautions=SAFETY, upgrade="heat pump",
+        cautions=CAUTIONS, upgrade="heat pump",
     )  # fmt: skip
 
 
@@ -459,7 +458,7 @@ def half_known() -> SiteResult:
     part = total_of(2.1, 0.4, 3.8, missing=("propane",))
     return make_site(
         "Two Ponds library", (gas, propane), weather, year=None,
-        normalized=Total(empty, empty, empty), avoided=Total(part, empty, empty), cautions=SAFETY,
+        normalized=Total(empty, empty, empty), avoided=Total(part, empty, empty), cautions=CAUTIONS,
     )  # fmt: skip
 
 
