@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 
 from normalize.bills import rules
-from normalize.bills.periods import Bills, BillRow, LedgerEntry, Periods
+from normalize.bills.periods import BillRow, Bills, LedgerEntry, Periods
 from normalize.bills.repair_join import repair_accounts
 from normalize.errors import BillError
 
@@ -188,9 +188,7 @@ def _periods(batch: RepairedBatch) -> Periods:
     )
 
 
-def _entry(
-    row: BillRow, batch: RepairedBatch, i: int, lines: list[int], kind: Kind
-) -> LedgerEntry:
+def _entry(row: BillRow, batch: RepairedBatch, i: int, lines: list[int], kind: Kind) -> LedgerEntry:
     partner = int(batch.other[i])
     other = lines[partner] if partner >= 0 else 0
     if batch.fate[i] < 0:

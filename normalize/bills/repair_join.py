@@ -221,9 +221,7 @@ def repair_account(
     begin = trim_starts(mains, start, end, note)
     first = np.empty(mains.shape[0], np.int64)
     last = np.empty(mains.shape[0], np.int64)
-    groups = _join_estimates(
-        mains, begin, end, total, estimated, net, reason, note, first, last
-    )
+    groups = _join_estimates(mains, begin, end, total, estimated, net, reason, note, first, last)
     if _median_days(mains, begin, end, first, last, groups) >= _STUB:
         groups = _join_stubs(mains, begin, end, note, first, last, groups)
     median = _median_days(mains, begin, end, first, last, groups)

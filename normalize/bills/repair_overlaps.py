@@ -97,7 +97,7 @@ def _leave_out_subtotals(tangle: Long, start: Int, end: Int, total: Float, reaso
 def _rank(i: int, total: Float, estimated: Byte, version: Long) -> int:
     """Of two bills that overlap: one with usage, then an actual one, then the later version."""
     rank = (2 if total[i] != 0.0 else 0) + (0 if estimated[i] else 1)
-    return (rank << 40) | version[i]
+    return int((rank << 40) | version[i])
 
 
 @kernel

@@ -51,9 +51,7 @@ _SAME_DAY = rules.SAME_DAY
 def screen(start: Int, end: Int, use: Float, reason: Byte) -> None:
     """Leave out rows that no rule can save: impossible dates, no days, impossible usage."""
     for i in range(start.shape[0]):
-        if start[i] < _FIRST_DAY or end[i] > _LAST_DAY or end[i] < _FIRST_DAY:
-            reason[i] = _BAD_DATE
-        elif start[i] > _LAST_DAY:
+        if min(start[i], end[i]) < _FIRST_DAY or max(start[i], end[i]) > _LAST_DAY:
             reason[i] = _BAD_DATE
         elif end[i] < start[i]:
             reason[i] = _BACKWARDS

@@ -13,9 +13,13 @@ from normalize.days import FIRST_SANE_DAY, LAST_SANE_DAY
 
 # --- Thresholds -------------------------------------------------------------------------
 
-FIRST_DAY = FIRST_SANE_DAY  # 1900-01-01; an earlier date is a typing error (common practice, no source)
+FIRST_DAY = (
+    FIRST_SANE_DAY  # 1900-01-01; an earlier date is a typing error (common practice, no source)
+)
 LAST_DAY = LAST_SANE_DAY  # 2100-01-01; likewise
-ABSURD_USE = 1e12  # of any unit in one bill: no building uses a PJ a month (common practice, no source)
+ABSURD_USE = (
+    1e12  # of any unit in one bill: no building uses a PJ a month (common practice, no source)
+)
 
 CANCEL_TOLERANCE = 1e-6  # relative: a cancelling row repeats the cancelled number to rounding
 #                          (common practice, no source)

@@ -1,0 +1,266 @@
+"""Which column of a bill table is what.
+
+What belongs here: finding the header, giving columns their roles, choosing between usage
+columns, and asking when the file does not settle it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+
+from normalize.bills.amounts import as_text, is_blank, split_amount
+from normalize.bills.headings import Heading, header_score, squeeze, take_apart
+from normalize.bills.table import HEADER_LINES, RawRow, RawTable
+from normalize.bills.vocabulary import ROLES
+from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
+from normalize.units import FUELS, canonical_unit
+
+MIN_HEADER = 10.0  # a date and an amount heading reach this (our own, no source)
+CLEAR_LEAD = 2.0  # a usage column is chosen unasked when it leads by this (our own, no source)
+
+
+@dataclass(frozen=True, slots=True)
+class Columns:
+    """The header of a table and the column of each role (from 0), None where there is none."""
+
+    line: int
+    headings: tuple[Heading, ...]
+    by_role: dict[str, int] = field(default_factory=dict)
+    notes: tuple[int, ...] = ()
+    accounts: tuple[int, ...] = ()
+    usage: tuple[int, ...] = ()  # candidates, in order of columns
+
+    def get(self, role: str) -> int | None:
+        """Column of a role."""
+        return self.by_role.get(role)
+
+    def heading(self, role: str) -> Heading:
+        """Heading of a role's column, which must be there."""
+        return self.headings[self.by_role[role]]
+
+
+def answer(key: str, *values: str) -> str:
+    """The line of site.toml, and the option, that answers a question."""
+    lines = " or ".join(f'{key} = "{v}"' for v in values)
+    return f"Put {lines} under [[account]] in site.toml, or use --{key.replace('_', '-')}."
+
+
+def find_columns(table: RawTable, named: dict[str, str]) -> tuple[Columns, tuple[RawRow, ...]]:
+    """The header with its roles, and the lines beneath it.
+
+    named : role → heading that the user gave for it.
+    Raises UnreadableBills if no header is found or a named column is not there.
+    """
+    names = frozenset(squeeze(v) for v in named.values())
+    head = table.rows[:HEADER_LINES]
+    scores = [header_score(row.cells, names) for row in head]
+    at = max(range(len(head)), key=lambda k: scores[k])
+    if scores[at] < MIN_HEADER:
+        raise UnreadableBills(
+            "no line looks like the header of a table of bills",
+            where=table.name,
+            wanted="a line with headings such as 'Start', 'End', 'Usage (therms)', 'Cost'",
+            next_step="Add one, or name the columns with end_column and usage_column.",
+        )
+    header = head[at]
+    headings = tuple(take_apart(as_text(c)) for c in header.cells)
+    body = table.rows[at + 1 :]
+    columns = Columns(header.line, headings)
+    columns = _assign(columns, body)
+    return _apply_names(columns, named, table.name), body
+
+
+def _assign(columns: Columns, body: Sequence[RawRow]) -> Columns:
+    """Each role's column: the best heading; the first of equals."""
+    by_role: dict[str, int] = {}
+    for k, heading in enumerate(columns.headings):
+        role = heading.role
+        if not role or role in ("ignore", "private", "notes", "account", "usage"):
+            continue
+        if role not in by_role or heading.score > columns.headings[by_role[role]].score:
+            by_role[role] = k
+    role_of = [h.role for h in columns.headings]
+    usage = tuple(
+        k for k, role in enumerate(role_of) if role == "usage" and _holds_numbers(body, k)
+    )
+    return replace(
+        columns,
+        by_role=by_role,
+        notes=tuple(k for k, role in enumerate(role_of) if role == "notes"),
+        accounts=tuple(k for k, role in enumerate(role_of) if role == "account"),
+        usage=usage,
+    )
+
+
+def _holds_numbers(body: Sequence[RawRow], k: int) -> bool:
+    """Whether most filled cells of a column begin as numbers (or the column is empty)."""
+    cells = [row.cells[k] for row in body[:500] if k < len(row.cells)]
+    filled = [c for c in cells if not is_blank(c)]
+    good = sum(1 for c in filled if not isinstance(c, str) or split_amount(c) is not None)
+    return 2 * good >= len(filled)
+
+
+def _apply_names(columns: Columns, named: dict[str, str], where: str) -> Columns:
+    by_role = dict(columns.by_role)
+    for role, name in named.items():
+        hits = [k for k, h in enumerate(columns.headings) if squeeze(h.text) == squeeze(name)[:40]]
+        if not hits:
+            shown = ", ".join(repr(h.text) for h in columns.headings if h.text)
+            raise UnreadableBills(
+                f"no column is called {name[:40]!r} ({role}_column)",
+                where=f"{where}:{columns.line}",
+                wanted=f"one of {shown[:300]}",
+            )
+        for other in [r for r, k in by_role.items() if k == hits[0] and r != role]:
+            del by_role[other]
+        by_role[role] = hits[0]
+    if "end" in named:  # a named end is the date of the reading, whatever else there is
+        by_role.pop("read", None)
+        by_role.pop("range", None)
+    return replace(columns, by_role=by_role)
+
+
+def choose_usage(
+    columns: Columns, *, fuel: str | None, unit: str | None, where: str
+) -> tuple[Columns, tuple[str, ...]]:
+    """The usage column, with sentences about those passed over.
+
+    Raises AmbiguousBills when several would do, UnreadableBills when none is there.
+    """
+    if "usage" in columns.by_role:
+        return columns, ()
+    if not columns.usage:
+        raise _no_usage(columns, where)
+    notes: list[str] = []
+    left = list(columns.usage)
+    left = _of_fuel(columns, left, fuel, where)
+    if unit is not None:
+        left = [k for k in left if _unit_of(columns.headings[k], fuel) == unit] or left
+    left = [k for k in left if not columns.headings[k].per_day] or left
+    if len(left) > 1:
+        therms = [k for k in left if _unit_of(columns.headings[k], fuel) in ("therm", "Dth")]
+        units = {_unit_of(columns.headings[k], fuel) for k in left}
+        if len(therms) == 1 and units <= {"therm", "Dth", "cf", "ccf", "Mcf", "MMcf", "m3"}:
+            left = therms
+            notes.append("therms were taken rather than volume, for they count the heat itself")
+    if len(left) > 1:
+        ranked = sorted(left, key=lambda k: -columns.headings[k].score)
+        first, second = (columns.headings[k] for k in ranked[:2])
+        if first.score - second.score < CLEAR_LEAD:
+            names = [columns.headings[k].text for k in left]
+            raise AmbiguousBills(
+                f"several columns could be the usage ({', '.join(map(repr, names[:6]))})",
+                where=f"{where}:{columns.line}",
+                next_step=answer("usage_column", *names[:2]),
+            )
+        left = ranked[:1]
+    passed = [columns.headings[k].text for k in columns.usage if k != left[0]]
+    if passed:
+        notes.append(f"not used: {', '.join(map(repr, passed))}")
+    return replace(columns, by_role={**columns.by_role, "usage": left[0]}), tuple(notes)
+
+
+def _of_fuel(columns: Columns, left: list[int], fuel: str | None, where: str) -> list[int]:
+    """Columns that can be of the fuel; asks for it if the file holds several."""
+    if fuel is None:
+        fuels = {f for k in left if (f := fuel_suggested(columns.headings[k]))}
+        if len(fuels) > 1:
+            raise AmbiguousBills(
+                f"the file holds several fuels ({', '.join(sorted(fuels))})",
+                where=f"{where}:{columns.line}",
+                next_step=answer("fuel", *sorted(fuels)),
+            )
+        return left
+    named = [k for k in left if columns.headings[k].fuel == fuel]
+    fits = [
+        k
+        for k in left
+        if columns.headings[k].fuel in ("", fuel)
+        and (not columns.headings[k].unit or _unit_of(columns.headings[k], fuel))
+    ]
+    # kWh fits gas in some countries: beside a column that only gas can have, it is not gas.
+    likely = [k for k in fits if fuel_suggested(columns.headings[k]) in ("", fuel)]
+    if not (named or fits):
+        names = ", ".join(repr(columns.headings[k].text) for k in left[:6])
+        raise UnreadableBills(
+            f"no usage column is in a unit of {fuel} ({names})",
+            where=f"{where}:{columns.line}",
+            wanted="a column of that fuel",
+            next_step="Check the fuel, or name the column with usage_column.",
+        )
+    return [k for k in named if k in fits] or likely or fits
+
+
+def _unit_of(heading: Heading, fuel: str | None) -> str:
+    """Canonical unit of a heading; "" if it has none or it does not fit the fuel."""
+    if not heading.unit:
+        return ""
+    try:
+        return canonical_unit(heading.unit, fuel)
+    except (UnknownUnit, BillError):
+        return ""
+
+
+def fuel_suggested(heading: Heading) -> str:
+    """The fuel that a heading's words or unit speak for; "" if they speak for none."""
+    if heading.fuel:
+        return heading.fuel
+    return fuel_of_unit(_unit_of(heading, None))
+
+
+def fuel_of_unit(unit: str) -> str:
+    """The fuel that is usually billed in a unit; "" where several are (common practice)."""
+    if unit in ("kWh", "MWh", "Wh", "GWh"):
+        return "electricity"
+    if unit in ("therm", "Dth", "cf", "ccf", "Mcf", "MMcf", "m3"):
+        return "natural gas"
+    return "wood" if unit == "cord" else ""
+
+
+def choose_cost(columns: Columns, fuel: str) -> Columns:
+    """The cost column of the fuel, where the file has one for each."""
+    if "cost" not in columns.by_role or len(columns.usage) < 2:
+        return columns
+    own = [k for k, h in enumerate(columns.headings) if h.role == "cost" and h.fuel == fuel]
+    others = [
+        k for k, h in enumerate(columns.headings) if h.role == "cost" and h.fuel not in ("", fuel)
+    ]
+    by_role = dict(columns.by_role)
+    if own:
+        by_role["cost"] = own[0]
+    elif by_role["cost"] in others:
+        del by_role["cost"]
+    return replace(columns, by_role=by_role)
+
+
+def _no_usage(columns: Columns, where: str) -> UnreadableBills:
+    names = ", ".join(repr(h.text) for h in columns.headings if h.text)
+    if "register" in columns.by_role:
+        return UnreadableBills(
+            f"the file has readings of the meter ({columns.heading('register').text!r}) "
+            "but no usage",
+            where=f"{where}:{columns.line}",
+            wanted="a column of usage",
+            next_step="Add one: each reading less the one before, times the meter's multiplier.",
+        )
+    return UnreadableBills(
+        f"no column looks like usage (the headings are {names[:300]})",
+        where=f"{where}:{columns.line}",
+        wanted="a heading such as 'Usage (kWh)' or 'Therms'",
+        next_step='Name it: usage_column = "…" under [[account]] in site.toml, or --usage-column.',
+    )
+
+
+def described(columns: Columns, roles: Sequence[str]) -> tuple[str, ...]:
+    """One sentence per role that has a column: "usage from column 'kWh'"."""
+    return tuple(
+        f"{ROLES[role]} from column {columns.heading(role).text!r}"
+        for role in roles
+        if role in columns.by_role
+    )
+
+
+def is_delivered(fuel: str) -> bool:
+    """Whether the fuel comes by truck."""
+    return FUELS[fuel].delivered

@@ -1,0 +1,214 @@
+"""Raw tables out of hostile files: CSV text or an XLSX sheet becomes rows of cells.
+
+What belongs here: size limits, encodings, delimiters, refusal of files that are no table.
+No word of a header is understood here; the caller passes a ``score`` that says how much a
+line looks like a header, and the best delimiter or sheet is the one with the best header.
+"""
+
+from __future__ import annotations
+
+import csv
+import hashlib
+import io
+import os
+import stat
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
+from datetime import date
+from pathlib import Path
+
+from normalize.errors import AmbiguousBills, MissingFile, UnreadableBills
+
+Cell = str | int | float | date | None
+Score = Callable[[Sequence[Cell]], float]
+
+MAX_BYTES = 100_000_000  # of a bill file; a lifetime of monthly bills is some kilobytes
+MAX_ROWS = 200_000
+MAX_COLUMNS = 500
+MAX_LINE = 100_000  # characters of one line
+MAX_CELL = 5_000  # characters of one cell
+HEADER_LINES = 60  # a header is looked for in this many rows from the top
+
+_DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "bar"}
+_NOT_TABLES = (
+    (b"\xd0\xcf\x11\xe0", "an old Excel workbook (.xls)", "Save it as .xlsx or CSV."),
+    (b"%PDF", "a PDF", "Type the bills into a template (normalize new) or ask for a CSV export."),
+    (b"\x89PNG", "a picture", "Type the bills into a template (normalize new)."),
+    (b"\xff\xd8\xff", "a picture", "Type the bills into a template (normalize new)."),
+    (b"\x1f\x8b", "a compressed file", "Unpack it first."),
+)
+
+
+@dataclass(frozen=True, slots=True)
+class RawRow:
+    """One line (CSV) or row (sheet), counted from 1 as a person would find it."""
+
+    line: int
+    cells: tuple[Cell, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class RawTable:
+    """A file as rows of cells.
+
+    name : file name without folder.  sha256 : of the file's bytes.  delimiter : of a CSV,
+    empty for a sheet.  sheet : name, empty for a CSV.  epoch_1904 : Excel's other calendar.
+    """
+
+    name: str
+    sha256: str
+    rows: tuple[RawRow, ...]
+    delimiter: str = ""
+    sheet: str = ""
+    epoch_1904: bool = False
+
+
+def read_table(path: str | os.PathLike[str], *, score: Score, sheet: str | None = None) -> RawTable:
+    """Read a CSV or XLSX file into rows of cells.
+
+    Raises MissingFile, UnreadableBills, AmbiguousBills (several sheets that look like bills).
+    """
+    file = Path(path)
+    data = _bytes_of(file)
+    digest = hashlib.sha256(data).hexdigest()
+    if data.startswith(b"PK"):
+        from normalize.bills.workbook import read_workbook
+
+        return read_workbook(data, name=file.name, sha256=digest, score=score, sheet=sheet)
+    if sheet is not None:
+        raise UnreadableBills(
+            "a sheet was named, but this is no XLSX workbook",
+            where=file.name,
+            next_step="Leave out sheet, or give the workbook.",
+        )
+    text = _text_of(data, file.name)
+    delimiter = _delimiter_of(text, score)
+    rows = tuple(_csv_rows(text, delimiter, file.name))
+    if not rows:
+        raise UnreadableBills("the file holds no lines", where=file.name, wanted="a table of bills")
+    return RawTable(file.name, digest, rows, delimiter)
+
+
+def _bytes_of(file: Path) -> bytes:
+    try:
+        info = file.stat()
+        if stat.S_ISDIR(info.st_mode):
+            raise UnreadableBills(
+                "this is a folder", where=file.name, wanted="one CSV or XLSX file of bills"
+            )
+        if not stat.S_ISREG(info.st_mode):
+            raise UnreadableBills("this is not an ordinary file", where=file.name)
+        if info.st_size > MAX_BYTES:
+            raise UnreadableBills(
+                f"the file has {info.st_size / 1e6:,.0f} MB",
+                where=file.name,
+                wanted=f"at most {MAX_BYTES / 1e6:.0f} MB",
+                next_step="Check that it is a file of bills.",
+            )
+        data = file.read_bytes()
+    except FileNotFoundError:
+        raise MissingFile(
+            "there is no such file", where=file.name, next_step="Check the name and the folder."
+        ) from None
+    except (OSError, ValueError) as err:  # ValueError: a NUL in the path
+        reason = err.strerror if isinstance(err, OSError) and err.strerror else "its name is odd"
+        raise UnreadableBills(f"the file cannot be opened ({reason})", where=file.name) from None
+    if not data.strip():
+        raise UnreadableBills("the file is empty", where=file.name, wanted="a table of bills")
+    for magic, what, cure in _NOT_TABLES:
+        if data.startswith(magic):
+            raise UnreadableBills(
+                f"this is {what}", where=file.name, wanted="a CSV or XLSX table", next_step=cure
+            )
+    return data
+
+
+def _text_of(data: bytes, name: str) -> str:
+    """Decoded text: by its byte order mark, else UTF-8, UTF-16 without a mark, cp1252."""
+    text = _decoded(data)
+    if "\0" in text:
+        raise UnreadableBills(
+            "the file holds bytes that are no text", where=name, wanted="a CSV or XLSX table"
+        )
+    if text.lstrip()[:1] == "<":
+        raise UnreadableBills(
+            "this is XML or HTML, not a table",
+            where=name,
+            wanted="a CSV or XLSX table",
+            next_step="Look for a CSV or spreadsheet download at the same place.",
+        )
+    return text
+
+
+def _decoded(data: bytes) -> str:
+    if data.startswith((b"\xff\xfe", b"\xfe\xff")):
+        return data.decode("utf-16", errors="replace")
+    sample = data[:4000]
+    if len(sample) > 8 and sample[1::2].count(0) > 0.4 * len(sample[1::2]):
+        return data.decode("utf-16-le", errors="replace")
+    if len(sample) > 8 and sample[0::2].count(0) > 0.4 * len(sample[0::2]):
+        return data.decode("utf-16-be", errors="replace")
+    try:
+        return data.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        return data.decode("cp1252", errors="replace")
+
+
+def _delimiter_of(text: str, score: Score) -> str:
+    """The delimiter under which some early line looks most like a header."""
+    head = text[: 4 * MAX_LINE].splitlines()[:HEADER_LINES]
+    if head and head[0].lower().startswith("sep=") and head[0][4:5] in _DELIMITERS:
+        return head[0][4:5]
+    best, best_rank = ",", (-1.0, -1)
+    for delimiter in _DELIMITERS:
+        try:
+            rows = [r[:MAX_COLUMNS] for r in csv.reader(head, delimiter=delimiter)]
+        except csv.Error:
+            continue
+        widths = [len(r) for r in rows if len(r) > 1]
+        rank = (max((score(r) for r in rows), default=0.0), len(widths))
+        if rank > best_rank:
+            best, best_rank = delimiter, rank
+    return best
+
+
+def _csv_rows(text: str, delimiter: str, name: str) -> Iterator[RawRow]:
+    reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
+    before = 0
+    try:
+        for count, cells in enumerate(reader):
+            line, before = before + 1, reader.line_num
+            if count >= MAX_ROWS:
+                raise _too_big(name, f"more than {MAX_ROWS:,} lines")
+            if len(cells) > MAX_COLUMNS:
+                raise _too_big(name, f"a line ({line}) of more than {MAX_COLUMNS} columns")
+            if any(len(cell) > MAX_CELL for cell in cells):
+                raise _too_big(name, f"a cell (line {line}) of more than {MAX_CELL:,} characters")
+            if any(cell.strip() for cell in cells):
+                yield RawRow(line, tuple(cells))
+    except csv.Error:
+        raise UnreadableBills(
+            "the line cannot be split into columns",
+            where=f"{name}:{reader.line_num}",
+            next_step="Look for a quotation mark that is not closed.",
+        ) from None
+
+
+def _too_big(name: str, what: str) -> UnreadableBills:
+    return UnreadableBills(
+        f"the file holds {what}", where=name, next_step="Check that it is a file of bills."
+    )
+
+
+def choose_sheet(found: Sequence[tuple[str, float]], *, name: str, good_enough: float = 1.0) -> str:
+    """The one sheet that looks like bills; asks when several do. found : (sheet, score)."""
+    likely = [sheet for sheet, value in found if value >= good_enough]
+    if len(likely) > 1:
+        names = ", ".join(repr(s[:40]) for s in likely[:8])
+        raise AmbiguousBills(
+            f"{len(likely)} sheets look like bills ({names})",
+            where=name,
+            next_step=f'Name one: sheet = "{likely[0][:40]}" under [[account]] in site.toml, '
+            "or --sheet.",
+        )
+    return likely[0] if likely else max(found, key=lambda pair: pair[1])[0]
