@@ -40,6 +40,11 @@ def at_lines(lines: Sequence[int]) -> str:
     return f"({'line' if len(lines) == 1 else 'lines'} {listed(lines)})"
 
 
+def counts(n: int) -> str:
+    """The verb that goes with a count, in the present: "counts" or "count"."""
+    return "counts" if n == 1 else "count"
+
+
 def was(n: int) -> str:
     """The verb that goes with a count."""
     return "was" if n == 1 else "were"

@@ -19,7 +19,10 @@ def seasons(first: date, last: date, seed: int = 1) -> NDArray[np.float64]:
     """Daily means of an invented place from first to last, both included. °F"""
     n = (last - first).days + 1
     noise = np.random.default_rng(seed).normal(0.0, 8.0, n)
-    return 50.0 - 25.0 * np.cos(2 * np.pi * (np.arange(n) - 20) / 365.25) + noise
+    temp: NDArray[np.float64] = (
+        50.0 - 25.0 * np.cos(2 * np.pi * (np.arange(n) - 20) / 365.25) + noise
+    )
+    return temp
 
 
 def weather(first: date, temp_f: Any, **more: Any) -> DailyTemperature:

@@ -8,6 +8,8 @@ from typing import Any
 
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
 from normalize.days import day_of
 from normalize.errors import AmbiguousWeather, UnreadableWeather, WeatherError
@@ -63,11 +65,19 @@ def test_an_empty_mean_column_gives_way(tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     ("header", "unit"),
     [
-        ("temp_f", "F"), ("TAVG (°F)", "F"), ("Mean Temp (F)", "F"), ("avg temp degF", "F"),
-        ("Mean temperature, Fahrenheit", "F"), ("AvgTempF", "F"), ("temperature_2m_mean (°C)", "C"),
-        ("t_mean_c", "C"), ("Mean Temp (\ufffdC)", "C"), ("Mean Temp (Â°C)", "C"), ("tavg [C]", "C"),
+        ("temp_f", "F"),
+        ("TAVG (°F)", "F"),
+        ("Mean Temp (F)", "F"),
+        ("avg temp degF", "F"),
+        ("Mean temperature, Fahrenheit", "F"),
+        ("AvgTempF", "F"),
+        ("temperature_2m_mean (°C)", "C"),
+        ("t_mean_c", "C"),
+        ("Mean Temp (\ufffdC)", "C"),
+        ("Mean Temp (Â°C)", "C"),
+        ("tavg [C]", "C"),
     ],
-)  # fmt: skip
+)
 def test_units_in_headers(tmp_path: Path, header: str, unit: str) -> None:
     path = write(tmp_path, [f'date,"{header}"', "2023-01-01,10"])
     assert read_weather(path).temp_f[0] == pytest.approx(10.0 if unit == "F" else 50.0)
@@ -188,8 +198,8 @@ def test_unsorted_and_duplicated_days(tmp_path: Path) -> None:
     assert w.n_days == 44
     assert w.temp_f[0] == 30.0
     assert w.filled.tolist()[:4] == [False, False, True, False]
-    assert any("1 day given more than once with one value" in n for n in w.notes)
-    assert any("different temperatures count as missing: 2023-01-03" in n for n in w.notes)
+    assert any("1 day given more than once with one value counts once" in n for n in w.notes)
+    assert any("different temperatures counts as missing: 2023-01-03" in n for n in w.notes)
 
 
 def test_bad_cells_become_missing_with_a_note(tmp_path: Path) -> None:
@@ -201,7 +211,7 @@ def test_bad_cells_become_missing_with_a_note(tmp_path: Path) -> None:
     rows[60] = "2023-02-36,30"
     w = read_weather(write(tmp_path, ["date,mean_f", *rows]))
     text = " ".join(w.notes)
-    assert "(such as 'oops') count as missing (line 12)" in text
+    assert "(such as 'oops') counts as missing (line 12)" in text
     assert "outside -90 to 60 °C" in text
     assert "2 rows were left out because the date cannot be read" in text
     assert "(lines 52, 62)" in text
@@ -306,6 +316,30 @@ def test_hostile_files_give_one_clear_message(tmp_path: Path, name: str) -> None
     assert text.startswith("bad.csv")
     assert "\n" not in text
     assert len(text) < 700
+
+
+@settings(deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(
+    st.binary(max_size=300)
+    | st.text(alphabet='date,mean_fFC;\t\n"0123456789-/: .°', max_size=300).map(str.encode)
+    | st.lists(st.text(alphabet="0123456789-/:., T", max_size=20), max_size=12).map(
+        lambda rows: ("date,mean_f\n" + "\n".join(rows)).encode()
+    )
+)
+def test_any_bytes_give_weather_or_one_message(tmp_path: Path, data: bytes) -> None:
+    path = tmp_path / "bad.csv"
+    path.write_bytes(data)
+    try:
+        w = read_weather(path)
+    except WeatherError as refused:
+        message = str(refused)
+        w = None
+    if w is None:
+        assert message.startswith("bad.csv")
+    else:
+        assert w.temp_f.shape == w.filled.shape
+        assert np.isfinite(w.temp_f[[0, -1]]).all()
+        assert (np.abs(w.temp_f[np.isfinite(w.temp_f)]) <= 140.0).all()
 
 
 def test_what_is_not_there(tmp_path: Path) -> None:

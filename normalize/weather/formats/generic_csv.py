@@ -20,7 +20,7 @@ from normalize.weather.options import WeatherOptions, ask
 from normalize.weather.source import clean_name, decode
 from normalize.weather.stamps import NO_DAY, Stamps, read_stamps
 from normalize.weather.table import Table, read_table
-from normalize.weather.words import at_lines, counted, listed, was
+from normalize.weather.words import at_lines, counted, counts, listed, was
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -181,10 +181,10 @@ def _temperatures(
     odd = sorted({i for column in numbers for i in column.odd})
     if odd:
         at = next(i for i, column in zip(used, numbers, strict=True) if odd[0] in column.odd)
-        example = table.column(at)[odd[0]]
+        example = clean_name(table.column(at)[odd[0]])[:20]
         notes.append(
-            f"{counted(len(odd), 'row')} with text for a temperature (such as "
-            f"{clean_name(example)[:20]!r}) count as missing {at_lines(line[odd].tolist())}."
+            f"{counted(len(odd), 'row')} with text for a temperature (such as {example!r}) "
+            f"{counts(len(odd))} as missing {at_lines(line[odd].tolist())}."
         )
     values = np.array([column.value for column in numbers])
     highest = np.fmax.reduce(values, axis=0)
@@ -200,7 +200,7 @@ def _temperatures(
     if absurd:
         notes.append(
             f"{counted(absurd, 'temperature')} outside -90 to 60 °C (-130 to 140 °F) "
-            f"{'counts' if absurd == 1 else 'count'} as missing."
+            f"{counts(absurd)} as missing."
         )
     return list(temps)
 

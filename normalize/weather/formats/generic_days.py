@@ -11,7 +11,7 @@ from normalize.weather.hours import MIN_HOURS, MINUTES_A_DAY, means_of_days
 from normalize.weather.options import WeatherOptions, ask
 from normalize.weather.stamps import NO_DAY, NO_OFFSET, Stamps
 from normalize.weather.temperature import DailyTemperature
-from normalize.weather.words import counted, listed
+from normalize.weather.words import counted, counts, listed
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -51,7 +51,9 @@ def _drop_crossed(high: NDArray[np.float64], low: NDArray[np.float64], notes: li
     n = int(crossed.sum())
     if n:
         high[crossed] = low[crossed] = np.nan
-        notes.append(f"{counted(n, 'day')} with a maximum below the minimum count as missing.")
+        notes.append(
+            f"{counted(n, 'day')} with a maximum below the minimum {counts(n)} as missing."
+        )
 
 
 def _daily_mean(
@@ -122,13 +124,13 @@ def _resolve_doubles(
         raise _several_stations(f"{differing.size} days", readings.where)
     if same:
         readings.notes.append(
-            f"{counted(same, 'day')} given more than once with one value count once."
+            f"{counted(same, 'day')} given more than once with one value {counts(same)} once."
         )
     if differing.size:
         dates = listed((first + differing).astype("datetime64[D]"))
         readings.notes.append(
             f"{counted(differing.size, 'day')} given more than once with different temperatures "
-            f"count as missing: {dates}."
+            f"{counts(differing.size)} as missing: {dates}."
         )
     return differing
 
@@ -161,12 +163,14 @@ def assemble_hours(
     notes = readings.notes
     if means.repeated:
         notes.append(
-            f"{counted(means.repeated, 'reading')} given twice; those that differ "
-            f"({means.conflicting}) count as missing, the others once."
+            f"{counted(means.repeated, 'reading')} repeated the time of another; where the two "
+            f"differ ({means.conflicting}) both are left out, else one is."
         )
     short = int(np.isnan(temp[means.hours > 0]).sum())
     if short:
-        notes.append(f"{counted(short, 'day')} with fewer than {MIN_HOURS} hours count as missing.")
+        notes.append(
+            f"{counted(short, 'day')} with fewer than {MIN_HOURS} hours {counts(short)} as missing."
+        )
     return _trimmed(station, means.first_day, temp, None, None, METHOD_HOURS, notes)
 
 

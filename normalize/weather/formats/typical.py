@@ -16,7 +16,7 @@ from normalize.errors import UnreadableWeather
 from normalize.weather.degrees import drop_absurd, to_fahrenheit
 from normalize.weather.hours import MIN_HOURS, MINUTES_A_DAY, means_of_days
 from normalize.weather.source import clean_name
-from normalize.weather.words import counted
+from normalize.weather.words import counted, counts
 from normalize.weather.year import MAX_MISSING_DAYS, LongTermYear, month_weights, year_from_sample
 
 if TYPE_CHECKING:
@@ -44,7 +44,9 @@ def typical_year(
     notes = ["A typical year is made of real months from different years: typical, not an average."]
     absurd = drop_absurd(temp_f, source.name, "C")
     if absurd:
-        notes.append(f"{counted(absurd, 'hour')} with an impossible temperature count as missing.")
+        notes.append(
+            f"{counted(absurd, 'hour')} with an impossible temperature {counts(absurd)} as missing."
+        )
     stamp, kept = _stamps(source.name, when)
     if len(kept) < len(when):
         notes.append("February 29 was left out: a long-term year has 365 days.")
