@@ -15,6 +15,7 @@ from pathlib import Path
 import click
 
 ROOT = Path(__file__).parents[1]
+sys.path.insert(0, str(ROOT))  # works from the source tree, installed or not
 CLI = ROOT / "docs" / "cli.md"
 README = ROOT / "README.md"
 BLOCK = re.compile(r"(<!-- begin: (normalize [^>]+) -->\n```text\n)(.*?)(```\n<!-- end -->)", re.S)
@@ -84,4 +85,6 @@ def run(command: str) -> str:
 
 if __name__ == "__main__":
     CLI.write_text(cli_reference(), encoding="utf-8", newline="\n")
+    print(f"wrote {CLI}")
     README.write_text(readme(), encoding="utf-8", newline="\n")
+    print(f"wrote {README}")

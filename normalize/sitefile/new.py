@@ -24,9 +24,9 @@ long_term = { years = 10 }         # a normal year is the mean of so many whole 
 # long_term = { file = "typical_year.epw" }    # or a typical-year file
 # unit = "F"                       # only if the file does not say it
 
-# One [[account]] for each fuel. Bills need the day the meter was read (or the first and last
-# day), the use, and if possible the cost. Fill in bills.csv or bills.xlsx, or name the file
-# that your supplier gave you.
+# One [[account]] for each fuel. Bills need the day on which the meter was read (or the first
+# and last day), the use, and if possible the cost. Fill in bills.csv or bills.xlsx, or name
+# the file that your supplier gave you.
 [[account]]
 name = "gas"
 fuel = "natural gas"               # or "electricity", "heating oil", "propane"
@@ -53,7 +53,8 @@ README_TEXT: Final = """\
 1. Open site.toml in any text editor and write down the building, the fuels and the work.
 2. Put your bills into bills.csv (or bills.xlsx), one line for each bill, at least nine months
    before the work and nine after it; twelve or more are better.
-   start, end   first day of the bill, and the day on which the meter was read at its end
+   start, end   the days on which the meter was read, at the start and at the end of the bill;
+                a bill starts on the day on which the one before it ended
    usage, unit  what was used, and in what: therm, kWh, gallon …
    cost         what it cost, if you have it
    estimated    yes when the meter was not read but guessed

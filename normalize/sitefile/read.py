@@ -44,13 +44,6 @@ WEATHER_KEYS: Final = ("observed", "long_term", "from_bills")
 LONG_TERM_KEYS: Final = ("years", "file")
 
 
-def _sheet(table: Table, key: str) -> object:
-    """A sheet of a workbook: its name, or its number from 1."""
-    if isinstance(table.values.get(key), int):
-        return table.whole(key, low=1, high=1000, unit="sheets")
-    return table.text(key)
-
-
 def _hours(table: Table, key: str) -> object:
     return table.number(key, low=-14.0, high=14.0, unit="hours")
 
@@ -67,9 +60,10 @@ BILL_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "estimated_column": Table.text,
     "temperature_column": Table.text,
     "temperature_unit": Table.text,
-    "sheet": _sheet,
+    "sheet": Table.text,
     "kind": Table.text,
     "rows": Table.text,
+    "decimal": Table.text,
 }
 WEATHER_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "unit": Table.text,

@@ -32,7 +32,7 @@ unit = "therms"
 price = 1.32
 occupied_since = 2021-06-01
 dates = "month first"
-sheet = 2
+sheet = "2023"
 
 [[account]]
 fuel = "electricity"
@@ -82,7 +82,7 @@ def test_every_key_arrives(folder: Path) -> None:
     gas, electricity = file.accounts
     assert (gas.name, gas.fuel, gas.unit, gas.price) == ("gas", "natural gas", "therm", 1.32)
     assert gas.occupied_since == day_of_iso("2021-06-01")
-    assert gas.reader == {"dates": "month first", "sheet": 2}
+    assert gas.reader == {"dates": "month first", "sheet": "2023"}
     assert electricity.name == "electricity"
     assert not electricity.space_heating
     assert electricity.forms == ("flat", "heating and cooling")
