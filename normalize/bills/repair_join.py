@@ -224,7 +224,8 @@ def repair_account(
     groups = _join_estimates(mains, begin, end, total, estimated, net, reason, note, first, last)
     if _median_days(mains, begin, end, first, last, groups) >= _STUB:
         groups = _join_stubs(mains, begin, end, note, first, last, groups)
-    median = _median_days(mains, begin, end, first, last, groups)
+    each = np.arange(mains.shape[0])
+    median = _median_days(mains, begin, end, each, each, mains.shape[0])  # of bills, unjoined
     for g in range(groups):
         low, high = first[g], last[g]
         days = end[mains[high]] - begin[mains[low]]
