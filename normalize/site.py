@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+import os
+import platform
 from dataclasses import dataclass
+from pathlib import Path
 from typing import TYPE_CHECKING
 
-from normalize.sitefile import AccountPlan, Change, Upgrade
+from normalize import defaults
+from normalize.days import iso
+from normalize.errors import NormalizeError, NoUpgrade
+from normalize.sitefile import AccountPlan, Change, SiteFile, Upgrade, read_site_file
 
 if TYPE_CHECKING:
-    from pathlib import Path
-
     import numpy as np
     from numpy.typing import NDArray
 
@@ -124,3 +128,183 @@ class SiteResult:
     cautions: tuple[str, ...]
     settings: tuple[tuple[str, str], ...]  # the defaults that mattered, name and value
     versions: tuple[tuple[str, str], ...]  # normalize, python, numpy, numba
+
+
+def read_site(folder: str | os.PathLike[str]) -> Site:
+    """Read a site's folder: site.toml, weather, the long-term year and every account's bills.
+
+    Bills that cannot be read make their account unavailable, with the reason, and end
+    nothing; site.toml and the weather must be readable.
+    Errors: SiteError, WeatherError and their kinds.
+    """
+    plan = read_site_file(folder)
+    bills, problems = _read_bills(plan)
+    weather = _weather(plan, bills)
+    year, why_not = _year(plan, weather)
+    inputs = [("site.toml", plan.sha256), *weather.source]
+    inputs += year.source if year is not None else ()
+    inputs += [pair for b in bills if b is not None for pair in b.source]
+    return Site(
+        name=plan.name,
+        folder=plan.folder,
+        weather=weather,
+        year=year,
+        year_unavailable=why_not,
+        accounts=plan.accounts,
+        bills=tuple(bills),
+        read_errors=tuple(problems),
+        upgrades=plan.upgrades,
+        changes=plan.changes,
+        floor_area_ft2=plan.floor_area_ft2,
+        currency=plan.currency,
+        inputs=tuple(dict.fromkeys(inputs)),
+    )
+
+
+def _read_bills(plan: SiteFile) -> tuple[list[Bills | None], list[tuple[str, str]]]:
+    from normalize.bills.read import read_bills
+
+    bills: list[Bills | None] = []
+    problems: list[tuple[str, str]] = []
+    for account in plan.accounts:
+        try:
+            bills.append(
+                read_bills(
+                    account.bills,
+                    fuel=account.fuel,
+                    unit=account.unit,
+                    account=account.name,
+                    net_metered=account.net_metered,
+                    currency=plan.currency,
+                    **account.reader,  # type: ignore[arg-type]
+                )
+            )
+        except NormalizeError as err:
+            bills.append(None)
+            problems.append((account.name, str(err)))
+    return bills, problems
+
+
+def _weather(plan: SiteFile, bills: list[Bills | None]) -> DailyTemperature:
+    from normalize.weather.from_bills import temperature_of_bills
+    from normalize.weather.read import read_weather
+
+    if plan.weather.observed is not None:
+        return read_weather(plan.weather.observed, **plan.weather.reader)  # type: ignore[arg-type]
+    for b in bills:
+        if b is not None and b.periods.mean_temp_f is not None:
+            p = b.periods
+            return temperature_of_bills(p.start, p.end, p.mean_temp_f, source=b.source)
+    from normalize.errors import MissingWeather
+
+    raise MissingWeather(
+        "site.toml asks for the temperatures printed on the bills, and no bills carry any",
+        where="site.toml",
+        wanted="a column of mean temperatures in a bill file, or a weather station's file",
+        next_step='Name a station file: observed = "station.csv" under [weather].',
+    )
+
+
+def _year(plan: SiteFile, weather: DailyTemperature) -> tuple[LongTermYear | None, str]:
+    from normalize.weather.year import long_term_year, read_long_term_year
+
+    try:
+        if plan.weather.long_term_file is not None:
+            return read_long_term_year(plan.weather.long_term_file), ""
+        return long_term_year(weather, years=plan.weather.long_term_years), ""
+    except NormalizeError as err:
+        return None, f"there is no long-term year: {err}"
+
+
+def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult:
+    """Every account of a site before and after the work, with totals.
+
+    confidence : two-sided, 0.5 to 0.999.  Errors: NoUpgrade when site.toml names no work.
+    An account without an answer carries its reason and ends nothing.
+    """
+    if not site.upgrades:
+        raise NoUpgrade(
+            "site.toml names no upgrade",
+            where="site.toml",
+            wanted="an [[upgrade]] with a name and a start",
+            next_step='Add [[upgrade]] with name = "…", start = 2023-09-11, end = 2023-09-22.',
+        )
+    failed = dict(site.read_errors)
+    accounts = tuple(
+        _assess_account(site, plan, bills, failed.get(plan.name, ""), confidence)
+        for plan, bills in zip(site.accounts, site.bills, strict=True)
+    )
+    return SiteResult(
+        site=site,
+        confidence=confidence,
+        accounts=accounts,
+        total_normalized=_total(accounts, "normalized"),
+        total_avoided=_total(accounts, "avoided"),
+        cautions=_site_cautions(accounts),
+        settings=_settings(site, confidence),
+        versions=_versions(),
+    )
+
+
+def _assess_account(
+    site: Site, plan: AccountPlan, bills: Bills | None, problem: str, confidence: float
+) -> AccountResult:
+    from normalize.account import assess_account, unread_account
+
+    if bills is None:
+        return unread_account(plan, problem, confidence)
+    return assess_account(site, plan, bills, confidence)
+
+
+def _total(accounts: tuple[AccountResult, ...], kind: str) -> Total:
+    from normalize.savings.totals import Share, total_of
+
+    return total_of(
+        [
+            Share(
+                a.account,
+                getattr(a.savings, kind),
+                a.mmbtu_per_unit.value if a.mmbtu_per_unit else None,
+                a.price.per_unit,
+                a.co2.value if a.co2 else None,
+            )
+            for a in accounts
+        ]
+    )
+
+
+def _site_cautions(accounts: tuple[AccountResult, ...]) -> tuple[str, ...]:
+    from normalize.savings.cautions import site_cautions
+
+    return site_cautions([(a.account, a.savings) for a in accounts])
+
+
+def _settings(site: Site, confidence: float) -> tuple[tuple[str, str], ...]:
+    low, high = defaults.HEATING_RANGE_F
+    cool_low, cool_high = defaults.COOLING_RANGE_F
+    upgrades = "; ".join(f"{u.name}: {iso(u.start)} to {iso(u.end - 1)}" for u in site.upgrades)
+    return (
+        ("confidence, two-sided", f"{confidence:.0%}"),
+        ("work", upgrades),
+        ("baseline and reporting period", "up to the 24 months next to the work"),
+        ("bills needed on a side", f"{defaults.MIN_DAYS_A_SIDE} days, parameters + 3 bills"),
+        ("balance temperature, heating", f"{low:g} to {high:g} °F"),
+        ("balance temperature, cooling", f"{cool_low:g} to {cool_high:g} °F"),
+        ("weights", "days of each bill"),
+        ("choice of form", "Bayesian information criterion (BIC)"),
+        ("long-term year", site.year.name if site.year else site.year_unavailable),
+    )
+
+
+def _versions() -> tuple[tuple[str, str], ...]:
+    import numba
+    import numpy
+
+    import normalize
+
+    return (
+        ("normalize", normalize.__version__),
+        ("python", platform.python_version()),
+        ("numpy", numpy.__version__),
+        ("numba", numba.__version__),
+    )

@@ -1,0 +1,206 @@
+"""One account of a site, assessed: align, compare, price, check, and lay out for reports."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from normalize.errors import NormalizeError
+from normalize.fitting.align import Aligned, align
+from normalize.savings.cautions import Circumstances, cautions_of
+from normalize.savings.checks import checks_of, share_outside
+from normalize.savings.compare import Comparison, compare
+from normalize.savings.offer import forms_offered
+from normalize.savings.results import Estimate, Price, Savings
+from normalize.savings.sides import REASONS, Work
+from normalize.savings.worth import price_of
+from normalize.site import AccountResult, Curve, PeriodRow, Site
+from normalize.sitefile import AccountPlan
+from normalize.units import Factor, co2_kg_per_unit, mmbtu_per_unit
+
+if TYPE_CHECKING:
+    from normalize.bills.periods import Bills
+    from normalize.fitting.results import Fit
+
+NEAR_WORK_DAYS = 60
+CURVE_POINTS = 121
+
+
+def unread_account(plan: AccountPlan, problem: str, confidence: float) -> AccountResult:
+    """An account whose bills could not be read at all."""
+    reason = f"its bills could not be read: {problem}"
+    none = Estimate.none(reason, confidence=confidence)
+    return AccountResult(
+        account=plan.name,
+        fuel=plan.fuel,
+        unit=plan.unit or "",
+        bills=None,
+        unavailable=reason,
+        periods=(),
+        tried_before=(),
+        tried_after=(),
+        savings=Savings(None, None, none, none, none, none, reason, reason),
+        curve_before=None,
+        curve_after=None,
+        price=Price(plan.price, "site file" if plan.price is not None else "", None),
+        co2=None,
+        mmbtu_per_unit=None,
+        checks=(),
+        cautions=(),
+    )
+
+
+def assess_account(
+    site: Site, plan: AccountPlan, bills: Bills, confidence: float
+) -> AccountResult:
+    """One account before and after the upgrades that touch it."""
+    aligned = align(bills.periods, site.weather)
+    work = work_on(site, plan.name)
+    found = compare(
+        aligned,
+        work,
+        site.year,
+        confidence=confidence,
+        forms=forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms),
+        occupied_since=plan.occupied_since,
+        net_metered=plan.net_metered,
+        year_unavailable=site.year_unavailable,
+    )
+    savings = found.savings
+    price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
+    unavailable = ""
+    if not savings.normalized.available and not savings.avoided.available:
+        unavailable = savings.normalized.unavailable or ""
+    return AccountResult(
+        account=plan.name,
+        fuel=bills.fuel,
+        unit=bills.unit,
+        bills=bills,
+        unavailable=unavailable,
+        periods=period_rows(bills, aligned, found),
+        tried_before=found.tried_before,
+        tried_after=found.tried_after,
+        savings=savings,
+        curve_before=_curve(savings.before, aligned),
+        curve_after=_curve(savings.after, aligned),
+        price=price,
+        co2=_co2(plan, bills),
+        mmbtu_per_unit=_mmbtu(bills),
+        checks=checks_of(
+            savings,
+            outside_share=_outside(site, aligned, found),
+            n_after=sum(1 for label in found.labels if label == "after"),
+        ),
+        cautions=cautions_of(savings, price, _circumstances(site, bills, found, work)),
+        work_start=work.start,
+        work_end=work.end,
+    )
+
+
+def work_on(site: Site, account: str) -> Work:
+    """From the first to the last day of the upgrades that touch an account."""
+    mine = [u for u in site.upgrades if not u.accounts or account in u.accounts]
+    touching = mine or list(site.upgrades)
+    return Work(
+        start=min(u.start for u in touching),
+        end=max(u.end for u in touching),
+        windows=tuple((u.start, u.end) for u in touching),
+    )
+
+
+def period_rows(bills: Bills, aligned: Aligned, found: Comparison) -> tuple[PeriodRow, ...]:
+    """Every period with its side, its fitted use and what it would have been without the work."""
+    p = bills.periods
+    own = {"before": found.savings.before, "after": found.savings.after}
+    rows = []
+    for i in range(p.n):
+        label = found.labels[i]
+        days = int(p.end[i] - p.start[i])
+        cut = slice(
+            int(p.start[i]) - aligned.weather.first_day, int(p.end[i]) - aligned.weather.first_day
+        )
+        temp = aligned.weather.temp_f[cut] if not np.isnan(aligned.mean_temp_f[i]) else None
+        rows.append(
+            PeriodRow(
+                number=i + 1,
+                start=int(p.start[i]),
+                end=int(p.end[i]),
+                use=float(p.use[i]),
+                cost=float(p.cost[i]),
+                estimated=bool(p.estimated[i]),
+                joined=int(p.joined[i]),
+                side=label,
+                reason=aligned.reason[i] if label == "set aside" else REASONS[label],
+                mean_temp_f=float(aligned.mean_temp_f[i]),
+                use_per_day=float(p.use[i]) / days,
+                fitted_per_day=_expected(own.get(label), temp),
+                without_work_per_day=_expected(found.savings.before, temp),
+            )
+        )
+    return tuple(rows)
+
+
+def _expected(fit: Fit | None, temp: np.ndarray | None) -> float:
+    if fit is None or temp is None:
+        return float("nan")
+    return float(fit.predict(temp).mean())
+
+
+def _curve(fit: Fit | None, aligned: Aligned) -> Curve | None:
+    if fit is None:
+        return None
+    seen = aligned.weather.temp_f[~np.isnan(aligned.weather.temp_f)]
+    if seen.shape[0] == 0:
+        return None
+    grid = np.linspace(float(seen.min()), float(seen.max()), CURVE_POINTS)
+    knees = [t for t in (fit.balance_heating_f, fit.balance_cooling_f) if t is not None]
+    grid = np.unique(np.append(grid, knees))
+    return Curve(grid, fit.predict(grid))
+
+
+def _outside(site: Site, aligned: Aligned, found: Comparison) -> float | None:
+    if site.year is None:
+        return None
+    seen = [
+        aligned.weather.temp_f[
+            int(aligned.start[i]) - aligned.weather.first_day : int(aligned.end[i])
+            - aligned.weather.first_day
+        ]
+        for i, label in enumerate(found.labels)
+        if label == "before"
+    ]
+    together = np.concatenate(seen) if seen else np.empty(0)
+    return share_outside(site.year.temp_f, site.year.weight, together)
+
+
+def _circumstances(site: Site, bills: Bills, found: Comparison, work: Work) -> Circumstances:
+    near = any(
+        row.estimated and row.end is not None and abs(row.end - work.start) <= NEAR_WORK_DAYS
+        for row in bills.rows
+    )
+    return Circumstances(
+        fuel=bills.fuel,
+        by_bill=site.weather.by_bill,
+        delivered=bills.kind == "delivery",
+        estimated_near_work=near,
+        changes=tuple(c.what for c in site.changes),
+        held=found.held,
+        bill_cautions=bills.cautions,
+    )
+
+
+def _co2(plan: AccountPlan, bills: Bills) -> Factor | None:
+    if plan.co2_kg_per_unit is not None:
+        return Factor(plan.co2_kg_per_unit, f"kg/{bills.unit}", "site file", "")
+    try:
+        return co2_kg_per_unit(bills.fuel, bills.unit)
+    except NormalizeError:
+        return None
+
+
+def _mmbtu(bills: Bills) -> Factor | None:
+    try:
+        return mmbtu_per_unit(bills.fuel, bills.unit)
+    except NormalizeError:
+        return None

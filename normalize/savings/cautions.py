@@ -1,0 +1,151 @@
+"""How people get fooled, said where it applies."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from normalize.fitting.results import Fit
+from normalize.savings.results import Price, Savings
+from normalize.savings.worth import AVERAGE
+
+POOR_TAU_F = 8.0  # a profile range wider than this is worth a word
+WARM_F, COOL_F = 68.0, 48.0  # usual balance temperatures lie well inside (common practice)
+BIG_CHANGE = 0.50  # program evaluation reviews changes beyond 50-65 % (memory)
+
+
+@dataclass(frozen=True, slots=True)
+class Circumstances:
+    """What cautions depend on, beyond the savings themselves.
+
+    by_bill : temperatures are the bills' own means.  delivered : dealer deliveries.
+    estimated_near_work : an estimated reading ended within 60 days of the work.
+    changes : what else the site file says changed.
+    held : balance temperature held (before, after).
+    """
+
+    fuel: str
+    by_bill: bool
+    delivered: bool
+    estimated_near_work: bool
+    changes: tuple[str, ...]
+    held: tuple[bool, bool]
+    bill_cautions: tuple[str, ...] = ()
+
+
+def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[str, ...]:
+    """Cautions of one account, the most important first."""
+    out: list[str] = []
+    out += _forms(savings)
+    out += _size(savings)
+    for which, fit, held in zip(
+        ("before", "after"), (savings.before, savings.after), about.held, strict=True
+    ):
+        if fit is not None:
+            out += _fit(which, fit, held)
+    if about.estimated_near_work:
+        out.append(
+            "An estimated reading fell near the work: its error moves use from one side to the "
+            "other until the next actual reading."
+        )
+    if about.by_bill:
+        out.append(
+            "Temperatures are the means printed on the bills: a mean hides the days on either "
+            "side of the balance temperature, so slopes are a little off in mild months."
+        )
+    if about.delivered:
+        out.append(
+            "Fuel was delivered, not metered: use is known only between full fills, and a "
+            "“full” tank is full to within a few units."
+        )
+    if price.source == AVERAGE:
+        out.append(
+            "The price is the bills' average and contains the fixed charge, which no saving "
+            "saves: money is overstated. Give the price of the last unit as price = …."
+        )
+    for change in about.changes:
+        out.append(f"Something else changed too: {change}. It is in the number.")
+    out += about.bill_cautions
+    return tuple(dict.fromkeys(out))
+
+
+def _forms(savings: Savings) -> list[str]:
+    if savings.before is None or savings.after is None:
+        return []
+    if savings.before.form == savings.after.form or not savings.same_form:
+        return []
+    answers = []
+    for form, e in savings.same_form:
+        if e.value is None or e.low is None or e.high is None:
+            answers.append(f"“{form}” on both sides: {e.unavailable}")
+        else:
+            answers.append(f"“{form}” on both sides: {e.value:.0f} ({e.low:.0f} to {e.high:.0f})")
+    return [
+        f"The form changed from “{savings.before.form}” before to “{savings.after.form}” after "
+        "the work, so part of the difference may be the change of form. " + "; ".join(answers) + "."
+    ]
+
+
+def _size(savings: Savings) -> list[str]:
+    share = savings.normalized.fraction
+    if share is None:
+        share = savings.avoided.fraction
+    if share is None or abs(share) < BIG_CHANGE:
+        return []
+    if share > 0:
+        return [
+            "Use fell by more than half: make sure that this is the work and not an empty "
+            "building, a failed heating system or another fuel taking over."
+        ]
+    return [
+        "Use rose by more than half: look for another fuel that it replaced, and read energy, "
+        "cost and carbon of all fuels together."
+    ]
+
+
+def _fit(which: str, fit: Fit, held: bool) -> list[str]:
+    out = []
+    if held:
+        out.append(
+            f"The bills {which} the work do not tell the balance temperature apart from the "
+            "rest, so it was held at its best value and the range is too narrow by that."
+        )
+    for kind, tau, span in (
+        ("heating", fit.balance_heating_f, fit.balance_heating_range_f),
+        ("cooling", fit.balance_cooling_f, fit.balance_cooling_range_f),
+    ):
+        if tau is None:
+            continue
+        if span is not None and span[1] - span[0] > POOR_TAU_F:
+            out.append(
+                f"The balance temperature for {kind} {which} the work is poorly placed: "
+                f"anything from {span[0]:.0f} to {span[1]:.0f} °F fits about as well."
+            )
+        if kind == "heating" and not COOL_F <= tau <= WARM_F:
+            out.append(
+                f"A balance temperature of {tau:.0f} °F for heating is unusual (55–65 °F is "
+                "customary): check the bills and the weather station."
+            )
+    if fit.on_bound:
+        out.append(
+            f"A balance temperature {which} the work lies on the edge of where it may be; read "
+            "it as “at or beyond”."
+        )
+    return out
+
+
+def site_cautions(saved: Sequence[tuple[str, Savings]]) -> tuple[str, ...]:
+    """Cautions that need all accounts of a site side by side."""
+    fell = [n for n, s in saved if s.normalized.verdict == "reduction"]
+    rose = [n for n, s in saved if s.normalized.verdict == "increase"]
+    out = []
+    if fell and rose:
+        out.append(
+            f"{' and '.join(fell)} fell while {' and '.join(rose)} rose: the fuels traded "
+            "places, so look at energy, cost and carbon together."
+        )
+    out.append(
+        "If the work was done because a bill had been unusually high, use would have come down "
+        "somewhat without it."
+    )
+    return tuple(out)

@@ -1,0 +1,293 @@
+"""Before against after for one account: the third of the four hops."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from normalize.bills.periods import Bills
+from normalize.defaults import CONFIDENCE, SHORT_YEAR_DAYS
+from normalize.errors import NoUpgrade
+from normalize.fitting import forms as f
+from normalize.fitting.align import Aligned, align
+from normalize.fitting.batch import Batch, Stations, gate, settings
+from normalize.fitting.columns import AFTER, BASE, BEFORE, BIC
+from normalize.fitting.describe import as_tried
+from normalize.fitting.fit import CHOICE, also_tried, batch_of_one, chosen_of, side_data
+from normalize.fitting.results import FormTried
+from normalize.savings.enough import SideFacts, after_reason, before_reason
+from normalize.savings.kernel import (
+    ACTUAL,
+    AVOIDED,
+    HELD_AFTER,
+    HELD_BEFORE,
+    NAC_AFTER,
+    NAC_BEFORE,
+    NORMALIZED,
+    PREDICTED,
+    compare_batch,
+)
+from normalize.savings.results import Estimate, Savings
+from normalize.savings.sides import Work, codes, label_periods
+from normalize.weather.temperature import DailyTemperature
+from normalize.weather.year import LongTermYear
+
+METHOD = (
+    "balance temperature and serial correlation of the bills both integrated over "
+    "(restricted likelihood, first-order autoregression, Student t)"
+)
+METHOD_HELD = METHOD + "; the balance temperature was held, because the bills do not place it"
+METHOD_AVOIDED = (
+    "the baseline fit's uncertainty and the bills' noise, serial correlation integrated over; "
+    "the reporting period's bills are taken as they are"
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Comparison:
+    """Savings of one account with everything that was tried on the way."""
+
+    savings: Savings
+    tried_before: tuple[FormTried, ...]
+    tried_after: tuple[FormTried, ...]
+    labels: tuple[str, ...]
+    held: tuple[bool, bool]
+
+
+def run_batch(
+    batch: Batch,
+    table: Stations,
+    years: Sequence[LongTermYear | None],
+    *,
+    confidence: float,
+    tried: NDArray[np.bool_] | None = None,
+    forced: tuple[int, int] = (-1, -1),
+    weights: str = "days",
+    criterion: int = BIC,
+) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.float64]]:
+    """The compiled comparison over a ragged batch; years are those of the stations, in order.
+
+    Returns fits (accounts, 2, forms, columns), chosen (accounts, 2), answers (accounts, …).
+    """
+    offered = np.ascontiguousarray(batch.wanted, dtype=np.bool_)
+    wanted = offered if tried is None else np.ascontiguousarray(offered | tried)
+    temp = [y.temp_f if y else np.empty(0) for y in years]
+    days = [y.cum_days if y else np.zeros(1) for y in years]
+    degrees = [y.cum_degrees if y else np.zeros(1) for y in years]
+    force = np.tile(np.array(forced, dtype=np.int8), (offered.shape[0], 1))
+    return compare_batch(
+        *gate(batch), offered, wanted, np.ascontiguousarray(batch.net, dtype=np.bool_), force,
+        table.temp, table.order, table.offsets, table.first_day,
+        np.concatenate(temp).astype(np.float64), _offsets(temp),
+        np.concatenate(days).astype(np.float64), np.concatenate(degrees).astype(np.float64),
+        _offsets(days), settings(), criterion, weights == "equal", float(confidence),
+    )  # fmt: skip
+
+
+def _offsets(arrays: Sequence[NDArray[np.float64]]) -> NDArray[np.int64]:
+    return np.concatenate([[0], np.cumsum([a.shape[0] for a in arrays])]).astype(np.int64)
+
+
+def compare(
+    aligned: Aligned,
+    work: Work,
+    year: LongTermYear | None,
+    *,
+    confidence: float = CONFIDENCE,
+    forms: Sequence[str] | None = None,
+    occupied_since: int | None = None,
+    net_metered: bool = False,
+    year_unavailable: str = "",
+) -> Comparison:
+    """Fit both sides of the work and set one against the other.
+
+    year : the long-term year, or None with the reason in ``year_unavailable``.
+    forms : names offered to the choice.  Source: docs/method.md §3-§5.
+    """
+    offered = tuple(forms) if forms is not None else CHOICE
+    labels = label_periods(aligned, work, occupied_since=occupied_since)
+    batch, table = batch_of_one(aligned, codes(labels), offered, net_metered)
+    fits, chosen, answers = run_batch(
+        batch, table, [year], confidence=confidence, tried=also_tried()
+    )
+    tried = tuple(
+        as_tried(
+            fits[0, code],
+            batch.wanted[0],
+            int(chosen[0, code]),
+            side_data(batch, table, code),
+            _set_aside(aligned, labels, work, code),
+            "bic",
+        )
+        for code in (BEFORE, AFTER)
+    )
+    facts = tuple(
+        SideFacts.of(aligned, labels, name, tried[i], offered)
+        for i, name in enumerate(("before", "after"))
+    )
+    savings = _assemble(
+        answers[0], tried, facts, work, year, year_unavailable, confidence,
+        _same_form(batch, table, year, fits[0], chosen[0], confidence),
+    )  # fmt: skip
+    held = (answers[0, HELD_BEFORE] == 1.0, answers[0, HELD_AFTER] == 1.0)
+    return Comparison(savings, tried[0], tried[1], labels, held)
+
+
+def _set_aside(aligned: Aligned, labels: tuple[str, ...], work: Work, code: int) -> int:
+    early = aligned.start < work.start
+    side = early if code == BEFORE else ~early
+    return sum(1 for i, label in enumerate(labels) if label == "set aside" and side[i])
+
+
+def _same_form(
+    batch: Batch,
+    table: Stations,
+    year: LongTermYear | None,
+    fits: NDArray[np.float64],
+    chosen: NDArray[np.int8],
+    confidence: float,
+) -> tuple[tuple[str, Estimate], ...]:
+    """When the forms differ: the answer with each of the two on both sides (method §7)."""
+    if year is None or chosen.min() < 0 or chosen[0] == chosen[1]:
+        return ()
+    out = []
+    for code in (int(chosen[0]), int(chosen[1])):
+        if np.isnan(fits[0, code, BASE]) or np.isnan(fits[1, code, BASE]):
+            reason = "this form could not be fitted on both sides"
+            out.append((f.BY_CODE[code].name, Estimate.none(reason, confidence=confidence)))
+            continue
+        mask = np.zeros((1, f.N_FORMS), dtype=np.bool_)
+        mask[0, code] = True
+        _, _, answers = run_batch(
+            batch, table, [year], confidence=confidence, tried=mask, forced=(code, code)
+        )
+        out.append((f.BY_CODE[code].name, _normalized(answers[0], confidence, METHOD)))
+    return tuple(out)
+
+
+def _estimate(
+    answer: NDArray[np.float64], at: int, over: float | None, confidence: float, method: str
+) -> Estimate:
+    value, low, high, plain_low, plain_high = (float(x) for x in answer[at : at + 5])
+    share = over if over is not None and over > 0.0 else None
+    return Estimate(
+        value=value,
+        low=low,
+        high=high,
+        fraction=value / share if share else None,
+        fraction_low=low / share if share else None,
+        fraction_high=high / share if share else None,
+        plain_low=plain_low,
+        plain_high=plain_high,
+        confidence=confidence,
+        method=method,
+    )
+
+
+def _normalized(answer: NDArray[np.float64], confidence: float, method: str) -> Estimate:
+    return _estimate(answer, NORMALIZED, float(answer[NAC_BEFORE]), confidence, method)
+
+
+def _assemble(
+    answer: NDArray[np.float64],
+    tried: tuple[tuple[FormTried, ...], ...],
+    facts: tuple[SideFacts, ...],
+    work: Work,
+    year: LongTermYear | None,
+    year_unavailable: str,
+    confidence: float,
+    same_form: tuple[tuple[str, Estimate], ...],
+) -> Savings:
+    before_no, _ = before_reason(facts[0])
+    after_no, known_from = after_reason(facts[1], work)
+    held = answer[HELD_BEFORE] == 1.0 or answer[HELD_AFTER] == 1.0
+    method = METHOD_HELD if held else METHOD
+    no_year = "" if year is not None else (year_unavailable or "there is no long-term year")
+
+    def side(at: int, reason: str, when: int | None) -> Estimate:
+        if reason:
+            return Estimate.none(reason, known_from=when, confidence=confidence)
+        return _estimate(answer, at, None, confidence, method)
+
+    normalized_no = before_no or no_year or after_no
+    days = facts[1].days
+    if before_no:
+        avoided = Estimate.none(before_no, confidence=confidence)
+    elif facts[1].n == 0:
+        reason = "there are no usable bills after the work yet"
+        avoided = Estimate.none(reason, known_from=facts[1].first_known, confidence=confidence)
+    else:
+        avoided = _estimate(
+            answer, AVOIDED, float(answer[PREDICTED]), confidence,
+            METHOD_AVOIDED + ("; balance temperature held" if held else ""),
+        )  # fmt: skip
+        if days < SHORT_YEAR_DAYS:
+            avoided = _so_far(avoided)
+    return Savings(
+        before=None if before_no else chosen_of(tried[0]),
+        after=None if after_no else chosen_of(tried[1]),
+        nac_before=side(NAC_BEFORE, before_no or no_year, None),
+        nac_after=side(NAC_AFTER, after_no or no_year or before_no, known_from),
+        normalized=(
+            Estimate.none(
+                normalized_no,
+                known_from=known_from if not (before_no or no_year) else None,
+                confidence=confidence,
+            )
+            if normalized_no
+            else _normalized(answer, confidence, method)
+        ),
+        avoided=avoided,
+        before_unavailable=before_no,
+        after_unavailable=after_no,
+        predicted_use=float(answer[PREDICTED]) if avoided.available else None,
+        actual_use=float(answer[ACTUAL]) if avoided.available else None,
+        reporting_days=days,
+        same_form=() if normalized_no else same_form,
+    )
+
+
+def _so_far(estimate: Estimate) -> Estimate:
+    from dataclasses import replace
+
+    return replace(estimate, so_far=True)
+
+
+def measure_savings(
+    bills: Bills,
+    weather: DailyTemperature,
+    *,
+    upgrade: tuple[int, int],
+    long_term: LongTermYear | None,
+    confidence: float = CONFIDENCE,
+    forms: Sequence[str] | None = None,
+    occupied_since: int | None = None,
+    net_metered: bool = False,
+) -> Savings:
+    """How much an account's use changed after the work.
+
+    upgrade : day numbers ``[start, end)`` of the work window.  long_term : see
+    ``long_term_year``; None leaves only avoided use.  confidence : two-sided, 0.5 to 0.999.
+    Returns Savings; a part that cannot be known carries its reason instead of a value.
+    Errors: NoUpgrade when the window is empty.  Source: docs/method.md §3-§5.
+    """
+    start, end = upgrade
+    if end <= start:
+        raise NoUpgrade(
+            f"the work ends (day {end}) before it starts (day {start})",
+            wanted="the first day of work, and the day after its last",
+        )
+    if not 0.5 <= confidence <= 0.999:
+        raise NoUpgrade(f"confidence {confidence}", wanted="a share between 0.5 and 0.999")
+    return compare(
+        align(bills.periods, weather),
+        Work(start, end),
+        long_term,
+        confidence=confidence,
+        forms=forms,
+        occupied_since=occupied_since,
+        net_metered=net_metered,
+    ).savings
