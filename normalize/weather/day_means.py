@@ -6,15 +6,12 @@ degree-days.  All are per day, elementwise, NaN where either temperature is NaN.
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Final
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
-
-
-_DUST: Final = 1e-9  # tenths of °C turned to °F may fall this little short of a half degree
 
 
 def exact_mean(max_f: ArrayLike, min_f: ArrayLike) -> NDArray[np.float64]:
@@ -34,8 +31,8 @@ def whole_degree_mean(max_f: ArrayLike, min_f: ArrayLike) -> NDArray[np.float64]
     >>> whole_degree_mean([68.0, 72.0], [53.0, 62.0]).tolist()
     [61.0, 67.0]
     """
-    high = _half_up(np.asarray(max_f, dtype=np.float64) + _DUST)
-    low = _half_up(np.asarray(min_f, dtype=np.float64) + _DUST)
+    high = _half_up(np.asarray(max_f, dtype=np.float64))
+    low = _half_up(np.asarray(min_f, dtype=np.float64))
     return _half_up((high + low) / 2)
 
 
