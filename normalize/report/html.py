@@ -188,7 +188,7 @@ def _side(
         return _Side(
             side, f"There is no fit {side} the work: {words.stop(reason)}", "", None, forms
         )
-    unit = words.unit_word(account.unit, one=True)
+    unit = words.unit_word(account.unit)
     from_bills = f"{fit.n_periods} periods, {fit.n_days:,} days"
     aside = f", {fit.set_aside} set aside" if fit.set_aside else ""
     sentence = f"{words.upper(side)} the work ({from_bills}{aside}): {tables.form_words(fit.form)}."

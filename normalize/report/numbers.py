@@ -25,6 +25,7 @@ MONTHS: Final = (
 )  # fmt: skip
 
 MIN_MASKED_DIGITS: Final = 6  # shorter runs are house numbers, years and amounts
+MIN_MASKED_GROUPED: Final = 8  # in groups ("1234-5678"); shorter ones name standards ("14-2014")
 SHOWN_DIGITS: Final = 4  # enough to tell one's own accounts apart (common practice, no source)
 MAX_NAME: Final = 200  # a longer name is cut; nobody reads it and it can break a page
 MAX_TEXT: Final = 2000  # so is a sentence
@@ -35,7 +36,11 @@ _DIGITS = re.compile(
     r"|\d+\.\d+"  # an amount with decimals: kept
     r"|\d(?:[ \-]?\d)+"
 )
-_DATE8 = re.compile(r"(19|20)\d\d(0[1-9]|1[0-2])(0[1-9]|[12]\d|3[01])")
+_DATES = re.compile(
+    r"\d{4}-\d{2}-\d{2}"
+    r"|(19|20)\d\d(0[1-9]|1[0-2])(0[1-9]|[12]\d|3[01])"  # without hyphens
+    r"|(19|20)\d\d[- ](19|20)\d\d"  # from year to year
+)
 _BIDI = frozenset("\u061c\u200e\u200f\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
 
 CURRENCY_SIGNS: Final = {"USD": "$", "EUR": "€", "GBP": "£"}
@@ -94,12 +99,11 @@ def mask(text: str) -> str:
 
 def _masked(match: re.Match[str]) -> str:
     text = match.group()
-    digits = [c for c in text if c.isdigit()]
-    if "," in text or "." in text or len(digits) < MIN_MASKED_DIGITS:
+    digits = "".join(c for c in text if c.isdigit())
+    least = MIN_MASKED_DIGITS if digits == text else MIN_MASKED_GROUPED
+    if "," in text or "." in text or len(digits) < least or _DATES.fullmatch(text):
         return text
-    if re.fullmatch(r"\d{4}-\d{2}-\d{2}", text) or _DATE8.fullmatch(text):
-        return text
-    return "\u2026" + "".join(digits[-SHOWN_DIGITS:])
+    return f"\u2026{digits[-SHOWN_DIGITS:]}"
 
 
 def to_ascii(text: str) -> str:

@@ -65,21 +65,23 @@ class Picture:
 
     def inline(self) -> str:
         """The figure for a page that brings its own type and colours."""
-        return self._wrapped(style="")
+        return self._wrapped("").replace(" xlink:href=", " href=")
 
     def standalone(self) -> str:
         """The figure as a file of its own."""
-        style = f" font-family='{look.SERIF}' fill='{look.INK}'".replace('"', "&quot;")
-        return f'<?xml version="1.0" encoding="UTF-8"?>\n{self._wrapped(style=style)}\n'
+        spaces = (
+            ' xmlns="http://www.w3.org/2000/svg" xmlns:xlink="http://www.w3.org/1999/xlink"'
+            f' font-family="{escaped(look.SERIF)}" fill="{look.INK}"'
+        )
+        return f'<?xml version="1.0" encoding="UTF-8"?>\n{self._wrapped(spaces)}\n'
 
-    def _wrapped(self, style: str) -> str:
+    def _wrapped(self, attributes: str) -> str:
         key, box = self.key, f"0 0 {self.width:g} {self.height:g}"
         return (
-            '<svg xmlns="http://www.w3.org/2000/svg" xmlns:xlink="http://www.w3.org/1999/xlink" '
-            f'viewBox="{box}" width="{self.width:g}" height="{self.height:g}" role="img" '
-            f'aria-labelledby="{key}-t {key}-d"{style}>'
-            f'<title id="{key}-t">{escaped(self.title)}</title>'
-            f'<desc id="{key}-d">{escaped(self.alt)}</desc>{self.body}</svg>'
+            f'<svg{attributes} viewBox="{box}" width="{self.width:g}" height="{self.height:g}" '
+            f'role="img" aria-labelledby="{key}-t {key}-d">'
+            f'<title id="{key}-t">{escaped(n.clean(self.title))}</title>'
+            f'<desc id="{key}-d">{escaped(n.clean(self.alt))}</desc>{self.body}</svg>'
         )
 
 

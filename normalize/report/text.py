@@ -178,7 +178,7 @@ def _statistics(account: AccountResult, result: SiteResult, sheet: _Sheet) -> It
             reason = n.clean(why) or "no reason given"
             yield from sheet.wrap(f"No fit {side} the work: {reason}.")
         else:
-            unit = words.unit_word(account.unit, one=True)
+            unit = words.unit_word(account.unit)
             yield from sheet.table(tables.coefficients_table(fit, unit, side))
         if tried:
             yield from ["", f"Forms tried, {side} the work"]

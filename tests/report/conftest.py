@@ -220,7 +220,8 @@ def checks_of(fit: Fit, side: str) -> tuple[Check, ...]:
         ),
         Check(
             "share of heating degree-days outside the weather seen", side, 0.012, 0.10, None,
-            "the fit is hardly stretched beyond the weather it saw", "", "common practice, no source",
+            "the fit is hardly stretched beyond the weather it saw", "",
+            "common practice, no source",
         ),
     )  # fmt: skip
 
@@ -259,7 +260,8 @@ def make_account(
              "a fit with a higher AICc than the one chosen (22.1 against −31.3)"),
             ("heating", before, ""),
             ("cooling", None, "offered only when asked for"),
-            ("heating and cooling", None, "a slope cannot be told from zero (|t| 0.6, 2 is wanted)"),
+            ("heating and cooling", None,
+             "a slope cannot be told from zero (|t| 0.6, 2 is wanted)"),
         )
     )  # fmt: skip
     return AccountResult(
