@@ -25,6 +25,7 @@ FLOORS = (
     ("cli", "page"),
 )
 FLOOR = {room: number for number, rooms in enumerate(FLOORS) for room in rooms}
+SAME_ROOM = {"account": "site"}  # one account of a site, in a file of its own
 ENTRANCES = {"__init__", "__main__"}  # of the package itself: doors to everything, lazily
 
 MAX_LINES = 600  # the aim is 400
@@ -41,7 +42,8 @@ def modules() -> list[Path]:
 
 
 def room_of(path: Path) -> str:
-    return path.relative_to(PACKAGE).with_suffix("").parts[0]
+    name = path.relative_to(PACKAGE).with_suffix("").parts[0]
+    return SAME_ROOM.get(name, name)
 
 
 def is_type_checking(node: ast.AST) -> bool:
@@ -83,9 +85,8 @@ def imports(path: Path, *, typing_too: bool = False, functions_too: bool = True)
 
 def rooms_imported(path: Path, *, typing_too: bool) -> set[str]:
     names = (name.split(".") for name in imports(path, typing_too=typing_too))
-    return {parts[1] for parts in names if parts[0] == "normalize" and len(parts) > 1} - {
-        "__version__"
-    }
+    rooms = {parts[1] for parts in names if parts[0] == "normalize" and len(parts) > 1}
+    return {SAME_ROOM.get(room, room) for room in rooms} - {"__version__"}
 
 
 def test_every_room_has_its_floor() -> None:
