@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
-from normalize.report import figure_time, look, marks, svg, words
+from normalize.report import axes as axes_by_hand
+from normalize.report import look, marks, svg, words
 from normalize.report import numbers as n
 
 if TYPE_CHECKING:
@@ -42,8 +43,8 @@ def residuals_figure(account: AccountResult, key: str) -> svg.Picture | None:
         ys = [v for _, y, _ in points for v in (0.0, y, float("nan"))]
         axes.plot(xs, ys, color=look.RULE, linewidth=1.6)
         marks.draw_marks(axes, points)
-        figure_time.time_axis(axes, first, last)
-        marks.number_axis(axes, "y")
+        axes_by_hand.time_axis(axes, first, last)
+        axes_by_hand.number_axis(axes, "y")
         figure.text(
             0.0, 1.0 - (TOP - 14.0) / HEIGHT, svg.drawn(f"{unit} a day above or below its own fit"),
             fontsize=look.SMALL_SIZE, color=look.QUIET,

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
+from normalize.report import axes as axes_by_hand
 from normalize.report import look, marks, svg, words
 from normalize.report import numbers as n
 
@@ -108,8 +109,6 @@ def _panels(figure: Figure, unit: str) -> tuple[Axes, Axes]:
     strip = svg.panel(figure, LEFT, BOTTOM, wide, STRIP, of=HEIGHT)
     strip.spines["left"].set_visible(False)
     strip.set_ylim(0.0, 1.0)
-    strip.set_yticks([])
-    axes.set_xticks([])
     figure.text(
         0.0,
         1.0 - (TOP - 12.0) / HEIGHT,
@@ -117,14 +116,7 @@ def _panels(figure: Figure, unit: str) -> tuple[Axes, Axes]:
         fontsize=look.SMALL_SIZE,
         color=look.QUIET,
     )
-    strip.set_xlabel(
-        "mean outdoor temperature of the bill’s days, °F",
-        fontsize=look.SMALL_SIZE,
-        color=look.QUIET,
-        labelpad=4,
-    )
-    marks.number_axis(axes, "y")
-    marks.number_axis(strip, "x", most=10)
+    axes_by_hand.name_below(strip, "mean outdoor temperature of the bill’s days, °F")
     return axes, strip
 
 
@@ -193,6 +185,8 @@ def _limits(
     right = high + (room if end == "right" else margin)
     axes.set_xlim(left, right)
     strip.set_xlim(left, right)
+    axes_by_hand.number_axis(axes, "y")
+    axes_by_hand.number_axis(strip, "x", most=10)
     return end
 
 

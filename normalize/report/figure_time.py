@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any, Final
 
-from normalize.days import date_of, day_of_iso
+from normalize.report import axes as axes_by_hand
 from normalize.report import look, marks, svg, words
 from normalize.report import numbers as n
 
@@ -20,9 +20,6 @@ HEIGHT: Final = 330.0
 LEFT: Final = 46.0
 BOTTOM: Final = 30.0
 TOP: Final = 84.0
-MOST_YEARS: Final = 12  # labelled one by one; more are thinned
-EDGE: Final = 0.05  # share of the axis in which a centred label would not fit
-SHORT_DAYS: Final = 500  # below this, months are labelled
 
 
 def time_figure(account: AccountResult, key: str) -> svg.Picture | None:
@@ -41,8 +38,8 @@ def time_figure(account: AccountResult, key: str) -> svg.Picture | None:
         marks.draw_marks(axes, middles)
         _limits(axes, rows)
         _draw_work(axes, account)
-        time_axis(axes, rows[0].start, rows[-1].end)
-        marks.number_axis(axes, "y")
+        axes_by_hand.time_axis(axes, rows[0].start, rows[-1].end)
+        axes_by_hand.number_axis(axes, "y")
         _unit(figure, account.unit)
         _key(figure, rows)
         return svg.picture(
@@ -136,26 +133,6 @@ def _draw_work(axes: Axes, account: AccountResult) -> None:
         xytext=(-4 if late else 4, -1), textcoords="offset points", ha="right" if late else "left",
         va="top", color=look.QUIET, fontsize=look.SMALL_SIZE,
     )  # fmt: skip
-
-
-def time_axis(axes: Axes, first: int, last: int) -> None:
-    """Ticks at the starts of years, or of quarters where there are few."""
-    start, end = date_of(first), date_of(last)
-    places: list[tuple[int, str]] = []
-    every = 1 + (end.year - start.year) // MOST_YEARS
-    for year in range(start.year, end.year + 2):
-        if last - first < SHORT_DAYS:
-            for month in (1, 4, 7, 10):
-                label = f"{n.MONTHS[month - 1][:3]} {year}"
-                places.append((day_of_iso(f"{year:04d}-{month:02d}-01"), label))
-        elif (year - start.year) % every == 0:
-            places.append((day_of_iso(f"{year:04d}-01-01"), f"Jan {year}"))
-    left, right = axes.get_xlim()
-    shown = [p for p in places if left <= p[0] <= right]
-    axes.set_xticks([day for day, _ in shown], [label for _, label in shown])
-    for (day, _), text in zip(shown, axes.get_xticklabels(), strict=True):
-        if day > right - EDGE * (right - left):
-            text.set_horizontalalignment("right")  # else it would leave the figure
 
 
 def _unit(figure: Figure, unit: str) -> None:

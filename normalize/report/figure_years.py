@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
+from normalize.report import axes as axes_by_hand
 from normalize.report import look, marks, svg, words
 from normalize.report import numbers as n
 
@@ -40,9 +41,7 @@ def years_figure(account: AccountResult, key: str) -> svg.Picture | None:
         for row, y in ROWS.items():
             _draw_row(axes, row, y, shown.get(row), unit)
         axes.axvline(0.0, color=look.QUIET, linewidth=0.8)
-        axes.set_xlabel(
-            svg.drawn(f"{unit} a normal year"), fontsize=look.SMALL_SIZE, color=look.QUIET
-        )
+        axes_by_hand.name_below(axes, svg.drawn(f"{unit} a normal year"))
         alt = f"{title}. Bars with their ranges: " + "; ".join(
             f"{row} {_words(row, e, unit)}" for row, e in shown.items()
         )
@@ -73,8 +72,7 @@ def _limits(axes: Axes, estimates: list[Estimate]) -> None:
     axes.set_xlim(low - (0.03 * wide if low < 0 else 0.0), high + ROOM_FOR_WORDS * wide)
     axes.set_ylim(-0.6, 2.6)
     axes.spines["left"].set_visible(False)
-    axes.set_yticks([])
-    marks.number_axis(axes, "x", most=7)
+    axes_by_hand.number_axis(axes, "x", most=7)
 
 
 def _draw_row(axes: Axes, row: str, y: float, estimate: Estimate | None, unit: str) -> None:

@@ -6,7 +6,6 @@ import math
 from typing import TYPE_CHECKING, Any, Final
 
 from normalize.report import look
-from normalize.report import numbers as n
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
@@ -83,22 +82,3 @@ def steps(spans: Iterable[tuple[float, float, float]]) -> tuple[list[float], lis
         xs += [start, end]
         ys += [value, value]
     return xs, ys
-
-
-def number_axis(axes: Axes, which: str, *, most: int = 5) -> None:
-    """At most so many round tick values, thousands separated, proper minus signs."""
-    from matplotlib.ticker import FuncFormatter, MaxNLocator
-
-    axis = axes.xaxis if which == "x" else axes.yaxis
-    axis.set_major_locator(MaxNLocator(most))
-    axis.set_major_formatter(FuncFormatter(lambda v, _: tick(v)))
-
-
-def tick(value: float) -> str:
-    """A tick's label.
-
-    >>> tick(-1500.0), tick(0.25), tick(-0.0)
-    ('−1,500', '0.25', '0')
-    """
-    text = f"{value:,.10g}" if abs(value) >= 1e-9 else "0"
-    return text.replace("-", n.MINUS)

@@ -130,9 +130,8 @@ def panel(
     for side in ("left", "bottom"):
         axes.spines[side].set_color(look.QUIET)
         axes.spines[side].set_linewidth(0.8)
-    axes.tick_params(
-        colors=look.QUIET, labelsize=look.SMALL_SIZE, length=4, width=0.8, labelcolor=look.QUIET
-    )
+    axes.xaxis.set_visible(False)  # report/axes.py draws them
+    axes.yaxis.set_visible(False)
     return axes
 
 
