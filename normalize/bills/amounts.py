@@ -45,8 +45,10 @@ def as_text(cell: object) -> str:
     """
     if cell is None:
         return ""
-    text = unicodedata.normalize("NFKC", str(cell))
-    text = re.sub(r"[\u2010-\u2015\u2212]", "-", text).replace("\u2019", "'")
+    text = str(cell)
+    if not text.isascii():
+        text = unicodedata.normalize("NFKC", text)
+        text = re.sub(r"[\u2010-\u2015\u2212]", "-", text).replace("\u2019", "'")
     return " ".join(text.split()).lstrip("'").strip()
 
 

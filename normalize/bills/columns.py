@@ -11,12 +11,11 @@ from dataclasses import dataclass, field, replace
 
 from normalize.bills.amounts import as_text, is_blank, split_amount
 from normalize.bills.headings import Heading, header_score, squeeze, take_apart
-from normalize.bills.table import HEADER_LINES, RawRow, RawTable
+from normalize.bills.table import HEADER_LINES, LIKELY_HEADER, RawRow, RawTable
 from normalize.bills.vocabulary import ROLES
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
 from normalize.units import FUELS, canonical_unit
 
-MIN_HEADER = 10.0  # a date and an amount heading reach this (our own, no source)
 CLEAR_LEAD = 2.0  # a usage column is chosen unasked when it leads by this (our own, no source)
 
 
@@ -56,7 +55,7 @@ def find_columns(table: RawTable, named: dict[str, str]) -> tuple[Columns, tuple
     head = table.rows[:HEADER_LINES]
     scores = [header_score(row.cells, names) for row in head]
     at = max(range(len(head)), key=lambda k: scores[k])
-    if scores[at] < MIN_HEADER:
+    if scores[at] < LIKELY_HEADER:
         raise UnreadableBills(
             "no line looks like the header of a table of bills",
             where=table.name,
@@ -81,9 +80,10 @@ def _assign(columns: Columns, body: Sequence[RawRow]) -> Columns:
         if role not in by_role or heading.score > columns.headings[by_role[role]].score:
             by_role[role] = k
     role_of = [h.role for h in columns.headings]
-    usage = tuple(
-        k for k, role in enumerate(role_of) if role == "usage" and _holds_numbers(body, k)
-    )
+    likely = [k for k, role in enumerate(role_of) if role == "usage"]
+    # A usage column of words is still the usage column when there is no other: each of its
+    # cells is then said to be no number.
+    usage = tuple(k for k in likely if _holds_numbers(body, k)) or tuple(likely)
     return replace(
         columns,
         by_role=by_role,
@@ -176,8 +176,7 @@ def _of_fuel(columns: Columns, left: list[int], fuel: str | None, where: str) ->
     fits = [
         k
         for k in left
-        if columns.headings[k].fuel in ("", fuel)
-        and (not columns.headings[k].unit or _unit_of(columns.headings[k], fuel))
+        if columns.headings[k].fuel in ("", fuel) and _may_be_billed(columns.headings[k], fuel)
     ]
     # kWh fits gas in some countries: beside a column that only gas can have, it is not gas.
     likely = [k for k in fits if fuel_suggested(columns.headings[k]) in ("", fuel)]
@@ -200,6 +199,11 @@ def _unit_of(heading: Heading, fuel: str | None) -> str:
         return canonical_unit(heading.unit, fuel)
     except (UnknownUnit, BillError):
         return ""
+
+
+def _may_be_billed(heading: Heading, fuel: str) -> bool:
+    """Whether a heading's unit fits the fuel, or is one that must be asked about (MBtu)."""
+    return not heading.unit or bool(_unit_of(heading, fuel)) or not _unit_of(heading, None)
 
 
 def fuel_suggested(heading: Heading) -> str:

@@ -80,7 +80,7 @@ def read_written(cell: object, *, epoch_1904: bool = False) -> Written:
     >>> read_written("2023-01-05T00:00:00Z").day
     19362
     >>> read_written("1/5/23").parts
-    (1, 5, 2023)
+    (1, 5, 23)
     >>> read_written("2010-05-36").problem
     "'2010-05-36' is not a date of the calendar"
     """

@@ -25,6 +25,13 @@ _FUEL_WORDS = {
     "elec": "electricity", "oil": "heating oil", "propane": "propane", "kerosene": "kerosene",
     "pellets": "pellets", "wood": "wood", "steam": "district steam",
 }  # fmt: skip
+# Words of the vocabulary are no units, and only these begin a unit of several words; asking
+# units.py about every other word would cost a search for the nearest known unit each time.
+_NO_UNITS = {w for _, phrase, _ in WORDS for w in phrase.split()}
+_UNIT_STARTS = {
+    "cubic", "cu", "short", "metric", "imp", "imperial", "us", "uk", "watt", "kilowatt",
+    "thousand", "million", "hundred", "100", "1000", "full", "face", "deca", "deka", "ft",
+}  # fmt: skip
 _BRACKETS = re.compile(r"[(\[]([^)\]]*)[)\]]")
 _CAMEL = re.compile(r"(?<=[a-z])(?=[A-Z][a-z])")
 _LETTERS = re.compile(r"[^\W\d_]+\d?")
@@ -63,6 +70,7 @@ class Heading:
         return max(roles_of(self).values(), default=0.0)
 
 
+@lru_cache(maxsize=4096)  # an unknown word costs a search for the nearest known one
 def known_unit(text: str) -> bool:
     """Whether the text is a unit, or a word that the trade uses for two units."""
     if not text or len(text) > 25:
@@ -110,7 +118,8 @@ def take_apart(text: str) -> Heading:
 
 def _uncamel(found: re.Match[str]) -> str:
     """thermsPerDay as three words, kWh as it is."""
-    return found[0] if known_unit(found[0]) else _CAMEL.sub(" ", found[0])
+    parts = _CAMEL.sub(" ", found[0])
+    return found[0] if parts != found[0] and known_unit(found[0]) else parts
 
 
 def _plain_word(word: str) -> str:
@@ -125,6 +134,8 @@ def _without_unit(words: list[str]) -> tuple[list[str], str]:
         for k in range(len(words) - size + 1):
             run = "".join(words[k : k + size])
             if len(run) < 2 or run in ("unit", "units", "th", "dt", "ton", "tons", "mm", "kw"):
+                continue
+            if words[k] in _NO_UNITS if size == 1 else words[k] not in _UNIT_STARTS:
                 continue
             if known_unit(run):
                 return words[:k] + words[k + size :], " ".join(words[k : k + size])

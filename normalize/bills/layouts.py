@@ -163,8 +163,8 @@ def _ends_are_inclusive(
     verdict = counts if counts is not None else follows
     if verdict is not None:
         return verdict, ""
-    if not spans:
-        return False, ""
+    if not any(r.start is not None and r.end is not None and not r.problem for r in records):
+        return False, ""  # nothing hangs on it
     raise _which_end("it is not clear whether a bill's end date is a day of that bill", where)
 
 

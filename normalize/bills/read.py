@@ -14,7 +14,7 @@ from pathlib import Path
 from typing import Literal, cast
 
 from normalize.bills import records as rec
-from normalize.bills.amounts import Decimal, number_of
+from normalize.bills.amounts import Decimal, number_of, split_amount
 from normalize.bills.columns import (
     Columns,
     answer,
@@ -27,7 +27,7 @@ from normalize.bills.columns import (
     is_delivered,
 )
 from normalize.bills.dates import ORDERS, Order, Written
-from normalize.bills.headings import header_score, squeeze
+from normalize.bills.headings import header_score, known_unit, squeeze
 from normalize.bills.layout_choice import Layout, layout_of
 from normalize.bills.layouts import (
     Record,
@@ -194,7 +194,7 @@ def _fuel_of(columns: Columns, body: Sequence[RawRow], unit: str | None, where: 
         first = next((t for t in texts if t), "")
         if first:
             suggested = fuel_of_unit(canonical_unit(first, None, where=where))
-    suggested = suggested or fuel_of_unit(unit or "")
+    suggested = suggested or fuel_of_unit(unit or "") or _fuel_behind_numbers(columns, body)
     if not suggested:
         raise AmbiguousBills(
             "the file does not say which fuel it is about",
@@ -202,6 +202,15 @@ def _fuel_of(columns: Columns, body: Sequence[RawRow], unit: str | None, where: 
             next_step=answer("fuel", "natural gas", "electricity", "heating oil", "propane"),
         )
     return suggested
+
+
+def _fuel_behind_numbers(columns: Columns, body: Sequence[RawRow]) -> str:
+    """The fuel of "81 therms", where units stand behind the numbers."""
+    for row in body:
+        amount = split_amount(cell(row, columns.get("usage")))
+        if amount is not None and known_unit(amount.suffix):
+            return fuel_of_unit(canonical_unit(amount.suffix, None))
+    return ""
 
 
 def _kind_of(columns: Columns, fuel: str) -> Kind:

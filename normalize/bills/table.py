@@ -27,6 +27,7 @@ MAX_ROWS = 200_000
 MAX_COLUMNS = 500
 MAX_LINE = 100_000  # characters of one line
 MAX_CELL = 5_000  # characters of one cell
+LIKELY_HEADER = 10.0  # score of a line with a date and an amount heading (our own, no source)
 HEADER_LINES = 60  # a header is looked for in this many rows from the top
 
 _DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "bar"}
@@ -137,6 +138,13 @@ def _text_of(data: bytes, name: str) -> str:
             wanted="a CSV or XLSX table",
             next_step="Look for a CSV or spreadsheet download at the same place.",
         )
+    if "\n" not in text:
+        text = text.replace("\r", "\n")
+    # Before any splitting into columns, so that a line of a gigabyte costs no more than itself.
+    if text.count("\n") > MAX_ROWS:
+        raise _too_big(name, f"more than {MAX_ROWS:,} lines")
+    if any(len(line) > MAX_LINE for line in text.split("\n")):
+        raise _too_big(name, f"a line of more than {MAX_LINE:,} characters")
     return text
 
 
@@ -165,8 +173,8 @@ def _delimiter_of(text: str, score: Score) -> str:
             rows = [r[:MAX_COLUMNS] for r in csv.reader(head, delimiter=delimiter)]
         except csv.Error:
             continue
-        widths = [len(r) for r in rows if len(r) > 1]
-        rank = (max((score(r) for r in rows), default=0.0), len(widths))
+        wide = [r for r in rows if len(r) > 1]
+        rank = (max((score(r) for r in wide), default=0.0), len(wide))
         if rank > best_rank:
             best, best_rank = delimiter, rank
     return best
@@ -200,7 +208,9 @@ def _too_big(name: str, what: str) -> UnreadableBills:
     )
 
 
-def choose_sheet(found: Sequence[tuple[str, float]], *, name: str, good_enough: float = 1.0) -> str:
+def choose_sheet(
+    found: Sequence[tuple[str, float]], *, name: str, good_enough: float = LIKELY_HEADER
+) -> str:
     """The one sheet that looks like bills; asks when several do. found : (sheet, score)."""
     likely = [sheet for sheet, value in found if value >= good_enough]
     if len(likely) > 1:

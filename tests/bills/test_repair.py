@@ -13,7 +13,7 @@ import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
-from normalize.bills.periods import Bills, BillRow, LedgerEntry, Periods
+from normalize.bills.periods import BillRow, Bills, LedgerEntry, Periods
 from normalize.bills.repair import reconcile, repair, repair_batch
 from normalize.errors import BillError
 
@@ -396,12 +396,12 @@ def test_a_batch_gives_each_account_the_same_bits(many: list[list[BillRow]]) -> 
 @pytest.mark.parametrize(
     "spoil",
     [
-        lambda b: dict(ledger=b.ledger[:-1]),
-        lambda b: dict(ledger=(*b.ledger[:-1], LedgerEntry("b.csv", 3, "left out", ""))),
-        lambda b: dict(ledger=(*b.ledger[:-1], LedgerEntry("b.csv", 3, "left out", "why"))),
-        lambda b: dict(ledger=(*b.ledger[:-1], LedgerEntry("b.csv", 3, "period 1"))),
-        lambda b: dict(rows=(b.rows[0], BillRow("b.csv", 3, 30, 61, 7.0))),
-        lambda b: dict(ledger=b.ledger[::-1]),
+        lambda b: {"ledger": b.ledger[:-1]},
+        lambda b: {"ledger": (*b.ledger[:-1], LedgerEntry("b.csv", 3, "left out", ""))},
+        lambda b: {"ledger": (*b.ledger[:-1], LedgerEntry("b.csv", 3, "left out", "why"))},
+        lambda b: {"ledger": (*b.ledger[:-1], LedgerEntry("b.csv", 3, "period 1"))},
+        lambda b: {"rows": (b.rows[0], BillRow("b.csv", 3, 30, 61, 7.0))},
+        lambda b: {"ledger": b.ledger[::-1]},
     ],
 )
 def test_reconcile_can_fail(spoil) -> None:  # type: ignore[no-untyped-def]
