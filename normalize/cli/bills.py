@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from normalize.cli.console import say_if_preparing, show
+from normalize.cli.console import patience, show
 from normalize.cli.options import FILE, STDOUT, json_option, write_json
 from normalize.cli.tables import paragraph, table
 
@@ -77,28 +77,28 @@ def command(
     """
     from normalize.bills.read import read_bills
 
-    say_if_preparing()
-    bills = read_bills(
-        file,
-        fuel=fuel,
-        unit=unit,
-        account=file.stem,
-        dates=dates,
-        end_dates=end_dates,
-        usage_column=usage_column,
-        start_column=start_column,
-        end_column=end_column,
-        days_column=days_column,
-        cost_column=cost_column,
-        estimated_column=estimated_column,
-        temperature_column=temperature_column,
-        temperature_unit=temperature_unit,
-        sheet=sheet,
-        kind=kind,
-        net_metered=net_metered,
-        rows=rows,
-        decimal=decimal,
-    )
+    with patience():
+        bills = read_bills(
+            file,
+            fuel=fuel,
+            unit=unit,
+            account=file.stem,
+            dates=dates,
+            end_dates=end_dates,
+            usage_column=usage_column,
+            start_column=start_column,
+            end_column=end_column,
+            days_column=days_column,
+            cost_column=cost_column,
+            estimated_column=estimated_column,
+            temperature_column=temperature_column,
+            temperature_unit=temperature_unit,
+            sheet=sheet,
+            kind=kind,
+            net_metered=net_metered,
+            rows=rows,
+            decimal=decimal,
+        )
     if json_to is not None:
         write_json(to_json(bills), json_to, inputs=(file,))
     if json_to != STDOUT:

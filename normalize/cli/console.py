@@ -6,7 +6,9 @@ import codecs
 import re
 import shutil
 import sys
-from collections.abc import Sequence
+import threading
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from typing import Final
 
 # What a console without Unicode shows instead; anything else becomes "?".
@@ -40,6 +42,7 @@ _PLAIN: Final = {
     "\u2009": " ",
 }
 
+SLOW_SECONDS: Final = 5.0  # a warm run is done by then
 _SPACES: Final = frozenset("\n\u00a0\u202f\u2009")
 
 
@@ -115,9 +118,29 @@ def private(text: str, *, known: Sequence[str]) -> str:
     return "".join(part if i % 2 else mask(part) for i, part in enumerate(parts))
 
 
-def say_if_preparing() -> None:
-    """Before the first compilation, say why this run takes longer."""
+@contextmanager
+def patience() -> Iterator[None]:
+    """Around a calculation: say why it takes long, if it does.
+
+    The first run compiles the calculation for this computer, which takes minutes.
+    """
     from normalize.jit import kernels_are_ready
 
     if not kernels_are_ready():
-        say("preparing the calculation for this computer, once; later runs start at once …")
+        say(
+            "preparing the calculation for this computer, once: a few minutes. "
+            "Later runs take seconds."
+        )
+        yield
+        return
+    later = threading.Timer(
+        SLOW_SECONDS,
+        say,
+        ["still working. A first run takes a few minutes, as it prepares the calculation, once."],
+    )
+    later.daemon = True  # never keeps a finished or interrupted command alive
+    later.start()
+    try:
+        yield
+    finally:
+        later.cancel()

@@ -23,18 +23,19 @@ if TYPE_CHECKING:
     from normalize.fitting.results import Fit, FormTried
     from normalize.site import AccountResult, SiteResult
 
+DIGITS = 4  # significant; all are in the JSON
 HEAD = (
     "form",
     "",
     "base load",
-    "heating slope",
+    "heating",
     "below °F",
-    "cooling slope",
+    "cooling",
     "above °F",
-    "line slope",
+    "line",
     "R²",
     "CV(RMSE)",
-    "AICc",
+    "BIC",
 )
 
 
@@ -73,16 +74,24 @@ def to_text(result: SiteResult) -> str:
 
     blocks = [mask(name(result.site.name))]
     for account in result.accounts:
-        blocks.append(f"{mask(name(account.account))}, {account.fuel}, in {account.unit}")
+        blocks.append(_heading(account))
         if account.unavailable:
             blocks.append(paragraph(account.unavailable, indent="  "))
+            continue
         for side, tried, reason in _sides(account):
             blocks.append(_side_text(side, tried, reason))
     blocks.append(
-        "Use is per day; slopes are per °F and day; * marks the chosen form. R² never sets a form "
-        "aside."
+        "Use is per day; heating, cooling and line are slopes, per °F and day; * marks the chosen "
+        "form.\nR² never sets a form aside."
     )
     return "\n\n".join(blocks)
+
+
+def _heading(account: AccountResult) -> str:
+    from normalize.report.numbers import mask, name
+
+    words = [mask(name(account.account)), account.fuel, account.unit and f"in {account.unit}"]
+    return ", ".join(dict.fromkeys(word for word in words if word))  # no word twice
 
 
 def _sides(account: AccountResult) -> tuple[tuple[str, tuple[FormTried, ...], str], ...]:
@@ -112,29 +121,33 @@ def _side_text(side: str, tried: tuple[FormTried, ...], reason: str) -> str:
 
 
 def _row(form: FormTried, fit: Fit) -> list[str]:
-    from normalize.report.numbers import full, plain
+    from normalize.report.numbers import plain, significant
 
     return [
         form.form,
         "*" if form.chosen else "",
-        full(fit.base_load),
-        _or_nothing(fit.heating_slope, 6),
-        _or_nothing(fit.balance_heating_f, 0),
-        _or_nothing(fit.cooling_slope, 6),
-        _or_nothing(fit.balance_cooling_f, 0),
-        _or_nothing(fit.line_slope, 6),
+        significant(fit.base_load, DIGITS),
+        _slope(fit.heating_slope),
+        _balance(fit.balance_heating_f),
+        _slope(fit.cooling_slope),
+        _balance(fit.balance_cooling_f),
+        _slope(fit.line_slope),
         plain(fit.r2, 3),
         plain(fit.cv_rmse, 3),
-        plain(fit.aicc, 1),
+        plain(fit.bic, 1),
     ]
 
 
-def _or_nothing(value: float | None, digits: int) -> str:
-    from normalize.report.numbers import full, plain
+def _slope(value: float | None) -> str:
+    from normalize.report.numbers import significant
 
-    if value is None:
-        return ""
-    return full(value) if digits else plain(value, 1)
+    return "" if value is None else significant(value, DIGITS)
+
+
+def _balance(value: float | None) -> str:
+    from normalize.report.numbers import plain
+
+    return "" if value is None else plain(value, 1)
 
 
 def to_json(result: SiteResult) -> str:

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any, Final
 
 import click
 
-from normalize.cli.console import say_if_preparing
+from normalize.cli.console import patience
 from normalize.errors import UnwritableReport
 
 if TYPE_CHECKING:
@@ -89,8 +89,8 @@ def assess_folder(folder: Path, *, confidence: float) -> SiteResult:
     """Read and assess a site, with a word when the first run takes longer."""
     from normalize.site import assess, read_site
 
-    say_if_preparing()
-    return assess(read_site(folder), confidence=confidence)
+    with patience():
+        return assess(read_site(folder), confidence=confidence)
 
 
 def input_files(result: SiteResult) -> tuple[Path, ...]:

@@ -45,6 +45,9 @@ if TYPE_CHECKING:
     help="How sure the ranges are, two-sided: 0.9 or 90%.",
 )
 @click.option(
+    "--short", is_flag=True, help="Print the plain answer and its cautions, not the statistics."
+)
+@click.option(
     "--show-accounts",
     is_flag=True,
     help="Show account numbers and addresses in full; otherwise long numbers are masked.",
@@ -54,6 +57,7 @@ def command(
     json_to: str | None,
     report_to: Path | None,
     confidence: float,
+    short: bool,
     show_accounts: bool,
 ) -> int | None:
     """Say how much less (or more) was used after the work in FOLDER, in a normal year.
@@ -62,15 +66,15 @@ def command(
     comes first, with its range; the statistics follow. Exit code 1 when no account has an answer.
     """
     result = assess_folder(folder, confidence=confidence)
-    if json_to is not None:
-        from normalize.report.json import to_json
-
-        write_json(to_json(result), json_to, inputs=input_files(result))
     if json_to != STDOUT:
         from normalize.report.text import to_text
 
         text = to_text(
-            result, width=console_width(), ascii=only_ascii(), show_accounts=show_accounts
+            result,
+            statistics=not short,
+            width=console_width(),
+            ascii=only_ascii(),
+            show_accounts=show_accounts,
         )
         show(text.rstrip("\n"))
     if report_to is not None:
@@ -79,6 +83,10 @@ def command(
         path = report_to / "report.html"
         write_html(result, path, show_accounts=show_accounts)
         say(f"the report is {path}")
+    if json_to is not None:
+        from normalize.report.json import to_json
+
+        write_json(to_json(result), json_to, inputs=input_files(result))
     return exit_code(result)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable
 from pathlib import Path
 from typing import Final
@@ -65,7 +66,7 @@ README_TEXT: Final = """\
 """
 
 
-def write_new_site(folder: str | Path) -> tuple[Path, ...]:
+def write_new_site(folder: str | os.PathLike[str]) -> tuple[Path, ...]:
     """Write a new site folder; returns its files.
 
     Raises SiteError if one of the files is there already (nothing is overwritten then), and

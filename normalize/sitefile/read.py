@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import os
 import re
 import tomllib
 from collections.abc import Callable, Mapping
@@ -77,7 +78,7 @@ WEATHER_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
 }
 
 
-def read_site_file(folder: str | Path) -> SiteFile:
+def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
     """Read ``site.toml`` of a site's folder.
 
     Raises MissingFile, UnknownKey or SiteError; each says where and what to do.

@@ -1,0 +1,21 @@
+"""What all tests share: the same examples in every run, and the sample sites."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+from hypothesis import settings
+
+ROOT = Path(__file__).parents[1]
+
+# Examples are drawn from a fixed seed, so that a failure can be met again; and a busy machine
+# is no failure.
+settings.register_profile("normalize", derandomize=True, deadline=None)
+settings.load_profile("normalize")
+
+
+@pytest.fixture(scope="session")
+def samples() -> Path:
+    """The folder of sample sites."""
+    return ROOT / "sample_data"
