@@ -207,26 +207,63 @@ def order_by_values(cells: Sequence[Written]) -> Order | None:
     return None
 
 
-def order_by_spacing(columns: Sequence[Sequence[Written]]) -> Order | None:
-    """The order under which readings follow each other at the pace of bills; None if both or
-    neither does.  columns : reading dates of each column, in the file's order.
+def order_by_days(
+    pairs: Sequence[tuple[Written, Written]], days: Sequence[int | None]
+) -> Order | None:
+    """The order under which end less start is what a days column says; None if neither is."""
+    shares = {}
+    alone = all(start == Written() for start, _ in pairs)
+    for order in ORDERS[:2]:
+        if alone:
+            ends = [settle(end, order)[0] for _, end in pairs]
+            # Newest first, the days are those of the line before.
+            judged = [
+                abs(b - a) in (c, d)
+                for (a, c), (b, d) in pairwise(zip(ends, days, strict=True))
+                if a is not None and b is not None and (c or d)
+            ]
+        else:
+            spans = [_span(pair, order) for pair in pairs]
+            judged = [
+                abs(s - d) <= 1 for s, d in zip(spans, days, strict=True) if s is not None and d
+            ]
+        shares[order] = sum(judged) / len(judged) if judged else 0.5
+    return _clear(shares, leader=0.8, other=0.5 if not alone else 0.3)
+
+
+def order_by_spacing(pairs: Sequence[tuple[Written, Written]]) -> Order | None:
+    """The order under which bills have the pace of bills; None if both or neither do.
+
+    pairs : (start, end) of each line in the file's order, the start blank where the file
+    gives readings alone.
     """
-    shares = {order: _ordinary_share(columns, order) for order in ORDERS[:2]}
+    shares = {}
+    steps = 0
+    for order in ORDERS[:2]:
+        spans = [s for pair in pairs if (s := _span(pair, order)) is not None]
+        if not spans:
+            ends = [d for _, end in pairs if (d := settle(end, order)[0]) is not None]
+            spans = [b - a for a, b in pairwise(ends)]
+            if sum(s < 0 for s in spans) > sum(s > 0 for s in spans):
+                spans = [-s for s in spans]
+        steps = max(steps, len(spans))
+        shares[order] = sum(20 <= s <= 100 for s in spans) / len(spans) if spans else 0.5
+    if steps < 3:
+        return None
+    return _clear(shares, leader=0.8, other=0.3) or (
+        _clear(shares, leader=0.9, other=0.5) if steps >= 8 else None
+    )
+
+
+def _span(pair: tuple[Written, Written], order: Order) -> int | None:
+    """Days from start to end; None where either is not known."""
+    start, end = (settle(one, order)[0] for one in pair)
+    return end - start if start is not None and end is not None else None
+
+
+def _clear(shares: dict[Order, float], *, leader: float, other: float) -> Order | None:
+    """The order whose share is high while the other's is low."""
     month, day = shares["month first"], shares["day first"]
-    if month >= 0.8 and day <= 0.3:
+    if month >= leader and day <= other:
         return "month first"
-    if day >= 0.8 and month <= 0.3:
-        return "day first"
-    return None
-
-
-def _ordinary_share(columns: Sequence[Sequence[Written]], order: Order) -> float:
-    """Share of neighbouring readings 20 to 100 days apart, all in one direction of time."""
-    ordinary, steps = 0, 0
-    for cells in columns:
-        days = [d for c in cells if (d := settle(c, order)[0]) is not None]
-        gaps = [b - a for a, b in pairwise(days)]
-        forward = sum(g > 0 for g in gaps) >= sum(g < 0 for g in gaps)
-        ordinary += sum(20 <= (g if forward else -g) <= 100 for g in gaps)
-        steps += len(gaps)
-    return ordinary / steps if steps >= 3 else 0.5
+    return "day first" if day >= leader and month <= other else None

@@ -14,20 +14,18 @@ from pathlib import Path
 from typing import Literal, cast
 
 from normalize.bills import records as rec
-from normalize.bills.amounts import Decimal, number_of, split_amount
+from normalize.bills.amounts import Decimal, number_of
 from normalize.bills.columns import (
     Columns,
-    answer,
     choose_cost,
     choose_usage,
     described,
     find_columns,
-    fuel_of_unit,
-    fuel_suggested,
     is_delivered,
 )
-from normalize.bills.dates import ORDERS, Order, Written
-from normalize.bills.headings import header_score, known_unit, squeeze
+from normalize.bills.dates import ORDERS, Order, Written, read_written
+from normalize.bills.fuel_and_unit import fuel_of, unit_of
+from normalize.bills.headings import header_score, squeeze
 from normalize.bills.layout_choice import Layout, layout_of
 from normalize.bills.layouts import (
     Record,
@@ -41,7 +39,7 @@ from normalize.bills.periods import Bills
 from normalize.bills.repair import Kind, reconcile, repair
 from normalize.bills.select import cell, select_rows, without_remarks
 from normalize.bills.table import RawRow, RawTable, read_table
-from normalize.errors import AmbiguousBills, BillError, NoBills, UnknownUnit
+from normalize.errors import AmbiguousBills, BillError, NoBills
 from normalize.units import canonical_fuel, canonical_unit
 
 _CHOICES: dict[str, tuple[str, ...]] = {
@@ -137,13 +135,16 @@ def _bills_of(
     )
     if not body:
         raise NoBills("there is a header but no bill beneath it", where=where)
-    fuel = answers.fuel or _fuel_of(columns, body, answers.unit, where)
+    fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
     columns = choose_cost(columns, fuel)
     kind = answers.kind or _kind_of(columns, fuel)
     layout = layout_of(columns, body, kind, where)
     found = _Found(table, columns, body, totals, layout, kind, where)
     records, notes, cautions = _records(found, answers)
-    unit, unit_note = _unit_of(found, answers.unit, fuel, records)
+    unit, unit_note = unit_of(
+        columns, body, (suffix for _, suffix in records),
+        said=answers.unit, fuel=fuel, where=where,
+    )  # fmt: skip
     rows = tuple(record.row(table.name) for record, _ in records)
     periods, ledger = repair(rows, kind=kind, net_metered=net_metered)
     bills = Bills(
@@ -182,37 +183,6 @@ def _mark(kind: Kind) -> str:
     return "fill" if kind == "delivery" else "estimated"
 
 
-def _fuel_of(columns: Columns, body: Sequence[RawRow], unit: str | None, where: str) -> str:
-    """The fuel that the file names, or its unit is usual for.  Raises AmbiguousBills."""
-    if (k := columns.get("fuel")) is not None:
-        for row in body:
-            if cell(row, k) is not None and str(cell(row, k)).strip():
-                return canonical_fuel(str(cell(row, k)), where=f"{where}")
-    suggested = fuel_suggested(columns.heading("usage"))
-    if not suggested and (k := columns.get("unit")) is not None:
-        texts = [str(cell(row, k) or "").strip() for row in body]
-        first = next((t for t in texts if t), "")
-        if first:
-            suggested = fuel_of_unit(canonical_unit(first, None, where=where))
-    suggested = suggested or fuel_of_unit(unit or "") or _fuel_behind_numbers(columns, body)
-    if not suggested:
-        raise AmbiguousBills(
-            "the file does not say which fuel it is about",
-            where=where,
-            next_step=answer("fuel", "natural gas", "electricity", "heating oil", "propane"),
-        )
-    return suggested
-
-
-def _fuel_behind_numbers(columns: Columns, body: Sequence[RawRow]) -> str:
-    """The fuel of "81 therms", where units stand behind the numbers."""
-    for row in body:
-        amount = split_amount(cell(row, columns.get("usage")))
-        if amount is not None and known_unit(amount.suffix):
-            return fuel_of_unit(canonical_unit(amount.suffix, None))
-    return ""
-
-
 def _kind_of(columns: Columns, fuel: str) -> Kind:
     """Dealer deliveries: a column of deliveries or fills, or a fuel that comes by truck."""
     if columns.get("delivery") is not None or columns.get("fill") is not None:
@@ -233,9 +203,18 @@ def _records(
                 wanted="the date of each reading, or the first and last day of each bill",
                 next_step="Add the day to each date.",
             )  # fmt: skip
-    order, order_notes = rec.decide_order(columns, written, said=answers.dates, where=found.where)
     used = [columns.get(role) for role in ("usage", "cost", "temperature", "days")]
     numbers = rec.how_numbers_are_written(found.table, body, used, answers.decimal)
+    days = [rec.days_of(cell(row, columns.get("days")), numbers.decimal) for row in body]
+    others = [
+        read_written(cell(row, k))
+        for role in ("bill date", "read", "end", "start")
+        if (k := columns.get(role)) is not None
+        for row in body
+    ]
+    order, order_notes = rec.decide_order(
+        columns, written, days, others, said=answers.dates, where=found.where
+    )
     records = []
     both = found.layout.name == "start and end"
     for row, pair in zip(body, written, strict=True):
@@ -351,48 +330,6 @@ def _per_day(records: Sequence[Record], columns: Columns) -> None:
         if record.use is not None and record.start is not None and record.end is not None:
             days = record.days if record.days is not None else record.end - record.start
             record.use *= days
-
-
-def _unit_of(
-    found: _Found, said: str | None, fuel: str, records: Sequence[tuple[Record, str]]
-) -> tuple[str, str]:
-    """The unit and where it was found.  Raises AmbiguousBills, UnknownUnit."""
-    heading, where = found.columns.heading("usage"), found.where
-    if heading.unit:
-        unit = canonical_unit(heading.unit, fuel, where=where)
-        if said is not None and said != unit:
-            raise UnknownUnit(
-                f"column {heading.text!r} is in {unit}, but unit says {said}", where=where,
-                next_step="Leave out unit, or name another column with usage_column.",
-            )  # fmt: skip
-        per_day = ", per day, times the days of the bill" if heading.per_day else ""
-        return unit, f"unit: {unit}, from heading {heading.text!r}{per_day}"
-    k = found.columns.get("unit")
-    texts = {str(cell(row, k) or "").strip() for row in found.body} if k is not None else set()
-    texts |= {suffix for _, suffix in records}
-    units = {canonical_unit(t, fuel, where=where) for t in sorted(texts) if t}
-    if len(units) > 1 or (said is not None and units and units != {said}):
-        every = sorted(units | ({said} if said else set()))
-        raise AmbiguousBills(
-            f"usage is given in several units ({', '.join(every)})", where=where,
-            next_step=answer("rows", *every[:2]) if k is not None else "Give all in one unit.",
-        )  # fmt: skip
-    if units:
-        return units.pop(), "unit: from the lines themselves"
-    if said is not None:
-        return said, f"unit: {said}, as you said"
-    raise AmbiguousBills(
-        f"the unit of column {heading.text!r} is not given", where=where,
-        next_step=answer("unit", *_usual_units(fuel)),
-    )  # fmt: skip
-
-
-def _usual_units(fuel: str) -> tuple[str, ...]:
-    usual = {
-        "natural gas": ("therm", "ccf"), "electricity": ("kWh",), "wood": ("cord",),
-        "pellets": ("short ton", "lb"), "district steam": ("Mlb",),
-    }  # fmt: skip
-    return usual.get(fuel, ("gal", "L"))
 
 
 def _no_bills(bills: Bills, where: str) -> NoBills:

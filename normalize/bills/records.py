@@ -24,6 +24,7 @@ from normalize.bills.dates import (
     Order,
     Written,
     not_a_date,
+    order_by_days,
     order_by_spacing,
     order_by_values,
     pivot,
@@ -121,9 +122,19 @@ def _from_parts(row: RawRow, parts: tuple[int, int, int]) -> Written:
 
 
 def decide_order(
-    columns: Columns, written: Sequence[tuple[Written, Written]], *, said: Order | None, where: str
+    columns: Columns,
+    written: Sequence[tuple[Written, Written]],
+    days: Sequence[int | None],
+    others: Sequence[Written],
+    *,
+    said: Order | None,
+    where: str,
 ) -> tuple[Order, tuple[str, ...]]:
-    """Day first or month first, for the whole file, with a sentence.  Raises AmbiguousBills."""
+    """Day first or month first, for the whole file, with a sentence.  Raises AmbiguousBills.
+
+    days : of a days column.  others : dates of other columns, such as that of the bill itself;
+    one file writes all its dates in one way.
+    """
     if said is not None:
         return said, (f"dates are {said}, as you said",)
     cells = [w for pair in written for w in pair]
@@ -135,10 +146,13 @@ def decide_order(
             return ("month first" if order == "month first" else "day first"), (
                 f"dates are {order}, as the heading says",
             )
-    proven = order_by_values(cells)
+    proven = order_by_values([*cells, *others])
     if proven is not None:
         return proven, (f"dates are {proven}: some can only be read so",)
-    spaced = order_by_spacing([[s for s, _ in written], [e for _, e in written]])
+    counted = order_by_days(written, days)
+    if counted is not None:
+        return counted, (f"dates are {counted}: only so do they agree with the days column",)
+    spaced = order_by_spacing(written)
     if spaced is not None:
         return spaced, (f"dates are {spaced}: only so do the bills follow each other",)
     raise AmbiguousBills(
@@ -206,17 +220,17 @@ def put_use(record: Record, value: Cell, decimal: Decimal) -> str:
     return "" if suffix in ESTIMATED_NO else suffix
 
 
+def days_of(value: Cell, decimal: Decimal) -> int | None:
+    """A whole number of days from 0 to 800; None if the cell is none."""
+    days = None if is_blank(value) else number_of(value, decimal)
+    return int(days) if days is not None and days.is_integer() and 0 <= days <= 800 else None
+
+
 def put_days(record: Record, value: Cell, decimal: Decimal) -> None:
-    """Days of a record: a whole number from 1 to 800, or blamed."""
-    if is_blank(value):
-        return
-    days = number_of(value, decimal)
-    if days is None or not days.is_integer():
-        record.blame(f"the number of days, {quoted(as_text(value))}, is no whole number")
-    elif not 0 <= days <= 800:
-        record.blame(f"{quoted(as_text(value))} days in one bill")
-    else:
-        record.days = int(days)
+    """Days of a record, or blame for a number of days that no bill has."""
+    record.days = days_of(value, decimal)
+    if record.days is None and not is_blank(value):
+        record.blame(f"{quoted(as_text(value))} is no number of days that a bill has")
 
 
 def is_estimated(value: Cell, heading: Heading) -> bool | None:

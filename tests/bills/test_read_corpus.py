@@ -126,15 +126,36 @@ CORPUS = [
     ),
     Ugly(
         "order of day and month only settled by the pace of bills",
-        "Read Date,Days,kWh\n05/01/2023,30,81\n05/02/2023,31,70\n05/03/2023,28,60\n"
-        "05/04/2023,31,50\n",
+        "Read Date,kWh\n05/01/2023,9\n05/02/2023,70\n05/03/2023,60\n05/04/2023,50\n",
         [
-            ("2022-12-06", "2023-01-05", 81.0),
             ("2023-01-05", "2023-02-05", 70.0),
             ("2023-02-05", "2023-03-05", 60.0),
             ("2023-03-05", "2023-04-05", 50.0),
         ],
         reading=("only so do the bills follow each other",),
+    ),
+    Ugly(
+        "order of day and month only settled by the days column",
+        "From,To,Days,kWh\n10/05/2020,11/04/2020,30,84\n11/04/2020,12/07/2020,33,132\n",
+        [("2020-10-05", "2020-11-04", 84.0), ("2020-11-04", "2020-12-07", 132.0)],
+        reading=("only so do they agree with the days column",),
+    ),
+    Ugly(
+        "order of day and month only settled by the date of the bill",
+        "Bill Date,From,To,Therms\n05/03/2023,01/02/2023,02/03/2023,84\n"
+        "16/04/2023,02/03/2023,03/04/2023,13\n",
+        [("2023-02-01", "2023-03-02", 84.0), ("2023-03-02", "2023-04-03", 13.0)],
+        reading=("dates are day first",),
+    ),
+    Ugly(
+        "order of day and month settled by readings and days, newest first",
+        "Read date,Days,Therms\n12/07/2020,33,132\n11/04/2020,30,84\n10/05/2020,28,9\n",
+        [
+            ("2020-09-07", "2020-10-05", 9.0),
+            ("2020-10-05", "2020-11-04", 84.0),
+            ("2020-11-04", "2020-12-07", 132.0),
+        ],
+        reading=("agree with the days column",),
     ),
     Ugly(
         "reading dates alone: the first opens the record",

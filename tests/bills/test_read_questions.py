@@ -58,7 +58,7 @@ QUESTIONS: dict[str, tuple[str, dict[str, Any], str, list[dict[str, Any]]]] = {
     "fuel": (
         "Start,End,Gallons\n2023-01-05,2023-02-06,81\n2023-02-06,2023-03-07,70\n",
         {},
-        'fuel = "natural gas"',
+        'fuel = "heating oil" or fuel = "propane" or fuel = "kerosene"',
         [{"fuel": "propane"}],
     ),
     "two fuels": (
