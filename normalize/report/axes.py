@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
     from matplotlib.axes import Axes
 
+STEPS: Final = (1, 2, 5, 10)  # ticks that people count by
 LENGTH: Final = 4.0  # of a tick, px
 GAP: Final = 3.5  # between tick and label, px
 NAME_BELOW: Final = 34.0  # from the axis to the baseline of its name, px
@@ -30,7 +31,7 @@ def number_axis(axes: Axes, which: str, *, most: int = 5) -> None:
     from matplotlib.ticker import MaxNLocator
 
     low, high = axes.get_xlim() if which == "x" else axes.get_ylim()
-    values = [float(v) for v in MaxNLocator(most).tick_values(low, high)]
+    values = [float(v) for v in MaxNLocator(most, steps=STEPS).tick_values(low, high)]
     slack = 1e-9 * (high - low)
     places = [(v, tick(v)) for v in values if low - slack <= v <= high + slack]
     if which == "x":

@@ -22,6 +22,7 @@ BOTTOM: Final = 46.0  # tick labels and the name of the axis
 STRIP: Final = 70.0  # balance temperatures and the rug, beneath the axis
 TOP: Final = 78.0  # title, line under it, unit of the axis
 ROOM_FOR_LABEL: Final = 0.115  # share of the axis beyond the lines' ends
+LABEL_SHARE: Final = 0.26  # of the axis, about what the longest label takes
 STROKES: Final = 73  # each stands for five days of the normal year
 ROWS: Final = {"before": 0.80, "after": 0.50}
 COLOURS: Final = {"before": look.BEFORE, "after": look.AFTER}
@@ -133,10 +134,21 @@ def _draw_lines(
         lines[side] = (xs, ys)
         dashes = look.DASHES if side == "before" else "-"
         axes.plot(xs, ys, color=COLOURS[side], linestyle=dashes, linewidth=2.0, zorder=3)
-    if len(lines) == 2 and lines["before"][0] == lines["after"][0]:
-        xs, first = lines["before"]
-        axes.fill_between(xs, first, lines["after"][1], color=look.AFTER, alpha=0.14, linewidth=0)
+    if len(lines) == 2:
+        _shade_gap(axes, *lines["before"], *lines["after"])
     return lines
+
+
+def _shade_gap(
+    axes: Axes, xs: list[float], ys: list[float], other_xs: list[float], other_ys: list[float]
+) -> None:
+    """Between both lines, where both are drawn; each keeps its own corners."""
+    import numpy as np
+
+    low, high = max(xs[0], other_xs[0]), min(xs[-1], other_xs[-1])
+    at = np.unique(np.array([x for x in (*xs, *other_xs) if low <= x <= high]))
+    first, second = np.interp(at, xs, ys), np.interp(at, other_xs, other_ys)
+    axes.fill_between(at, first, second, color=look.AFTER, alpha=0.14, linewidth=0)
 
 
 def _cut(curve: Curve, low: float, high: float) -> tuple[list[float], list[float]]:
@@ -220,31 +232,26 @@ def _label_lines(
 
 def _draw_balances(strip: Axes, account: AccountResult) -> None:
     save = account.savings
-    for side, fit in (("before", save.before), ("after", save.after)):
+    crossing = [] if save.after is None else _balances_of(save.after)
+    for side, fit, ticks in (("before", save.before, crossing), ("after", save.after, [])):
         if fit is None:
             continue
-        both = fit.balance_heating_f is not None and fit.balance_cooling_f is not None
+        heat, cool = fit.balance_heating_f, fit.balance_cooling_f
         if fit.form == "two slopes":
-            turn = f"{side}: turns at {_degrees(fit.balance_heating_f)}"
-            _balance(strip, side, fit.balance_heating_f, fit.balance_heating_range_f, turn, "right")
+            turn = f"{side}: turns at {_degrees(heat)}"
+            _balance(strip, side, heat, fit.balance_heating_range_f, turn, "right", ticks)
             continue
-        prefix = f"{side}: "
-        _balance(
-            strip,
-            side,
-            fit.balance_heating_f,
-            fit.balance_heating_range_f,
-            f"{prefix}heating below {_degrees(fit.balance_heating_f)}",
-            "right",
-        )
-        _balance(
-            strip,
-            side,
-            fit.balance_cooling_f,
-            fit.balance_cooling_range_f,
-            f"{'' if both else prefix}cooling above {_degrees(fit.balance_cooling_f)}",
-            "left" if both else "right",
-        )
+        told = f"{side}: heating below {_degrees(heat)}"
+        _balance(strip, side, heat, fit.balance_heating_range_f, told, "right", ticks)
+        both = heat is not None and cool is not None
+        told = f"{'' if both else f'{side}: '}cooling above {_degrees(cool)}"
+        align = "left" if both else "right"
+        _balance(strip, side, cool, fit.balance_cooling_range_f, told, align, ticks)
+
+
+def _balances_of(fit: Fit) -> list[float]:
+    both = (fit.balance_heating_f, fit.balance_cooling_f)
+    return [at for at in both if at is not None and marks.drawable(at)]
 
 
 def _balance(
@@ -254,8 +261,12 @@ def _balance(
     spread: tuple[float, float] | None,
     text: str,
     align: str,
+    crossing: list[float],
 ) -> None:
-    """A tick from the axis down to its row, its range as a thick stretch, its words beside."""
+    """A tick from the axis down to its row, its range as a thick stretch, its words beside.
+
+    crossing : ticks of the row beneath, which pass through this row; words keep off them.
+    """
     if at is None or not marks.drawable(at):
         return
     y, colour = ROWS[side], COLOURS[side]
@@ -266,6 +277,11 @@ def _balance(
         strip.plot([low, high], [y, y], color=colour, linewidth=5.0, alpha=0.45)
     left, right = strip.get_xlim()
     nudge = 0.012 * (right - left)
+    wide = LABEL_SHARE * (right - left)
+    if align == "right":
+        low = min([low, *(c for c in crossing if low - wide < c < low + nudge)])
+    else:
+        high = max([high, *(c for c in crossing if high - nudge < c < high + wide)])
     x = low - nudge if align == "right" else high + nudge
     strip.text(x, y, text, ha=align, va="center", color=colour, fontsize=look.SMALL_SIZE)
 

@@ -15,6 +15,8 @@ if TYPE_CHECKING:
     from normalize.site import PeriodRow
 
 USED: Final = ("before", "after")
+ELSEWHERE: Final = ("older", "later", "between", "earlier occupant")  # sound, but of other times
+COLOURS: Final = {"before": look.BEFORE, "after": look.AFTER, "elsewhere": look.QUIET}
 TOO_LARGE: Final = 1e12  # no bill is; beyond it axes cannot be labelled
 
 MARKS_BEFORE: Final = "Open circles are bills before the work"
@@ -52,11 +54,12 @@ def draw_marks(axes: Axes, points: Iterable[tuple[float, float, PeriodRow]]) -> 
     """One mark a bill, by side and kind of reading."""
     groups: dict[tuple[str, bool], list[tuple[float, float]]] = {}
     for x, y, row in points:
-        side = row.side if row.side in USED else "left out"
-        groups.setdefault((side, row.estimated and side != "left out"), []).append((x, y))
+        side = row.side if row.side in (*USED, *ELSEWHERE) else "left out"
+        side = "elsewhere" if side in ELSEWHERE else side
+        groups.setdefault((side, row.estimated and side in USED), []).append((x, y))
     for (side, estimated), places in sorted(groups.items()):
         xs, ys = zip(*places, strict=True)
-        colour = {"before": look.BEFORE, "after": look.AFTER}.get(side, look.CARE)
+        colour = COLOURS.get(side, look.CARE)
         shape = {"before": "o", "after": "D"}.get(side, "x")
         size = {"before": 6.0, "after": 5.4}.get(side, 4.5)
         face = look.PAPER if side == "before" or estimated else colour

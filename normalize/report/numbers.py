@@ -211,12 +211,16 @@ def percent_plain(fraction: float | None, decimals: int = 1) -> str:
 
 
 def money(value: float | None, currency: str, digits: int = 2) -> str:
-    """An amount of money for a sentence, without its sign's meaning.
+    """An amount of money for a sentence: significant digits, cents in pairs.
 
-    >>> money(216.7, "USD"), money(1354.0, "CAD")
-    ('$220', '1,400\\xa0CAD')
+    >>> money(216.7, "USD"), money(3.61, "USD"), money(1354.0, "CAD")
+    ('$220', '$3.60', '1,400\\xa0CAD')
     """
-    return _with_currency(significant(value, digits), currency)
+    text = significant(value, digits)
+    whole, point, cents = text.partition(".")
+    if point and len(cents) == 1:
+        text = f"{whole}.{cents}0"
+    return _with_currency(text, currency)
 
 
 def price(value: float | None, currency: str) -> str:

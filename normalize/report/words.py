@@ -272,19 +272,11 @@ def money_sentence(
     return _also(at, in_units(estimate).times(per_unit), money_form(currency), per)
 
 
-def carbon_sentence(
-    estimate: Estimate, kg_per_unit: float | None, source: str = "", *, per: str = " a year"
-) -> str:
-    """What the change is in carbon dioxide; empty when unknown."""
+def carbon_sentence(estimate: Estimate, kg_per_unit: float | None, *, per: str = " a year") -> str:
+    """What the change is in carbon dioxide; empty when unknown. The source is in the table."""
     if kg_per_unit is None or not n.known(kg_per_unit):
         return ""
-    at = f"In carbon dioxide ({n.clean(source)})" if source else "In carbon dioxide"
-    return _also(
-        at,
-        in_units(estimate).times(kg_per_unit),
-        unit_form("kg"),
-        per,
-    )
+    return _also("In carbon dioxide", in_units(estimate).times(kg_per_unit), unit_form("kg"), per)
 
 
 def answer(
@@ -336,7 +328,6 @@ def worth(account: AccountResult, currency: str) -> tuple[str, ...]:
     estimate = save.normalized if normal else save.avoided
     per = " a year" if normal else " since the work"
     co2 = account.co2
-    source = "" if co2 is None else factor_source(co2)
     sentences = (
         energy_sentence(estimate, account.unit, per=per),
         money_sentence(
@@ -347,7 +338,7 @@ def worth(account: AccountResult, currency: str) -> tuple[str, ...]:
             account.price.source,
             per=per,
         ),
-        carbon_sentence(estimate, None if co2 is None else co2.value, source, per=per),
+        carbon_sentence(estimate, None if co2 is None else co2.value, per=per),
     )
     return tuple(s for s in sentences if s)
 

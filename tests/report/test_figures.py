@@ -206,6 +206,19 @@ def test_other_forms_are_drawn(farm_result: SiteResult, gas_house_result: SiteRe
         assert ("turns at 60 °F" in told) == (form == "two slopes")
 
 
+def test_the_gap_is_shaded_though_the_lines_have_points_of_their_own(
+    gas_house_result: SiteResult,
+) -> None:
+    account = gas_house_result.accounts[0]
+    curve = account.curve_after
+    assert curve is not None
+    sparse = replace(curve, temp_f=curve.temp_f[1::7], use_per_day=curve.use_per_day[1::7])
+    for after, shaded in ((curve, True), (sparse, True), (None, False)):
+        drawn = figures_of(changed(account, curve_after=after), gas_house_result.site.year, 1)
+        assert drawn.temperature is not None
+        assert ("opacity: 0.14" in drawn.temperature.body) is shaded
+
+
 def test_a_bill_is_a_step_and_a_missing_bill_a_gap() -> None:
     xs, ys = marks.steps([(0, 30, 2.0), (30, 61, 3.0), (91, 120, 4.0)])
     assert xs == [0, 30, 30, 61, 91, 91, 120]
