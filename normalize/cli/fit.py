@@ -26,7 +26,6 @@ if TYPE_CHECKING:
 DIGITS = 4  # significant; all are in the JSON
 HEAD = (
     "form",
-    "",
     "base load",
     "heating",
     "below °F",
@@ -110,7 +109,7 @@ def _side_text(side: str, tried: tuple[FormTried, ...], reason: str) -> str:
     if fitted:
         n = max(fit.n_periods for _, fit in fitted)
         lines[0] += f", {n} periods"
-        grid = table(HEAD, [_row(form, fit) for form, fit in fitted], left=2)
+        grid = table(HEAD, [_row(form, fit) for form, fit in fitted])
         lines += [f"  {line}" for line in grid.splitlines()]
     lines += [
         paragraph(f"{form.form}: set aside because {form.reason}.", indent="  ")
@@ -124,8 +123,7 @@ def _row(form: FormTried, fit: Fit) -> list[str]:
     from normalize.report.numbers import plain, significant
 
     return [
-        form.form,
-        "*" if form.chosen else "",
+        f"{form.form} *" if form.chosen else form.form,
         significant(fit.base_load, DIGITS),
         _slope(fit.heating_slope),
         _balance(fit.balance_heating_f),

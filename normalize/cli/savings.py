@@ -67,6 +67,7 @@ def command(
     """
     result = assess_folder(folder, confidence=confidence)
     if json_to != STDOUT:
+        from normalize.report.numbers import name
         from normalize.report.text import to_text
 
         text = to_text(
@@ -75,6 +76,7 @@ def command(
             width=console_width(),
             ascii=only_ascii(),
             show_accounts=show_accounts,
+            subject=name(result.site.name),
         )
         show(text.rstrip("\n"))
     if report_to is not None:

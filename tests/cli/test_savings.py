@@ -120,7 +120,7 @@ def test_the_same_input_gives_the_same_bytes(run: Run, site: Path, tmp_path: Pat
 def test_fit_lists_every_form_and_marks_the_chosen(run: Run, site: Path) -> None:
     ran = run("fit", site)
     assert ran.code == 0
-    rows = [line.split() for line in ran.out.splitlines() if line.startswith("  heating  ")]
+    rows = [line.split() for line in ran.out.splitlines() if line.startswith("  heating * ")]
     assert [row[:2] for row in rows] == [["heating", "*"], ["heating", "*"]]
     assert [row[4] for row in rows] == ["60.0", "60.0"]
     assert max(map(len, ran.out.splitlines())) <= 110
