@@ -9,6 +9,7 @@ from __future__ import annotations
 import io
 import warnings
 import zipfile
+import zlib
 from datetime import date, datetime, time, timedelta
 from typing import TYPE_CHECKING, Any
 
@@ -22,7 +23,7 @@ from normalize.bills.table import (
     Score,
     choose_sheet,
 )
-from normalize.errors import UnreadableBills
+from normalize.errors import NormalizeError, UnreadableBills
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -50,12 +51,10 @@ def read_workbook(
             rows = tuple(_rows(book[chosen], name, MAX_ROWS))
             epoch_1904 = book.epoch == CALENDAR_MAC_1904
             book.close()
-        except UnreadableBills:
+        except NormalizeError:
             raise
-        except (OSError, ValueError, KeyError, TypeError, AttributeError, IndexError) as err:
+        except Exception as err:
             raise _broken(name) from err
-        except (zipfile.BadZipFile, SyntaxError, OverflowError, EOFError) as err:
-            raise _broken(name) from err  # SyntaxError: XML that does not parse
     if not rows:
         raise UnreadableBills(
             f"the sheet {chosen[:40]!r} is empty", where=name, wanted="a table of bills"
@@ -90,9 +89,9 @@ def _check_zip(data: bytes, name: str) -> None:
                         head = stream.read(4096)
                     if b"<!DOCTYPE" in head or b"<!ENTITY" in head:
                         raise _unsafe(name, "it declares XML entities")
-    except (zipfile.BadZipFile, NotImplementedError, RuntimeError, OSError, EOFError) as err:
+    except (zipfile.BadZipFile, zlib.error, NotImplementedError, RuntimeError) as err:
         raise _broken(name) from err
-    except ValueError as err:
+    except (OSError, EOFError, ValueError) as err:
         raise _broken(name) from err
 
 

@@ -266,6 +266,32 @@ def test_hostile_workbooks(parts: dict[str, bytes], words: str, tmp_path: Path) 
         read_bills(file)
 
 
+def test_damaged_workbooks_give_one_message(tmp_path: Path) -> None:
+    """Seeded damage to a good workbook, in its zip and in its XML: no traceback."""
+    import random
+
+    from openpyxl import Workbook
+
+    book, out = Workbook(), io.BytesIO()
+    assert book.active is not None
+    for row in (["Start", "End", "Therms"], ["2023-01-05", "2023-02-06", 8], ["x", None, "=A1"]):
+        book.active.append(row)
+    book.save(out)
+    good, file, chance = out.getvalue(), tmp_path / "bills.xlsx", random.Random(5)
+    refused = 0
+    for _ in range(150):
+        data = bytearray(good)
+        for _ in range(chance.choice([1, 3, 30])):
+            data[chance.randrange(len(data))] = chance.randrange(256)
+        file.write_bytes(bytes(data[: chance.choice([len(data), chance.randrange(4, len(data))])]))
+        try:
+            read_bills(file, end_dates="exclusive")
+        except NormalizeError as err:
+            refused += 1
+            assert "bills.xlsx" in str(err)  # noqa: PT017 (only some of the files are refused)
+    assert refused > 50
+
+
 def test_accounts_and_addresses_stay_private(tmp_path: Path) -> None:
     file = tmp_path / "bills.csv"
     file.write_text(
