@@ -140,6 +140,17 @@ def _account(
         ]
         if has_bills
         else [],
+        **_behind(account, result, say),
+    }
+
+
+def _behind(
+    account: AccountResult, result: SiteResult, say: Callable[[str], str]
+) -> dict[str, Any]:
+    """What stands behind one account's answer, for those who check it."""
+    save = account.savings
+    has_bills = account.bills is not None
+    return {
         "statistics": _hidden(tables.statistics_table(account), say)
         if save.before is not None or save.after is not None
         else None,
