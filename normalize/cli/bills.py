@@ -48,6 +48,13 @@ LEFT_OUT = "left out"
 @click.option("--net-metered", is_flag=True, help="Use may be below zero (solar panels).")
 @click.option("--rows", metavar="NAME", help="Which account, meter or fuel, where several.")
 @click.option("--decimal", type=click.Choice(["point", "comma"]), help="How decimals are written.")
+@click.option(
+    "--write",
+    "write_to",
+    metavar="FILE",
+    type=FILE,
+    help="Also write the cleaned periods as CSV to a new FILE.",
+)
 @json_option
 def command(
     file: Path,
@@ -68,6 +75,7 @@ def command(
     net_metered: bool,
     rows: str | None,
     decimal: str | None,
+    write_to: Path | None,
     json_to: str | None,
 ) -> None:
     """Show how FILE (CSV or XLSX) was understood: its periods, and what became of every bill.
@@ -99,6 +107,10 @@ def command(
             rows=rows,
             decimal=decimal,
         )
+    if write_to is not None:
+        from normalize.bills.write import write_periods
+
+        write_periods(bills, write_to)
     if json_to is not None:
         write_json(to_json(bills), json_to, inputs=(file,))
     if json_to != STDOUT:

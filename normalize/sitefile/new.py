@@ -7,9 +7,8 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Final
 
+from normalize.bills.write import TEMPLATE, write_template
 from normalize.errors import SiteError, UnwritableReport
-
-HEADER: Final = ("start", "end", "usage", "unit", "cost", "estimated")
 
 SITE_TEXT: Final = """\
 # What normalize needs to know about one building. Lines that start with # are notes or
@@ -75,7 +74,7 @@ def write_new_site(folder: str | os.PathLike[str]) -> tuple[Path, ...]:
     folder = Path(folder)
     writers: dict[str, Callable[[Path], None]] = {
         "site.toml": lambda path: _write_text(path, SITE_TEXT),
-        "bills.csv": lambda path: _write_text(path, ",".join(HEADER) + "\r\n"),
+        "bills.csv": write_template,
         "bills.xlsx": _write_workbook,
         "README.txt": lambda path: _write_text(path, README_TEXT),
     }
@@ -111,6 +110,6 @@ def _write_workbook(path: Path) -> None:
     sheet = book.create_sheet("bills")
     for letter in "ABCDEF":
         sheet.column_dimensions[letter].width = 14
-    sheet.append(list(HEADER))
+    sheet.append(list(TEMPLATE))
     with path.open("xb") as file:
         book.save(file)

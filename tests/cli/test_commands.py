@@ -85,6 +85,20 @@ def test_json_goes_to_a_file_and_never_over_an_input(run: Run, bills: Path, tmp_
     assert sorted(p.name for p in tmp_path.iterdir()) == [bills.name, "out.json"]
 
 
+def test_cleaned_periods_can_be_written_and_read_again(
+    run: Run, bills: Path, tmp_path: Path
+) -> None:
+    out = tmp_path / "clean.csv"
+    assert run("bills", bills, "--write", out).code == 0
+    again = json.loads(run("bills", out, "--json", "-").out)
+    first = json.loads(run("bills", bills, "--json", "-").out)
+    kept = ("start", "end", "use", "cost")
+    assert [[p[k] for k in kept] for p in again["periods"]] == [
+        [p[k] for k in kept] for p in first["periods"]
+    ]
+    assert run("bills", bills, "--write", out).code == 1  # nothing is written over
+
+
 def test_new_then_savings_says_what_is_missing(run: Run, tmp_path: Path) -> None:
     folder = tmp_path / "my-house"
     ran = run("new", folder)
