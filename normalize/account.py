@@ -51,9 +51,7 @@ def unread_account(plan: AccountPlan, problem: str, confidence: float) -> Accoun
     )
 
 
-def assess_account(
-    site: Site, plan: AccountPlan, bills: Bills, confidence: float
-) -> AccountResult:
+def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: float) -> AccountResult:
     """One account before and after the upgrades that touch it."""
     aligned = align(bills.periods, site.weather)
     work = work_on(site, plan.name)

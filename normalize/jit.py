@@ -18,17 +18,24 @@ from typing import Any, TypeVar, cast
 
 F = TypeVar("F", bound=Callable[..., Any])
 
-_ROOMS_WITH_KERNELS = ("bills", "weather", "fitting", "savings", "program")
+# Which rooms' kernels a room's kernels may call: an edit in one must not make another's stale.
+_REACH = {
+    "bills": ("bills",),
+    "weather": ("weather",),
+    "fitting": ("fitting",),
+    "savings": ("fitting", "savings"),
+    "program": ("bills", "weather", "fitting", "savings", "program"),
+}
 
 
-def kernel_hash() -> str:
-    """Twelve hex digits that change when any kernel, compiler or switch does."""
+def kernel_hash(room: str) -> str:
+    """Twelve hex digits that change when a kernel within reach, the compiler or a switch does."""
     import numba
     import numpy
 
     digest = hashlib.sha256()
     here = Path(__file__).parent
-    for file in [here / "jit.py", *_kernel_files(here)]:
+    for file in [here / "jit.py", *_kernel_files(here, _REACH[room])]:
         digest.update(file.name.encode())
         digest.update(file.read_bytes())
     versions = (numba.__version__, numpy.__version__, sys.version)
@@ -36,13 +43,13 @@ def kernel_hash() -> str:
     return digest.hexdigest()[:12]
 
 
-def _kernel_files(package: Path) -> list[Path]:
-    files = []
-    for room in _ROOMS_WITH_KERNELS:
-        for file in sorted((package / room).glob("*.py")):
-            if b"normalize.jit" in file.read_bytes():
-                files.append(file)
-    return files
+def _kernel_files(package: Path, rooms: tuple[str, ...]) -> list[Path]:
+    return [
+        file
+        for room in rooms
+        for file in sorted((package / room).glob("*.py"))
+        if b"normalize.jit" in file.read_bytes()
+    ]
 
 
 def _writable(folder: Path) -> bool:
@@ -65,9 +72,9 @@ def _user_cache() -> Path | None:
     return base / "normalize"
 
 
-def cache_folder() -> Path | None:
-    """The folder that holds compiled kernels, or None when no place can be written."""
-    name = f"kernels-{kernel_hash()}"
+def cache_folder(room: str) -> Path | None:
+    """The folder that holds a room's compiled kernels, or None when no place can be written."""
+    name = f"kernels-{room}-{kernel_hash(room)}"
     beside = Path(__file__).parent / "__pycache__" / name
     user = _user_cache()
     for folder in (beside, user / name if user else None):
@@ -80,27 +87,24 @@ def _holds_kernels(folder: Path) -> bool:
     return folder.is_dir() and os.access(folder, os.W_OK)
 
 
-_folder: Path | None = None
-_known = False
+_folders: dict[str, Path | None] = {}
 
 
-def _folder_once() -> Path | None:
-    global _folder, _known
-    if not _known:
-        _folder = cache_folder()
-        _known = True
-        if _folder is None:
+def _folder_once(room: str) -> Path | None:
+    if room not in _folders:
+        _folders[room] = cache_folder(room)
+        if _folders[room] is None and list(_folders.values()).count(None) == 1:
             print(
                 "normalize: no folder can be written for compiled code, so each run prepares "
                 "anew (about a minute). Set XDG_CACHE_HOME to a folder you may write to.",
                 file=sys.stderr,
             )
-    return _folder
+    return _folders[room]
 
 
 def kernels_are_ready() -> bool:
     """Whether compiled kernels are already on disk, so that a first run can say "preparing"."""
-    folder = cache_folder()
+    folder = cache_folder("savings")
     return folder is not None and folder.is_dir() and any(folder.rglob("*.nbi"))
 
 
@@ -112,7 +116,7 @@ def kernel(function: F) -> F:
     import numba
     from numba.core import config
 
-    folder = _folder_once()
+    folder = _folder_once(function.__module__.split(".")[1])
     before = config.CACHE_DIR
     try:
         if folder is not None:

@@ -92,7 +92,10 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
         terms=form.terms,
         se=se,
         se_full=None if held else _full_errors(jac, resid, side.w, len(form.terms), row, form_code),
-        t=tuple(c / e if e > 0.0 else float("inf") for c, e in zip(_coefs(row, form_code), se)),
+        t=tuple(
+            c / e if e > 0.0 else float("inf")
+            for c, e in zip(_coefs(row, form_code), se, strict=True)
+        ),
         aicc=float(row[AICC]),
         bic=float(row[BIC]),
         mean_use=mean,

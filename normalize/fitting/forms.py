@@ -31,14 +31,14 @@ class Form:
 FORMS: Final[dict[str, Form]] = {
     form.name: form
     for form in (
-        Form(FLAT, "flat", 1, ("base load",), "use per day = a", "mean"),
-        Form(LINE, "line", 2, ("base load", "line slope"), "use per day = a + b·T", "two-parameter"),
+        Form(FLAT, "flat", 1, ("base load",), "use a day = a", "mean"),
+        Form(LINE, "line", 2, ("base load", "line slope"), "use a day = a + b·T", "two-parameter"),
         Form(
             HEATING,
             "heating",
             3,
             ("base load", "heating slope"),
-            "use per day = a + b·(τ − T)⁺",
+            "use a day = a + b·(τ − T)⁺",
             "three-parameter heating",
         ),
         Form(
@@ -46,7 +46,7 @@ FORMS: Final[dict[str, Form]] = {
             "cooling",
             3,
             ("base load", "cooling slope"),
-            "use per day = a + c·(T − τ)⁺",
+            "use a day = a + c·(T − τ)⁺",
             "three-parameter cooling",
         ),
         Form(
@@ -54,7 +54,7 @@ FORMS: Final[dict[str, Form]] = {
             "two slopes",
             4,
             ("base load", "heating slope", "cooling slope"),
-            "use per day = a + b·(τ − T)⁺ + c·(T − τ)⁺",
+            "use a day = a + b·(τ − T)⁺ + c·(T − τ)⁺",
             "four-parameter",
         ),
         Form(
@@ -62,7 +62,7 @@ FORMS: Final[dict[str, Form]] = {
             "heating and cooling",
             5,
             ("base load", "heating slope", "cooling slope"),
-            "use per day = a + b·(τh − T)⁺ + c·(T − τc)⁺, τh ≤ τc",
+            "use a day = a + b·(τh − T)⁺ + c·(T − τc)⁺, τh ≤ τc",
             "five-parameter",
         ),
     )

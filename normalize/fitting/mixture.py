@@ -2,7 +2,7 @@
 
 The difference of two t variables has no closed form and a single Welch t is too narrow, so
 one is integrated against the other by a 32-node Gauss-Legendre rule, mixed over ρ, and the
-quantile found by bracketing (docs/method.md §5).
+quantile found by secants from a single-t guess (docs/method.md §5).
 """
 
 from __future__ import annotations
@@ -12,17 +12,24 @@ import numpy as np
 from normalize.fitting.student import WEIGHTS, t_cdf, t_nodes
 from normalize.jit import kernel
 
-NEGLIGIBLE = 1e-7  # weight of a ρ, as a share of the largest, below which it is left out
-EXACT = 1e-10  # of the spread: how exactly a quantile is found
+NEGLIGIBLE = 1e-5  # weight of a ρ, as a share of the largest, below which it is left out
+EXACT = 1e-9  # of probability, or of the spread: how exactly a quantile is found
+
+
+@kernel
+def _worth_keeping(weight):
+    """The weights without the implausible ones, adding up to 1 again."""
+    top = weight.max() * NEGLIGIBLE
+    kept = np.where(weight > top, weight, 0.0)
+    return kept / kept.sum()
 
 
 @kernel
 def _mixed_cdf(x, weight, centre, scale, df, centre2, scale2, df2, nodes, two):
     """P(X ≤ x), X = t of df, or the difference of t of df and t of df2 (two)."""
     total = 0.0
-    top = weight.max() * NEGLIGIBLE
     for i in range(weight.shape[0]):
-        if weight[i] <= top:
+        if weight[i] == 0.0:
             continue
         if not two:
             total += weight[i] * _step_cdf(x - centre[i], scale[i], df)
@@ -53,51 +60,71 @@ def _step_cdf(x, scale, df):
 
 
 @kernel
-def _find(u, weight, centre, scale, df, centre2, scale2, df2, nodes, two, lo, hi):
-    """The quantile u by regula falsi (Illinois), bracket [lo, hi] widened as needed."""
+def _one_t_cdf(x, weight, centre, scale, df):
+    """The mixture with each component a single t: cheap, and close enough to start from."""
+    total = 0.0
+    for i in range(weight.shape[0]):
+        if weight[i] > 0.0:
+            total += weight[i] * _step_cdf(x - centre[i], scale[i], df)
+    return total
+
+
+@kernel
+def _first_guess(u, weight, centre, scale, df):
+    """Quantile u of the mixture of single t, by bisection to a thousandth of the spread."""
+    lo = np.inf
+    hi = -np.inf
+    for i in range(weight.shape[0]):
+        if weight[i] > 0.0:
+            lo = min(lo, centre[i] - 3.0 * scale[i])
+            hi = max(hi, centre[i] + 3.0 * scale[i])
     spread = hi - lo
     if not spread > 0.0:
-        return lo
-    f_lo = _mixed_cdf(lo, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
-    f_hi = _mixed_cdf(hi, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
+        return lo, 0.0
     for _ in range(60):
-        if f_lo <= 0.0:
+        if _one_t_cdf(lo, weight, centre, scale, df) <= u:
             break
         lo -= spread
-        spread *= 2.0
-        f_lo = _mixed_cdf(lo, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
-    spread = hi - lo
     for _ in range(60):
-        if f_hi >= 0.0:
+        if _one_t_cdf(hi, weight, centre, scale, df) >= u:
             break
         hi += spread
-        spread *= 2.0
-        f_hi = _mixed_cdf(hi, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
-    tolerance = EXACT * (hi - lo)
-    x = 0.5 * (lo + hi)
-    kept = 0
-    for _ in range(200):
-        if hi - lo <= tolerance:
-            break
-        x = lo - f_lo * (hi - lo) / (f_hi - f_lo)
-        if not (lo < x < hi):
-            x = 0.5 * (lo + hi)
-        f = _mixed_cdf(x, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
-        if abs(f) <= 1e-12:
-            break
-        if f > 0.0:
+    for _ in range(12):
+        x = 0.5 * (lo + hi)
+        if _one_t_cdf(x, weight, centre, scale, df) > u:
             hi = x
-            f_hi = f
-            if kept == 1:
-                f_lo *= 0.5
-            kept = 1
         else:
             lo = x
-            f_lo = f
-            if kept == -1:
-                f_hi *= 0.5
-            kept = -1
-    return x
+    return 0.5 * (lo + hi), spread
+
+
+@kernel
+def _find(u, weight, centre, scale, df, centre2, scale2, df2, nodes, two):
+    """The quantile u: a first guess from single t, then secants on the exact mixture."""
+    joint = np.sqrt(scale * scale + scale2 * scale2) if two else scale
+    middle = centre - centre2 if two else centre
+    x0, spread = _first_guess(u, weight, middle, joint, min(df, df2))
+    if not spread > 0.0:
+        return x0
+    f0 = _mixed_cdf(x0, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
+    # A step along the density of the guess, then secants.
+    delta = 1e-3 * spread
+    density = _one_t_cdf(x0 + delta, weight, middle, joint, min(df, df2))
+    density = (density - _one_t_cdf(x0 - delta, weight, middle, joint, min(df, df2))) / (2 * delta)
+    x1 = x0 - f0 / density if density > 0.0 else x0 + delta
+    x1 = min(max(x1, x0 - spread), x0 + spread)
+    for _ in range(50):
+        f1 = _mixed_cdf(x1, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
+        if abs(f1) <= EXACT or f1 == f0:
+            break
+        step = -f1 * (x1 - x0) / (f1 - f0)
+        step = min(max(step, -spread), spread)
+        x0 = x1
+        f0 = f1
+        x1 = x1 + step
+        if abs(step) <= EXACT * spread:
+            break
+    return x1
 
 
 @kernel
@@ -105,9 +132,9 @@ def mixture_range(weight, centre, scale, df, confidence):
     """Two-sided range of a mixture over ρ of t with df: (low, high)."""
     none = np.zeros((2, WEIGHTS.shape[0]))
     tail = 0.5 * (1.0 - confidence)
-    lo, hi = _bracket(weight, centre, scale)
-    low = _find(tail, weight, centre, scale, df, centre, scale, df, none, False, lo, hi)
-    high = _find(1.0 - tail, weight, centre, scale, df, centre, scale, df, none, False, lo, hi)
+    kept = _worth_keeping(weight)
+    low = _find(tail, kept, centre, scale, df, centre, scale, df, none, False)
+    high = _find(1.0 - tail, kept, centre, scale, df, centre, scale, df, none, False)
     return low, high
 
 
@@ -118,20 +145,7 @@ def difference_range(weight, centre, scale, df, centre2, scale2, df2, confidence
     nodes[0] = t_nodes(df2)
     nodes[1] = t_nodes(df)
     tail = 0.5 * (1.0 - confidence)
-    lo, hi = _bracket(weight, centre - centre2, np.sqrt(scale * scale + scale2 * scale2))
-    low = _find(tail, weight, centre, scale, df, centre2, scale2, df2, nodes, True, lo, hi)
-    high = _find(1.0 - tail, weight, centre, scale, df, centre2, scale2, df2, nodes, True, lo, hi)
+    kept = _worth_keeping(weight)
+    low = _find(tail, kept, centre, scale, df, centre2, scale2, df2, nodes, True)
+    high = _find(1.0 - tail, kept, centre, scale, df, centre2, scale2, df2, nodes, True)
     return low, high
-
-
-@kernel
-def _bracket(weight, centre, scale):
-    """A first bracket: three scales either side of every plausible centre."""
-    lo = np.inf
-    hi = -np.inf
-    top = weight.max() * 1e-3
-    for i in range(weight.shape[0]):
-        if weight[i] > top:
-            lo = min(lo, centre[i] - 3.0 * scale[i])
-            hi = max(hi, centre[i] + 3.0 * scale[i])
-    return lo, hi

@@ -5,7 +5,7 @@ computed from inner products; every local optimum of that grid starts an alterna
 one-sided sweeps; because alternation stalls in slanted valleys, each place it stops at is
 searched with τ_cooling (and then τ_heating) set to every observed temperature nearby, the
 other swept exactly; and inside the final cells the model is linear in its five coefficients,
-so a stationary point there is solved for (Hudson 1966, JASA 61:1097-1129, memory).
+so Newton steps in both temperatures finish the search (Hudson 1966, JASA 61:1097-1129, memory).
 Measured against an exhaustive search in tests/fitting/test_pair.py.
 """
 
@@ -21,6 +21,8 @@ GRID_F = 0.5  # a 1 °F grid missed 14 of 1 709 rough accounts in a prototype, �
 NEAR_F = 1.25  # how far around a stall the other temperature is stepped
 MAX_STARTS = 8
 MAX_ROUNDS = 30
+SAME_F = 0.05  # two searches that end this close have found the same valley
+LOOK_FROM = 2  # how many of the best valleys are searched around
 
 
 @kernel
@@ -216,41 +218,55 @@ def _look_around(ts, ps, tn, pn, y, w, q, d, z, box, th, tc, gain, cold, mild):
 
 
 @kernel
-def cell_point(ts, ps, tn, pn, y, w, d, z, th, tc, box):
-    """The stationary point while both sets of days stay fixed, or (nan, nan) if outside.
+def cell_point(ts, ps, y, w, d, z, th, tc, box):
+    """Where RSS would be stationary if both sets of days stayed as they are at (th, tc).
 
-    There y = z·… + b·τh·n/d − b·S/d + … is linear in (…, b, bτh, c, cτc).
+    There y = z·… + b·τh·n/d − b·S/d + … is linear in (…, b, bτh, c, cτc).  The point may lie
+    outside its cell: it is a Newton step then.  (nan, nan) when a slope is not positive.
     """
     n, k = z.shape
     x = np.zeros((n, k + 4))
     x[:, :k] = z
-    lo_h = box[0]
-    hi_h = box[1]
-    lo_c = box[2]
-    hi_c = box[3]
     for i in range(ts.shape[0]):
         t = ts[i]
         p = ps[i]
         if t < th:
             x[p, k] -= t / d[p]
             x[p, k + 1] += 1.0 / d[p]
-            lo_h = max(lo_h, t)
-        else:
-            hi_h = min(hi_h, t)
         if t > tc:
             x[p, k + 2] += t / d[p]
             x[p, k + 3] -= 1.0 / d[p]
-            hi_c = min(hi_c, t)
-        else:
-            lo_c = max(lo_c, t)
     coef, _, _, ok = weighted_fit(x, y, w)
     if not ok or coef[k] <= 0.0 or coef[k + 2] <= 0.0:
         return np.nan, np.nan
-    new_h = coef[k + 1] / coef[k]
-    new_c = coef[k + 3] / coef[k + 2]
-    if lo_h <= new_h <= hi_h and lo_c <= new_c <= hi_c and new_h <= new_c:
-        return new_h, new_c
-    return np.nan, np.nan
+    new_h = min(max(coef[k + 1] / coef[k], box[0]), box[1])
+    new_c = min(max(coef[k + 3] / coef[k + 2], box[2]), box[3])
+    return new_h, max(new_c, new_h)
+
+
+@kernel
+def _finish(ts, ps, tn, pn, y, w, d, z, box, gain, th, tc):
+    """Newton steps in both temperatures at once, halved when one overshoots."""
+    for _ in range(MAX_ROUNDS):
+        a, b = cell_point(ts, ps, y, w, d, z, th, tc, box)
+        if np.isnan(a):
+            break
+        step_h = a - th
+        step_c = b - tc
+        moved = False
+        for _ in range(6):
+            g = gain_at(ts, ps, tn, pn, y, w, d, z, th + step_h, tc + step_c)
+            if g > gain:
+                gain = g
+                th += step_h
+                tc += step_c
+                moved = True
+                break
+            step_h *= 0.5
+            step_c *= 0.5
+        if not moved:
+            break
+    return gain, th, tc
 
 
 @kernel
@@ -275,6 +291,71 @@ def gain_at(ts, ps, tn, pn, y, w, d, z, th, tc):
 
 
 @kernel
+def _diagonal(ts, ps, tn, pn, y, w, q, d, z, box, cold, mild):
+    """Best point with both temperatures equal, where alternation cannot go: one exact sweep."""
+    n, k = z.shape
+    lo = max(box[0], box[2])
+    hi = min(box[1], box[3])
+    if lo > hi:
+        return -1.0, np.nan
+    x = np.zeros((n, k + 1))
+    x[:, :k] = z
+    for i in range(ts.shape[0]):
+        x[ps[i], k] += ts[i] / d[ps[i]]
+    zz = orthonormal(x, w)
+    if zz.shape[1] <= k:
+        return -1.0, np.nan
+    r, s = residual(y, w, zz)
+    gain, tau, _, _, _ = sweep(ts, ps, r, q, d, zz, s[k], True, lo, hi, cold, mild)
+    if gain < 0.0:
+        return -1.0, np.nan
+    return gain_at(ts, ps, tn, pn, y, w, d, z, tau, tau), tau
+
+
+@kernel
+def _settled(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild):
+    """Where alternation stops from every start, best first: (MAX_STARTS + 1, 3), how many.
+
+    Rows are (explained, τh, τc); starts that end in the same place count once.
+    """
+    th = _grid(box[0], box[1])
+    tc = _grid(box[2], box[3])
+    root = np.sqrt(w)
+    h = _columns(ts, ps, d, z, root, th)
+    c = _columns(tn, pn, d, z, root, -tc[::-1])[::-1]
+    gains = _gains(h, c, r * root, th, tc)
+    starts, count = _starts(gains)
+    found = np.full((MAX_STARTS + 1, 3), -1.0)
+    kept = 0
+    for s in range(count + 1):
+        if s < count:
+            g, a, b = _alternate(
+                ts, ps, tn, pn, y, w, q, d, z, box, th[starts[s, 0]], tc[starts[s, 1]],
+                gains[starts[s, 0], starts[s, 1]], cold, mild,
+            )  # fmt: skip
+        else:
+            g, a = _diagonal(ts, ps, tn, pn, y, w, q, d, z, box, cold, mild)
+            b = a
+        if g <= 0.0:
+            continue
+        known = False
+        for i in range(kept):
+            if abs(found[i, 1] - a) < SAME_F and abs(found[i, 2] - b) < SAME_F:
+                known = True
+        if known:
+            continue
+        at = kept
+        while at > 0 and found[at - 1, 0] < g:
+            found[at] = found[at - 1]
+            at -= 1
+        found[at, 0] = g
+        found[at, 1] = a
+        found[at, 2] = b
+        kept += 1
+    return found, kept
+
+
+@kernel
 def pair_search(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild):
     """Best (τh, τc) with both slopes positive, τh ≤ τc: (explained, τh, τc).
 
@@ -284,33 +365,17 @@ def pair_search(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild):
     best = -1.0
     best_th = np.nan
     best_tc = np.nan
-    th = _grid(box[0], box[1])
-    tc = _grid(box[2], box[3])
-    root = np.sqrt(w)
-    h = _columns(ts, ps, d, z, root, th)
-    c = _columns(tn, pn, d, z, root, -tc[::-1])[::-1]
-    gains = _gains(h, c, r * root, th, tc)
-    starts, count = _starts(gains)
-    for s in range(count):
-        g, a, b = _alternate(
-            ts, ps, tn, pn, y, w, q, d, z, box, th[starts[s, 0]], tc[starts[s, 1]],
-            gains[starts[s, 0], starts[s, 1]], cold, mild,
-        )  # fmt: skip
+    found, count = _settled(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild)
+    for s in range(min(count, LOOK_FROM)):
+        g, a, b = found[s]
         for _ in range(MAX_ROUNDS):
             before = g
             g, a, b = _look_around(ts, ps, tn, pn, y, w, q, d, z, box, a, b, g, cold, mild)
+            g, a, b = _finish(ts, ps, tn, pn, y, w, d, z, box, g, a, b)
             if g <= before * (1.0 + 1e-13):
                 break
         if g > best:
             best = g
             best_th = a
             best_tc = b
-    if best > 0.0:
-        a, b = cell_point(ts, ps, tn, pn, y, w, d, z, best_th, best_tc, box)
-        if not np.isnan(a):
-            g = gain_at(ts, ps, tn, pn, y, w, d, z, a, b)
-            if g > best:
-                best = g
-                best_th = a
-                best_tc = b
     return best, best_th, best_tc

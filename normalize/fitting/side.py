@@ -67,7 +67,7 @@ def parameters_of(form):
         return 1
     if form == LINE:
         return 2
-    if form == HEATING or form == COOLING:
+    if form in (HEATING, COOLING):
         return 3
     return 4 if form == TWO_SLOPES else 5
 
@@ -204,7 +204,13 @@ def _two_taus(out, ts, ps, tn, pn, y, r, w, q, d, z, settings):
     gain, th, tc = pair_search(
         ts, ps, tn, pn, y, r, w, q, d, z, box, settings[S_COLD], settings[S_MILD]
     )
-    if gain < 0.0:
+    total = 0.0
+    for p in range(y.shape[0]):
+        total += w[p] * r[p] * r[p]
+    # With slopes >= 0 the best lies on the edge (one slope zero) whenever one slope alone
+    # explains as much: then there is no heating-and-cooling fit to speak of.
+    alone = total - max(gain, 0.0)
+    if gain < 0.0 or alone >= out[HEATING, RSS] or alone >= out[COOLING, RSS]:
         row[STATUS] = WRONG_SIGN
         return False
     row[TAU_H] = th + SHIFT_F
@@ -252,7 +258,7 @@ def fit_side(ts, ps, y, d, w, drivers, wanted, net, settings):
         row[DAYS] = d.sum()
         row[MEAN] = mean
         row[TSS] = total
-        both = wanted[HEATING_AND_COOLING] and (form == HEATING or form == COOLING)
+        both = wanted[HEATING_AND_COOLING] and form in (HEATING, COOLING)
         if not wanted[form] and not both:
             row[STATUS] = NOT_TRIED
             continue

@@ -53,9 +53,7 @@ def _hill(x, df):
 @kernel
 def t_log_norm(df):
     """Logarithm of the density at 0."""
-    return (
-        math.lgamma(0.5 * (df + 1.0)) - math.lgamma(0.5 * df) - 0.5 * math.log(df * math.pi)
-    )
+    return math.lgamma(0.5 * (df + 1.0)) - math.lgamma(0.5 * df) - 0.5 * math.log(df * math.pi)
 
 
 @kernel

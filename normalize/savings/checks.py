@@ -56,11 +56,10 @@ def fractional_uncertainty(
     return t * k * cv * math.sqrt(inner) / fraction
 
 
-def checks_of(
-    savings: Savings, *, outside_share: float | None, n_after: int
-) -> tuple[Check, ...]:
+def checks_of(savings: Savings, *, outside_share: float | None, n_after: int) -> tuple[Check, ...]:
     """All checks of an account. outside_share : of the long-term year's weather that lies
-    outside the temperatures the baseline saw; n_after : reporting periods in use."""
+    outside the temperatures the baseline saw; n_after : reporting periods in use.
+    """
     out: list[Check] = []
     for side, fit in (("before", savings.before), ("after", savings.after)):
         if fit is not None:
@@ -105,44 +104,57 @@ def _fit_checks(side: str, fit: Fit, reporting_days: int) -> list[Check]:
     for term, t in list(zip(fit.terms, fit.t, strict=True))[1:]:
         checks.append(
             Check(
-                f"|t| of the {term}", side, abs(t) if math.isfinite(t) else None, 2.0,
+                f"|t| of the {term}",
+                side,
+                abs(t) if math.isfinite(t) else None,
+                2.0,
                 abs(t) >= 2.0 if math.isfinite(t) else True,
                 "whether use answers to weather at all (balance temperature taken as found)",
                 "Treat the account as a flat load.",
                 IPMVP,
-            )  # fmt: skip
+            )
         )
     if math.isfinite(fit.durbin_watson):
         low, high = DW_RANGE
         checks.append(
             Check(
-                "Durbin–Watson", side, fit.durbin_watson, low,
+                "Durbin–Watson",
+                side,
+                fit.durbin_watson,
+                low,
                 low <= fit.durbin_watson <= high,
                 f"whether neighbouring bills err alike; 2 is none, below {low:g} is strong",
                 "Nothing: the range allows for it. The plain range beside it does not.",
                 CUSTOM,
-            )  # fmt: skip
+            )
         )
     if fit.form not in ("flat", "line"):
         checks.append(
             Check(
-                "balance temperature inside its range", side, 1.0 if fit.on_bound else 0.0, 0.0,
+                "balance temperature inside its range",
+                side,
+                1.0 if fit.on_bound else 0.0,
+                0.0,
                 not fit.on_bound,
                 "1 when the balance temperature ended on the edge of where it may lie",
                 "Read it as “at or beyond”; the slope is then less sure than it looks.",
                 CUSTOM,
-            )  # fmt: skip
+            )
         )
     return checks
 
 
 def _outside(share: float) -> Check:
     return Check(
-        "weather not seen", "before", share, MAX_OUTSIDE, share <= MAX_OUTSIDE,
+        "weather not seen",
+        "before",
+        share,
+        MAX_OUTSIDE,
+        share <= MAX_OUTSIDE,
         "share of the normal year's days colder or warmer than any day of the baseline",
         "The normal year is partly extrapolated: add bills from a colder or hotter season.",
         CUSTOM,
-    )  # fmt: skip
+    )
 
 
 def _saving_checks(savings: Savings, n_after: int) -> list[Check]:
@@ -152,29 +164,40 @@ def _saving_checks(savings: Savings, n_after: int) -> list[Check]:
         size = abs(normalized.fraction)
         out.append(
             Check(
-                "size of the change", "both", size, MIN_SHARE, size >= MIN_SHARE,
+                "size of the change",
+                "both",
+                size,
+                MIN_SHARE,
+                size >= MIN_SHARE,
                 "whole-meter bills show changes above about a tenth of use best",
                 "Trust the range, and wait for more bills.",
                 CUSTOM,
-            )  # fmt: skip
+            )
         )
     if before is not None and avoided.fraction is not None and avoided.fraction > 0.0:
         rho = min(max(before.rho, 0.0), 0.9)
         df = max(before.n_periods - len(before.terms), 1)
         value = fractional_uncertainty(
-            n=before.n_periods, m=max(n_after, 1), rho=rho, cv=before.cv_rmse,
-            fraction=avoided.fraction, t=t_quantile(0.5 + 0.5 * FSU_CONFIDENCE, df),
-        )  # fmt: skip
+            n=before.n_periods,
+            m=max(n_after, 1),
+            rho=rho,
+            cv=before.cv_rmse,
+            fraction=avoided.fraction,
+            t=t_quantile(0.5 + 0.5 * FSU_CONFIDENCE, df),
+        )
         if math.isfinite(value):
             out.append(
                 Check(
-                    "fractional savings uncertainty at 68 %", "both", value, FSU_LIMIT,
+                    "fractional savings uncertainty at 68 %",
+                    "both",
+                    value,
+                    FSU_LIMIT,
                     value <= FSU_LIMIT,
                     "half-width of the avoided use's range as a share of it, by the guideline's "
                     "formula with this account's serial correlation",
                     "Wait for more bills, or report the range as it is.",
                     PERFORMANCE + "; Reddy & Claridge 2000, HVAC&R Research 6(1), k = 1.26",
-                )  # fmt: skip
+                )
             )
     return out
 

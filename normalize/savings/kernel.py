@@ -132,33 +132,34 @@ def _one_range(out, at, value, like_w, shift, scale2, df, confidence):
 
 
 @kernel
-def _avoided(out, row, form, rep, jac, resid, w, place, held, confidence):
-    """Avoided use over the reporting periods, from the baseline alone."""
-    ts2, ps2, y2, d2, s2, e2 = rep
+def _avoided_target(out, row, form, rep, k, held):
+    """Predicted and actual use of the reporting periods; gradient of the prediction (k,)."""
+    ts2, ps2, y2, d2, _, _ = rep
     x2, jac2 = design_and_jacobian(row, form, ts2, ps2, d2, not held)
-    if held:
-        jac2 = x2
     predicted = times(x2, coefficients_of(row, form))
-    target = np.zeros((1, jac.shape[1]))
+    target = np.zeros(k)
     total = 0.0
     actual = 0.0
     for p in range(d2.shape[0]):
         total += d2[p] * predicted[p]
         actual += d2[p] * y2[p]
-        for j in range(jac.shape[1]):
-            target[0, j] += d2[p] * jac2[p, j]
-    like, shift, scale2, innovation = through_rho(jac, resid, w, place, target)
-    place2 = positions(s2, e2)
-    mean_days = w.sum() / w.shape[0]
-    for i in range(RHO.shape[0]):
-        scale2[i, 0] += innovation[i] * sum_noise(d2, place2, RHO[i], mean_days)
+        for j in range(k):
+            target[j] += d2[p] * jac2[p, j]
     out[PREDICTED] = total
     out[ACTUAL] = actual
-    df = jac.shape[0] - jac.shape[1]
-    _one_range(
-        out, AVOIDED, total - actual, weights_of(like), shift[:, 0].copy(),
-        scale2[:, 0].copy(), df, confidence,
-    )  # fmt: skip
+    return target
+
+
+@kernel
+def _avoided(out, rep, like, shift, scale2, innovation, mean_days, df, confidence):
+    """Avoided use over the reporting periods, from the baseline alone."""
+    _, _, _, d2, s2, e2 = rep
+    place = positions(s2, e2)
+    total = scale2.copy()
+    for i in range(RHO.shape[0]):
+        total[i] += innovation[i] * sum_noise(d2, place, RHO[i], mean_days)
+    value = out[PREDICTED] - out[ACTUAL]
+    _one_range(out, AVOIDED, value, weights_of(like), shift, total, df, confidence)
 
 
 @kernel
@@ -180,7 +181,7 @@ def _normalized(out, value, like1, sh1, sc1, df1, like2, sh2, sc2, df2, n1, n2, 
     v1 = sc1[RHO_ZERO]
     v2 = sc2[RHO_ZERO]
     welch = (v1 + v2) ** 2 / (v1 * v1 / df1 + v2 * v2 / df2) if v1 + v2 > 0.0 else df1
-    half = t_quantile(0.5 + 0.5 * confidence, max(np.floor(welch), 1.0)) * np.sqrt(v1 + v2)
+    half = t_quantile(0.5 + 0.5 * confidence, max(int(welch), 1)) * np.sqrt(v1 + v2)
     out[NORMALIZED + 3] = value - half
     out[NORMALIZED + 4] = value + half
 
@@ -199,34 +200,40 @@ def compare_sides(out, row1, form1, side1, row2, form2, side2, year, confidence)
         return
     jac, resid, held = linearise(row1, form1, ts, ps, y, d, w)
     out[HELD_BEFORE] = 1.0 if held else 0.0
-    place = positions(s, e)
+    n, k = jac.shape
+    # One pass over ρ serves both the normal year and the reporting period.
+    target = np.zeros((2, k))
+    rep = (ts2, ps2, y2, d2, s2, e2)
+    has_year = temp.shape[0] > 0
+    if has_year:
+        target[0] = nac_gradient(row1, form1, k, temp, days, degrees)
     if y2.shape[0] > 0:
+        target[1] = _avoided_target(out, row1, form1, rep, k, held)
+    like, shift, scale2, innovation = through_rho(jac, resid, w, positions(s, e), target)
+    sh1 = shift[:, 0].copy()
+    sc1 = scale2[:, 0].copy()
+    if y2.shape[0] > 0:
+        mean_days = w.sum() / n
         _avoided(
-            out, row1, form1, (ts2, ps2, y2, d2, s2, e2), jac, resid, w, place, held,
-            confidence,
+            out, rep, like, shift[:, 1].copy(), scale2[:, 1].copy(), innovation, mean_days,
+            n - k, confidence,
         )  # fmt: skip
-    if temp.shape[0] == 0:
+    if not has_year:
         return
-    k = jac.shape[1]
-    target = nac_gradient(row1, form1, k, temp, days, degrees).reshape(1, k)
-    like, shift, scale2, _ = through_rho(jac, resid, w, place, target)
     nac1 = nac_of(row1, form1, temp, days, degrees)
     if form2 < 0:
-        _one_range(
-            out, NAC_BEFORE, nac1, weights_of(like), shift[:, 0].copy(), scale2[:, 0].copy(),
-            jac.shape[0] - k, confidence,
-        )  # fmt: skip
+        _one_range(out, NAC_BEFORE, nac1, weights_of(like), sh1, sc1, n - k, confidence)
         return
     jac2, resid2, held2 = linearise(row2, form2, ts2, ps2, y2, d2, w2)
     out[HELD_AFTER] = 1.0 if held2 else 0.0
-    k2 = jac2.shape[1]
-    target2 = nac_gradient(row2, form2, k2, temp, days, degrees).reshape(1, k2)
+    n2, k2 = jac2.shape
+    target2 = np.zeros((1, k2))
+    target2[0] = nac_gradient(row2, form2, k2, temp, days, degrees)
     like2, shift2, scale22, _ = through_rho(jac2, resid2, w2, positions(s2, e2), target2)
     nac2 = nac_of(row2, form2, temp, days, degrees)
     _normalized(
-        out, nac1 - nac2, like, shift[:, 0].copy(), scale2[:, 0].copy(), jac.shape[0] - k,
-        like2, shift2[:, 0].copy(), scale22[:, 0].copy(), jac2.shape[0] - k2, nac1, nac2,
-        confidence,
+        out, nac1 - nac2, like, sh1, sc1, n - k, like2, shift2[:, 0].copy(),
+        scale22[:, 0].copy(), n2 - k2, nac1, nac2, confidence,
     )  # fmt: skip
 
 

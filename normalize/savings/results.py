@@ -43,7 +43,7 @@ class Estimate:
 
     @property
     def verdict(self) -> str:
-        """"reduction", "increase", "cannot tell" or "unavailable"."""
+        """One of "reduction", "increase", "cannot tell" and "unavailable"."""
         if self.low is None or self.high is None:
             return "unavailable"
         if self.low > 0.0:
@@ -53,7 +53,9 @@ class Estimate:
         return "cannot tell"
 
     @classmethod
-    def none(cls, reason: str, *, known_from: int | None = None, confidence: float = 0.90) -> Estimate:
+    def none(
+        cls, reason: str, *, known_from: int | None = None, confidence: float = 0.90
+    ) -> Estimate:
         """No value, with its reason."""
         return cls(unavailable=reason, known_from=known_from, confidence=confidence)
 

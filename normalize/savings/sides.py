@@ -59,7 +59,9 @@ def label_periods(
         elif start >= work.end:
             label = "after" if middle < work.end + window_days else "later"
         else:
-            touches = any(start < e and end > s for s, e in work.windows or ((work.start, work.end),))
+            touches = any(
+                start < e and end > s for s, e in work.windows or ((work.start, work.end),)
+            )
             label = "work window" if touches else "between"
         if aligned.reason[i] and label in ("before", "after"):
             label = "set aside"
