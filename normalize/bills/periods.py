@@ -83,6 +83,19 @@ class Periods:
 
 
 @dataclass(frozen=True, slots=True)
+class Flag:
+    """Something odd about a period, left as it is. period : from 1.  what : a code's name.
+
+    what : "zero use", "repeated number", "multiplier", "empty house", "alternating".
+    note : the same in words.
+    """
+
+    period: int
+    what: str
+    note: str
+
+
+@dataclass(frozen=True, slots=True)
 class Bills:
     """One account's bills: rows, periods and the ledger that connects them.
 
@@ -90,6 +103,10 @@ class Bills:
     source : file names with their SHA-256, for the report's list of inputs.
     reading : how the file was understood, as short sentences ("usage from column 'kWh'").
     kind : "meter" for read meters, "delivery" for dealer deliveries.
+    unfit : why this account's use cannot answer to weather in the way of this method (solar
+        panels whose generation is not known); empty for most.
+    flags : what is odd about single periods and was left as it is.
+    gross : generation was added back, so that use is what the house used.
     """
 
     account: str
@@ -103,3 +120,6 @@ class Bills:
     kind: str = "meter"
     currency: str = "USD"
     cautions: tuple[str, ...] = field(default=())
+    unfit: str = ""
+    flags: tuple[Flag, ...] = ()
+    gross: bool = False

@@ -1,68 +1,20 @@
 """Read a file of bills: the one entrance of this room.
 
-What belongs here: the order of the steps, from a path to Bills.  Each step has its module:
-table (cells) → columns (roles) → select (lines of the account) → records (dates, numbers) →
-layouts (start and end of each bill) → repair (periods and ledger).
+What belongs here: which reader a file is for (tables, interval files, ESPI XML), and what is done
+to its rows whatever they came from: repair, flags, and the check that nothing was lost.
 """
 
 from __future__ import annotations
 
 import os
-from collections.abc import Sequence
-from dataclasses import dataclass
-from pathlib import Path
-from typing import Literal, cast
 
-from normalize.bills import records as rec
-from normalize.bills.amounts import Decimal, number_of
-from normalize.bills.columns import (
-    Columns,
-    choose_cost,
-    choose_usage,
-    described,
-    find_columns,
-    is_delivered,
-)
-from normalize.bills.dates import ORDERS, Order, Written, read_written
-from normalize.bills.fuel_and_unit import fuel_of, unit_of
+from normalize.bills.answers import Answers, Understood, answers_of
 from normalize.bills.headings import header_score, squeeze
-from normalize.bills.layout_choice import Layout, layout_of
-from normalize.bills.layouts import (
-    Record,
-    days_that_disagree,
-    from_dates_alone,
-    from_days,
-    from_start_days,
-    settle_ends,
-)
 from normalize.bills.periods import Bills
-from normalize.bills.repair import Kind, reconcile, repair
-from normalize.bills.select import cell, select_rows, without_remarks
-from normalize.bills.table import RawRow, RawTable, read_table
-from normalize.errors import AmbiguousBills, BillError, NoBills
-from normalize.units import canonical_fuel, canonical_unit
-
-_CHOICES: dict[str, tuple[str, ...]] = {
-    "dates": ORDERS,
-    "end_dates": ("exclusive", "inclusive"),
-    "kind": ("meter", "delivery"),
-    "decimal": ("point", "comma"),
-}
-
-
-@dataclass(frozen=True, slots=True)
-class _Answers:
-    """What the user said; each is None where nothing was said."""
-
-    fuel: str | None
-    unit: str | None
-    dates: Order | None
-    end_dates: str | None
-    kind: Kind | None
-    decimal: Decimal | None
-    temperature_unit: str | None
-    rows: str | None
-    named: dict[str, str]
+from normalize.bills.repair import reconcile, repair
+from normalize.bills.solar import solar_signature
+from normalize.bills.table import BillFile, open_file, read_table
+from normalize.errors import NoBills
 
 
 def read_bills(
@@ -80,256 +32,76 @@ def read_bills(
     cost_column: str | None = None,
     estimated_column: str | None = None,
     temperature_column: str | None = None,
+    register_column: str | None = None,
+    generation_column: str | None = None,
     temperature_unit: str | None = None,
     sheet: str | None = None,
     kind: str | None = None,
     net_metered: bool = False,
     rows: str | None = None,
     decimal: str | None = None,
+    read_day: int | str | None = None,
+    time_zone: str | None = None,
+    sum_to: str | None = None,
+    interval_times: str | None = None,
+    multiplier: float | None = None,
+    tank_size: float | None = None,
+    tank_percent: str | None = None,
     currency: str = "USD",
 ) -> Bills:
-    """Read one account's bills from a CSV or XLSX file, and repair them.
+    """Read one account's bills from CSV, XLSX or ESPI XML, and repair them.
 
     fuel, unit : only where the file does not say.  dates : "month first", "day first" or
     "year first".  end_dates : "exclusive" (the day of the reading) or "inclusive" (the last
     day of the bill).  ..._column : headings, where the reader's own choice is wrong.  sheet :
     of a workbook.  kind : "meter" or "delivery".  rows : which account, meter or fuel of a
     file that holds several.  decimal : "point" or "comma".
+    read_day : for bills that name only a month, the day of that month on which the meter is
+    read, or "calendar"; also where months begin when intervals are summed.
+    time_zone : "America/New_York" or "-05:00", where readings carry none.  sum_to : "day" or
+    "month", for interval data.  interval_times : "start" or "end" of an interval.
+    multiplier : of a meter whose readings are given.  tank_size, tank_percent : the tank's
+    content when full, and whether percentages are "before" or "after" the delivery.
     Raises MissingFile, UnreadableBills, AmbiguousBills (asks one question), UnknownUnit, NoBills.
     """
-    said = {"dates": dates, "end_dates": end_dates, "kind": kind, "decimal": decimal}
-    for key, value in said.items():
-        if value is not None and value not in _CHOICES[key]:
-            raise BillError(f"{key} is {str(value)[:40]!r}", wanted=" or ".join(_CHOICES[key]))
-    named = {
-        "usage": usage_column, "start": start_column, "end": end_column, "days": days_column,
-        "cost": cost_column, "estimated": estimated_column, "temperature": temperature_column,
-    }  # fmt: skip
-    name = Path(path).name
-    fuel = canonical_fuel(fuel, where=name) if fuel else None
-    answers = _Answers(
-        fuel, canonical_unit(unit, fuel, where=name) if unit else None,
-        cast("Order | None", dates), end_dates, cast("Kind | None", kind),
-        cast("Decimal | None", decimal), temperature_unit, rows,
-        {role: heading for role, heading in named.items() if heading},
-    )  # fmt: skip
-    names = frozenset(squeeze(v) for v in answers.named.values())
-    table = read_table(path, score=lambda cells: header_score(cells, names), sheet=sheet)
-    bills = _bills_of(table, answers, account, net_metered, currency)
+    given = dict(locals())
+    file = open_file(path)
+    answers = answers_of(file.name, given)
+    found = _understand(file, answers, sheet)
+    bills = _repaired(file, found, account, net_metered=net_metered, currency=currency)
     reconcile(bills)
     return bills
 
 
-def _bills_of(
-    table: RawTable, answers: _Answers, account: str, net_metered: bool, currency: str
+def _understand(file: BillFile, answers: Answers, sheet: str | None) -> Understood:
+    """The rows of a file, by the reader that it is for."""
+    from normalize.bills.espi_xml import looks_like_xml
+
+    if looks_like_xml(file.data):
+        from normalize.bills.espi import read_espi
+
+        return read_espi(file.data, file.name, answers)
+    from normalize.bills.table_bills import understand_table
+
+    names = frozenset(squeeze(v) for v in answers.named.values())
+    table = read_table(file, score=lambda cells: header_score(cells, names), sheet=sheet)
+    return understand_table(table, answers)
+
+
+def _repaired(
+    file: BillFile, found: Understood, account: str, *, net_metered: bool, currency: str
 ) -> Bills:
-    columns, all_rows = find_columns(table, answers.named)
-    where = f"{table.name}:{columns.line}"
-    header = [squeeze(c) for row in table.rows if row.line == columns.line for c in row.cells]
-    columns, usage_notes = choose_usage(
-        columns, fuel=answers.fuel, unit=answers.unit, where=table.name
-    )
-    body, totals, remark_notes = without_remarks(columns, header, all_rows)
-    body, other_notes = select_rows(
-        columns, body, rows=answers.rows, fuel=answers.fuel, unit=answers.unit, where=where
-    )
-    if not body:
-        raise NoBills("there is a header but no bill beneath it", where=where)
-    fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
-    columns = choose_cost(columns, fuel)
-    kind = answers.kind or _kind_of(columns, fuel)
-    layout = layout_of(columns, body, kind, where)
-    found = _Found(table, columns, body, totals, layout, kind, where)
-    records, notes, cautions = _records(found, answers)
-    unit, unit_note = unit_of(
-        columns, body, (suffix for _, suffix in records),
-        said=answers.unit, fuel=fuel, where=where,
-    )  # fmt: skip
-    rows = tuple(record.row(table.name) for record, _ in records)
-    periods, ledger = repair(rows, kind=kind, net_metered=net_metered)
+    net = net_metered or (found.sent and not found.generation)
+    periods, ledger = repair(found.rows, kind=found.kind, net_metered=net)
     bills = Bills(
-        account=account, fuel=fuel, unit=unit, rows=rows, periods=periods, ledger=ledger,
-        source=((table.name, table.sha256),),
-        reading=(
-            *_sheet_note(table), f"header on line {columns.line}", f"fuel: {fuel}", unit_note,
-            *described(columns, (*layout.roles, "usage", "cost", _mark(kind), "temperature")),
-            *usage_notes, *notes, *remark_notes, *other_notes,
-        ),
-        kind=kind, currency=currency, cautions=cautions,
+        account=account, fuel=found.fuel, unit=found.unit, rows=found.rows, periods=periods,
+        ledger=ledger, source=((file.name, file.sha256),), reading=found.reading,
+        kind=found.kind, currency=found.currency or currency, cautions=found.cautions,
+        unfit=solar_signature(found, periods, net_metered=net_metered), gross=found.generation,
     )  # fmt: skip
     if periods.n == 0:
-        raise _no_bills(bills, where)
+        raise _no_bills(bills, file.name)
     return bills
-
-
-@dataclass(frozen=True, slots=True)
-class _Found:
-    """What is known of the file once its layout is settled."""
-
-    table: RawTable
-    columns: Columns
-    body: Sequence[RawRow]
-    totals: Sequence[int]
-    layout: Layout
-    kind: Kind
-    where: str
-
-
-def _sheet_note(table: RawTable) -> tuple[str, ...]:
-    return (f"sheet {table.sheet[:40]!r}",) if table.sheet else ()
-
-
-def _mark(kind: Kind) -> str:
-    return "fill" if kind == "delivery" else "estimated"
-
-
-def _kind_of(columns: Columns, fuel: str) -> Kind:
-    """Dealer deliveries: a column of deliveries or fills, or a fuel that comes by truck."""
-    if columns.get("delivery") is not None or columns.get("fill") is not None:
-        return "delivery"
-    return "delivery" if is_delivered(fuel) else "meter"
-
-
-def _records(
-    found: _Found, answers: _Answers
-) -> tuple[list[tuple[Record, str]], tuple[str, ...], tuple[str, ...]]:
-    """Each bill line's record with what stood behind its number; sentences; cautions."""
-    columns, body = found.columns, found.body
-    written = rec.written_dates(found.table, found.layout.where, body)
-    ends = [w for _, w in written if w != Written()]
-    if ends and all(w.month_only for w in ends):
-        raise AmbiguousBills(
-                "the dates name months but no days", where=found.where,
-                wanted="the date of each reading, or the first and last day of each bill",
-                next_step="Add the day to each date.",
-            )  # fmt: skip
-    used = [columns.get(role) for role in ("usage", "cost", "temperature", "days")]
-    numbers = rec.how_numbers_are_written(found.table, body, used, answers.decimal)
-    days = [rec.days_of(cell(row, columns.get("days")), numbers.decimal) for row in body]
-    others = [
-        read_written(cell(row, k))
-        for role in ("bill date", "read", "end", "start")
-        if (k := columns.get(role)) is not None
-        for row in body
-    ]
-    order, order_notes = rec.decide_order(
-        columns, written, days, others, said=answers.dates, where=found.where
-    )
-    records = []
-    both = found.layout.name == "start and end"
-    for row, pair in zip(body, written, strict=True):
-        record = Record(row.line)
-        if row.line in found.totals:
-            record.blame("a total, not a bill")
-        if found.layout.name == "start and days":
-            pair = (pair[0], pair[0])  # the end comes from the days
-        rec.put_dates(record, pair, order, both=both)
-        records.append((record, _put_numbers(record, row, columns, numbers.decimal)))
-    plain = [record for record, _ in records]
-    cautions = _put_marks(plain, found)
-    _put_temperature(plain, found, answers, numbers.decimal)
-    notes = (*order_notes, *((numbers.sentence,) if numbers.sentence else ()))
-    notes += _put_periods(plain, found, answers)
-    _per_day(plain, columns)
-    cautions += days_that_disagree(plain, found.table.name) if both else ()
-    return records, notes, cautions
-
-
-def _put_numbers(record: Record, row: RawRow, columns: Columns, decimal: Decimal) -> str:
-    suffix = rec.put_use(record, cell(row, columns.get("usage")), decimal)
-    rec.put_days(record, cell(row, columns.get("days")), decimal)
-    cost = number_of(cell(row, columns.get("cost")), decimal)
-    record.cost = cost if cost is not None and abs(cost) < 1e12 else None
-    return suffix
-
-
-def _put_marks(records: Sequence[Record], found: _Found) -> tuple[str, ...]:
-    """Estimated readings, or fills not known to be full; returns cautions."""
-    delivery = found.kind == "delivery"
-    role = "fill" if delivery else "estimated"
-    k = found.columns.get(role)
-    filled = k is not None and any(str(cell(row, k) or "").strip() for row in found.body)
-    unknown: list[int] = []
-    bad: list[int] = []
-    for record, row in zip(records, found.body, strict=True):
-        if filled and k is not None:
-            heading = found.columns.headings[k]
-            judge = rec.is_partial if delivery else rec.is_estimated
-            mark = judge(cell(row, k), heading)
-            if mark is None:
-                unknown.append(record.line)
-            record.estimated = record.estimated or bool(mark if mark is not None else delivery)
-        said = rec.notes_say(row, found.columns, delivery=delivery)
-        record.estimated = record.estimated or bool(said)
-        if said == "bad":
-            bad.append(record.line)
-    cautions = []
-    if bad:
-        # A wrong reading does to the next bill what an estimate does: its error comes back.
-        cautions.append(
-            f"The notes call {len(bad)} readings bad (first on line {bad[0]}); they are treated "
-            "like estimated ones."
-        )
-    if unknown:
-        taken = "counted as partial fills" if delivery else "taken for actual readings"
-        heading_text = found.columns.heading(role).text
-        cautions.append(
-            f"{len(unknown)} marks in column {heading_text!r} are not known (first on line "
-            f"{unknown[0]}); {taken}."
-        )
-    if delivery and not filled and found.layout.name == "dates alone":
-        cautions.append(
-            "No column says which deliveries filled the tank, so every one counts as a full fill; "
-            "a partial one moves use from its own interval to the next."
-        )
-    return tuple(cautions)
-
-
-def _put_temperature(
-    records: Sequence[Record], found: _Found, answers: _Answers, decimal: Decimal
-) -> None:
-    k = found.columns.get("temperature")
-    if k is None:
-        return
-    values = [number_of(cell(row, k), decimal) for row in found.body]
-    sane = [v for v in values if v is not None and abs(v) < 200.0]
-    if not sane:
-        return
-    celsius = rec.temperature_is_celsius(
-        found.columns.headings[k], sane, said=answers.temperature_unit, where=found.where
-    )
-    for record, value in zip(records, values, strict=True):
-        if value is not None and abs(value) < 200.0:
-            record.mean_temp_f = value * 1.8 + 32.0 if celsius else value
-
-
-def _put_periods(records: Sequence[Record], found: _Found, answers: _Answers) -> tuple[str, ...]:
-    """Start and end of every record, by the file's layout; returns sentences."""
-    name = found.layout.name
-    if name == "start and end":
-        return (settle_ends(records, said=answers.end_dates, where=found.where),)
-    if name == "start and days":
-        from_start_days(records)
-        return ("a bill ends so many days after its start",)
-    if answers.end_dates == "inclusive":
-        for record in records:
-            record.end = None if record.end is None else record.end + 1
-    if name == "date and days":
-        from_days(records)
-        return ("a bill starts so many days before its reading",)
-    event: Literal["delivery", "reading"] = "delivery" if found.kind == "delivery" else "reading"
-    from_dates_alone(records, event)
-    return (f"a bill runs from the {event} before to its own",)
-
-
-def _per_day(records: Sequence[Record], columns: Columns) -> None:
-    """Turn use per day into use."""
-    if not columns.heading("usage").per_day:
-        return
-    for record in records:
-        if record.use is not None and record.start is not None and record.end is not None:
-            days = record.days if record.days is not None else record.end - record.start
-            record.use *= days
 
 
 def _no_bills(bills: Bills, where: str) -> NoBills:

@@ -44,6 +44,14 @@ TWO_MONTHLY_MEDIAN = 45  # days: half-way between one month and two
 MAX_TANGLE = 500  # rows that all overlap, or share one period: more is a fault of the file, and
 #                   comparing each with each would take for ever (safety, no source)
 
+# Solar panels, by their signature: electricity that all but vanishes in sunny months of the
+# northern half of the earth.  An occupied house always runs a refrigerator (our own, no source).
+DARK_MONTHS = (11, 12, 1, 2)
+SUNNY_MONTHS = (4, 5, 6, 7, 8, 9)
+SOLAR_SHARE = 0.10  # of the dark months' median use a day
+SOLAR_MIN_DAYS = 45  # so low: more than one bill
+SOLAR_MIN_PERIODS = 6
+
 # --- Why a row was left out ---------------------------------------------------------------
 
 KEPT = 0

@@ -64,14 +64,28 @@ class RawTable:
     epoch_1904: bool = False
 
 
-def read_table(path: str | os.PathLike[str], *, score: Score, sheet: str | None = None) -> RawTable:
-    """Read a CSV or XLSX file into rows of cells.
+@dataclass(frozen=True, slots=True)
+class BillFile:
+    """A file's bytes. name : without folder.  sha256 : of the bytes."""
 
-    Raises MissingFile, UnreadableBills, AmbiguousBills (several sheets that look like bills).
-    """
+    name: str
+    data: bytes
+    sha256: str
+
+
+def open_file(path: str | os.PathLike[str]) -> BillFile:
+    """The bytes of a file of sane size.  Raises MissingFile, UnreadableBills."""
     file = Path(path)
     data = _bytes_of(file)
-    digest = hashlib.sha256(data).hexdigest()
+    return BillFile(file.name, data, hashlib.sha256(data).hexdigest())
+
+
+def read_table(file: BillFile, *, score: Score, sheet: str | None = None) -> RawTable:
+    """A CSV or XLSX file as rows of cells.
+
+    Raises UnreadableBills, AmbiguousBills (several sheets that look like bills).
+    """
+    data, digest = file.data, file.sha256
     if data.startswith(b"PK"):
         from normalize.bills.workbook import read_workbook
 

@@ -1,0 +1,245 @@
+"""A table of bills becomes rows of one account: columns, lines, dates, numbers, marks.
+
+What belongs here: the order of the steps between a raw table and BillRows.  Each step has its
+module: columns (roles) → select (lines of the account) → records (dates, numbers) → layouts
+(start and end of each bill), registers, deliveries.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+from normalize.bills import records as rec
+from normalize.bills.amounts import Decimal, number_of
+from normalize.bills.answers import Answers, Understood
+from normalize.bills.columns import (
+    Columns,
+    choose_cost,
+    choose_usage,
+    described,
+    find_columns,
+    is_delivered,
+)
+from normalize.bills.dates import Written, read_written
+from normalize.bills.fuel_and_unit import fuel_of, unit_of
+from normalize.bills.headings import squeeze
+from normalize.bills.layout_choice import Layout, layout_of
+from normalize.bills.layouts import (
+    Record,
+    days_that_disagree,
+    from_dates_alone,
+    from_days,
+    from_start_days,
+    settle_ends,
+)
+from normalize.bills.repair import Kind
+from normalize.bills.select import cell, select_rows, without_remarks
+from normalize.bills.table import RawRow, RawTable
+from normalize.errors import AmbiguousBills, NoBills
+
+
+def understand_table(table: RawTable, answers: Answers) -> Understood:
+    """Rows of one account from a raw table.  Raises as read_bills does."""
+    columns, all_rows = find_columns(table, answers.named)
+    where = f"{table.name}:{columns.line}"
+    header = [squeeze(c) for row in table.rows if row.line == columns.line for c in row.cells]
+    columns, usage_notes = choose_usage(
+        columns, fuel=answers.fuel, unit=answers.unit, where=table.name
+    )
+    body, totals, remark_notes = without_remarks(columns, header, all_rows)
+    body, other_notes = select_rows(
+        columns, body, rows=answers.rows, fuel=answers.fuel, unit=answers.unit, where=where
+    )
+    if not body:
+        raise NoBills("there is a header but no bill beneath it", where=where)
+    fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
+    columns = choose_cost(columns, fuel)
+    kind = answers.kind or _kind_of(columns, fuel)
+    layout = layout_of(columns, body, kind, where)
+    found = _Found(table, columns, body, totals, layout, kind, where)
+    records, notes, cautions = _records(found, answers)
+    unit, unit_note = unit_of(
+        columns, body, (suffix for _, suffix in records),
+        said=answers.unit, fuel=fuel, where=where,
+    )  # fmt: skip
+    return Understood(
+        fuel, unit, kind, tuple(record.row(table.name) for record, _ in records),
+        (
+            *_sheet_note(table), f"header on line {columns.line}", f"fuel: {fuel}", unit_note,
+            *described(columns, (*layout.roles, "usage", "cost", _mark(kind), "temperature")),
+            *usage_notes, *notes, *remark_notes, *other_notes,
+        ),
+        cautions,
+    )  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True)
+class _Found:
+    """What is known of the file once its layout is settled."""
+
+    table: RawTable
+    columns: Columns
+    body: Sequence[RawRow]
+    totals: Sequence[int]
+    layout: Layout
+    kind: Kind
+    where: str
+
+
+def _sheet_note(table: RawTable) -> tuple[str, ...]:
+    return (f"sheet {table.sheet[:40]!r}",) if table.sheet else ()
+
+
+def _mark(kind: Kind) -> str:
+    return "fill" if kind == "delivery" else "estimated"
+
+
+def _kind_of(columns: Columns, fuel: str) -> Kind:
+    """Dealer deliveries: a column of deliveries or fills, or a fuel that comes by truck."""
+    if columns.get("delivery") is not None or columns.get("fill") is not None:
+        return "delivery"
+    return "delivery" if is_delivered(fuel) else "meter"
+
+
+def _records(
+    found: _Found, answers: Answers
+) -> tuple[list[tuple[Record, str]], tuple[str, ...], tuple[str, ...]]:
+    """Each bill line's record with what stood behind its number; sentences; cautions."""
+    columns, body = found.columns, found.body
+    written = rec.written_dates(found.table, found.layout.where, body)
+    ends = [w for _, w in written if w != Written()]
+    if ends and all(w.month_only for w in ends):
+        raise AmbiguousBills(
+                "the dates name months but no days", where=found.where,
+                wanted="the date of each reading, or the first and last day of each bill",
+                next_step="Add the day to each date.",
+            )  # fmt: skip
+    used = [columns.get(role) for role in ("usage", "cost", "temperature", "days")]
+    numbers = rec.how_numbers_are_written(found.table, body, used, answers.decimal)
+    days = [rec.days_of(cell(row, columns.get("days")), numbers.decimal) for row in body]
+    others = [
+        read_written(cell(row, k))
+        for role in ("bill date", "read", "end", "start")
+        if (k := columns.get(role)) is not None
+        for row in body
+    ]
+    order, order_notes = rec.decide_order(
+        columns, written, days, others, said=answers.dates, where=found.where
+    )
+    records = []
+    both = found.layout.name == "start and end"
+    for row, pair in zip(body, written, strict=True):
+        record = Record(row.line)
+        if row.line in found.totals:
+            record.blame("a total, not a bill")
+        if found.layout.name == "start and days":
+            pair = (pair[0], pair[0])  # the end comes from the days
+        rec.put_dates(record, pair, order, both=both)
+        records.append((record, _put_numbers(record, row, columns, numbers.decimal)))
+    plain = [record for record, _ in records]
+    cautions = _put_marks(plain, found)
+    _put_temperature(plain, found, answers, numbers.decimal)
+    notes = (*order_notes, *((numbers.sentence,) if numbers.sentence else ()))
+    notes += _put_periods(plain, found, answers)
+    _per_day(plain, columns)
+    cautions += days_that_disagree(plain, found.table.name) if both else ()
+    return records, notes, cautions
+
+
+def _put_numbers(record: Record, row: RawRow, columns: Columns, decimal: Decimal) -> str:
+    suffix = rec.put_use(record, cell(row, columns.get("usage")), decimal)
+    rec.put_days(record, cell(row, columns.get("days")), decimal)
+    cost = number_of(cell(row, columns.get("cost")), decimal)
+    record.cost = cost if cost is not None and abs(cost) < 1e12 else None
+    return suffix
+
+
+def _put_marks(records: Sequence[Record], found: _Found) -> tuple[str, ...]:
+    """Estimated readings, or fills not known to be full; returns cautions."""
+    delivery = found.kind == "delivery"
+    role = "fill" if delivery else "estimated"
+    k = found.columns.get(role)
+    filled = k is not None and any(str(cell(row, k) or "").strip() for row in found.body)
+    unknown: list[int] = []
+    bad: list[int] = []
+    for record, row in zip(records, found.body, strict=True):
+        if filled and k is not None:
+            heading = found.columns.headings[k]
+            judge = rec.is_partial if delivery else rec.is_estimated
+            mark = judge(cell(row, k), heading)
+            if mark is None:
+                unknown.append(record.line)
+            record.estimated = record.estimated or bool(mark if mark is not None else delivery)
+        said = rec.notes_say(row, found.columns, delivery=delivery)
+        record.estimated = record.estimated or bool(said)
+        if said == "bad":
+            bad.append(record.line)
+    cautions = []
+    if bad:
+        # A wrong reading does to the next bill what an estimate does: its error comes back.
+        cautions.append(
+            f"The notes call {len(bad)} readings bad (first on line {bad[0]}); they are treated "
+            "like estimated ones."
+        )
+    if unknown:
+        taken = "counted as partial fills" if delivery else "taken for actual readings"
+        heading_text = found.columns.heading(role).text
+        cautions.append(
+            f"{len(unknown)} marks in column {heading_text!r} are not known (first on line "
+            f"{unknown[0]}); {taken}."
+        )
+    if delivery and not filled and found.layout.name == "dates alone":
+        cautions.append(
+            "No column says which deliveries filled the tank, so every one counts as a full fill; "
+            "a partial one moves use from its own interval to the next."
+        )
+    return tuple(cautions)
+
+
+def _put_temperature(
+    records: Sequence[Record], found: _Found, answers: Answers, decimal: Decimal
+) -> None:
+    k = found.columns.get("temperature")
+    if k is None:
+        return
+    values = [number_of(cell(row, k), decimal) for row in found.body]
+    sane = [v for v in values if v is not None and abs(v) < 200.0]
+    if not sane:
+        return
+    celsius = rec.temperature_is_celsius(
+        found.columns.headings[k], sane, said=answers.temperature_unit, where=found.where
+    )
+    for record, value in zip(records, values, strict=True):
+        if value is not None and abs(value) < 200.0:
+            record.mean_temp_f = value * 1.8 + 32.0 if celsius else value
+
+
+def _put_periods(records: Sequence[Record], found: _Found, answers: Answers) -> tuple[str, ...]:
+    """Start and end of every record, by the file's layout; returns sentences."""
+    name = found.layout.name
+    if name == "start and end":
+        return (settle_ends(records, said=answers.end_dates, where=found.where),)
+    if name == "start and days":
+        from_start_days(records)
+        return ("a bill ends so many days after its start",)
+    if answers.end_dates == "inclusive":
+        for record in records:
+            record.end = None if record.end is None else record.end + 1
+    if name == "date and days":
+        from_days(records)
+        return ("a bill starts so many days before its reading",)
+    event: Literal["delivery", "reading"] = "delivery" if found.kind == "delivery" else "reading"
+    from_dates_alone(records, event)
+    return (f"a bill runs from the {event} before to its own",)
+
+
+def _per_day(records: Sequence[Record], columns: Columns) -> None:
+    """Turn use per day into use."""
+    if not columns.heading("usage").per_day:
+        return
+    for record in records:
+        if record.use is not None and record.start is not None and record.end is not None:
+            days = record.days if record.days is not None else record.end - record.start
+            record.use *= days
