@@ -25,12 +25,13 @@ class NormalizeError(Exception):
     next_step : what to do now; may be empty.
 
     >>> str(NormalizeError("no column looks like usage", where="gas.csv:1",
-    ...     wanted="a header such as 'kWh' or 'therms'",
-    ...     next_step="Name it with --usage-column."))
-    "gas.csv:1: no column looks like usage; wanted a header such as 'kWh' or 'therms'. Name it with --usage-column."
+    ...     wanted="a header like 'kWh'", next_step="Name it with --usage-column."))
+    "gas.csv:1: no column looks like usage; wanted a header like 'kWh'. Name it with --usage-column."
     """
 
-    def __init__(self, found: str, *, where: str = "", wanted: str = "", next_step: str = "") -> None:
+    def __init__(
+        self, found: str, *, where: str = "", wanted: str = "", next_step: str = ""
+    ) -> None:
         self.found = found
         self.where = where
         self.wanted = wanted

@@ -105,7 +105,7 @@ def _folder_once(room: str) -> Path | None:
 def kernels_are_ready() -> bool:
     """Whether compiled kernels are already on disk, so that a first run can say "preparing"."""
     folder = cache_folder("savings")
-    return folder is not None and folder.is_dir() and any(folder.rglob("*.nbi"))
+    return folder is not None and folder.is_dir() and any(folder.rglob("*compare_batch*.nbi"))
 
 
 def kernel(function: F) -> F:

@@ -192,9 +192,9 @@ def _weather(plan: SiteFile, bills: list[Bills | None]) -> DailyTemperature:
     if plan.weather.observed is not None:
         return read_weather(plan.weather.observed, **plan.weather.reader)  # type: ignore[arg-type]
     for b in bills:
-        if b is not None and b.periods.mean_temp_f is not None:
-            p = b.periods
-            return temperature_of_bills(p.start, p.end, p.mean_temp_f, source=b.source)
+        mean = b.periods.mean_temp_f if b is not None else None
+        if b is not None and mean is not None:
+            return temperature_of_bills(b.periods.start, b.periods.end, mean, source=b.source)
     from normalize.errors import MissingWeather
 
     raise MissingWeather(

@@ -175,7 +175,9 @@ def fit_batch(
     """
     offered = np.ascontiguousarray(batch.wanted, dtype=np.bool_)
     wanted = offered if tried is None else np.ascontiguousarray(offered | tried, dtype=np.bool_)
-    return _fit_batch(
+    fits: NDArray[np.float64]
+    chosen: NDArray[np.int8]
+    fits, chosen = _fit_batch(
         *gate(batch),
         wanted,
         np.ascontiguousarray(batch.net, dtype=np.bool_),
@@ -189,9 +191,19 @@ def fit_batch(
         weights == "equal",
         offered,
     )
+    return fits, chosen
 
 
-def gate(batch: Batch) -> tuple[NDArray[np.generic], ...]:
+def gate(
+    batch: Batch,
+) -> tuple[
+    NDArray[np.int32],
+    NDArray[np.int32],
+    NDArray[np.float64],
+    NDArray[np.uint8],
+    NDArray[np.int64],
+    NDArray[np.int32],
+]:
     """The one place where arrays are coerced for the kernels: contiguous, one dtype each."""
     return (
         np.ascontiguousarray(batch.start, dtype=np.int32),

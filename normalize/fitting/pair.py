@@ -245,8 +245,12 @@ def cell_point(ts, ps, y, w, d, z, th, tc, box):
 
 
 @kernel
-def _finish(ts, ps, tn, pn, y, w, d, z, box, gain, th, tc):
-    """Newton steps in both temperatures at once, halved when one overshoots."""
+def _finish(ts, ps, tn, pn, y, r, w, d, z, box, gain, th, tc):
+    """Newton steps in both temperatures at once, halved when one overshoots.
+
+    Judged by residuals, not by explained sums: noise-free bills need every digit.
+    """
+    rss = rss_at(ts, ps, tn, pn, y, w, d, z, th, tc)
     for _ in range(MAX_ROUNDS):
         a, b = cell_point(ts, ps, y, w, d, z, th, tc, box)
         if np.isnan(a):
@@ -255,9 +259,9 @@ def _finish(ts, ps, tn, pn, y, w, d, z, box, gain, th, tc):
         step_c = b - tc
         moved = False
         for _ in range(6):
-            g = gain_at(ts, ps, tn, pn, y, w, d, z, th + step_h, tc + step_c)
-            if g > gain:
-                gain = g
+            lower = rss_at(ts, ps, tn, pn, y, w, d, z, th + step_h, tc + step_c)
+            if lower < rss:
+                rss = lower
                 th += step_h
                 tc += step_c
                 moved = True
@@ -266,12 +270,12 @@ def _finish(ts, ps, tn, pn, y, w, d, z, box, gain, th, tc):
             step_c *= 0.5
         if not moved:
             break
-    return gain, th, tc
+    return max(gain, _sum_of_squares(r, w) - rss), th, tc
 
 
 @kernel
-def gain_at(ts, ps, tn, pn, y, w, d, z, th, tc):
-    """Explained sum of squares at a given pair; −1 if a slope is not positive."""
+def rss_at(ts, ps, tn, pn, y, w, d, z, th, tc):
+    """Residual sum of squares at a given pair, from residuals; inf if a slope is not positive."""
     n, k = z.shape
     h = np.empty(n)
     x = np.empty((n, k + 2))
@@ -282,16 +286,20 @@ def gain_at(ts, ps, tn, pn, y, w, d, z, th, tc):
     x[:, k + 1] = h
     coef, _, rss, ok = weighted_fit(x, y, w)
     if not ok or coef[k] <= 0.0 or coef[k + 1] <= 0.0:
-        return -1.0
-    total = 0.0
-    r, _ = residual(y, w, z)
-    for p in range(n):
-        total += w[p] * r[p] * r[p]
-    return total - rss
+        return np.inf
+    return rss
 
 
 @kernel
-def _diagonal(ts, ps, tn, pn, y, w, q, d, z, box, cold, mild):
+def _sum_of_squares(r, w):
+    total = 0.0
+    for p in range(r.shape[0]):
+        total += w[p] * r[p] * r[p]
+    return total
+
+
+@kernel
+def _diagonal(ts, ps, tn, pn, y, r0, w, q, d, z, box, cold, mild):
     """Best point with both temperatures equal, where alternation cannot go: one exact sweep."""
     n, k = z.shape
     lo = max(box[0], box[2])
@@ -309,7 +317,7 @@ def _diagonal(ts, ps, tn, pn, y, w, q, d, z, box, cold, mild):
     gain, tau, _, _, _ = sweep(ts, ps, r, q, d, zz, s[k], True, lo, hi, cold, mild)
     if gain < 0.0:
         return -1.0, np.nan
-    return gain_at(ts, ps, tn, pn, y, w, d, z, tau, tau), tau
+    return _sum_of_squares(r0, w) - rss_at(ts, ps, tn, pn, y, w, d, z, tau, tau), tau
 
 
 @kernel
@@ -334,7 +342,7 @@ def _settled(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild):
                 gains[starts[s, 0], starts[s, 1]], cold, mild,
             )  # fmt: skip
         else:
-            g, a = _diagonal(ts, ps, tn, pn, y, w, q, d, z, box, cold, mild)
+            g, a = _diagonal(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild)
             b = a
         if g <= 0.0:
             continue
@@ -371,7 +379,7 @@ def pair_search(ts, ps, tn, pn, y, r, w, q, d, z, box, cold, mild):
         for _ in range(MAX_ROUNDS):
             before = g
             g, a, b = _look_around(ts, ps, tn, pn, y, w, q, d, z, box, a, b, g, cold, mild)
-            g, a, b = _finish(ts, ps, tn, pn, y, w, d, z, box, g, a, b)
+            g, a, b = _finish(ts, ps, tn, pn, y, r, w, d, z, box, g, a, b)
             if g <= before * (1.0 + 1e-13):
                 break
         if g > best:

@@ -78,13 +78,17 @@ def run_batch(
     days = [y.cum_days if y else np.zeros(1) for y in years]
     degrees = [y.cum_degrees if y else np.zeros(1) for y in years]
     force = np.tile(np.array(forced, dtype=np.int8), (offered.shape[0], 1))
-    return compare_batch(
+    fits: NDArray[np.float64]
+    chosen: NDArray[np.int8]
+    answers: NDArray[np.float64]
+    fits, chosen, answers = compare_batch(
         *gate(batch), offered, wanted, np.ascontiguousarray(batch.net, dtype=np.bool_), force,
         table.temp, table.order, table.offsets, table.first_day,
         np.concatenate(temp).astype(np.float64), _offsets(temp),
         np.concatenate(days).astype(np.float64), np.concatenate(degrees).astype(np.float64),
         _offsets(days), settings(), criterion, weights == "equal", float(confidence),
     )  # fmt: skip
+    return fits, chosen, answers
 
 
 def _offsets(arrays: Sequence[NDArray[np.float64]]) -> NDArray[np.int64]:

@@ -53,6 +53,11 @@ class Account:
         )
 
 
+def days_of(a: Account) -> list[NDArray[np.float64]]:
+    """Each period's own daily temperatures."""
+    return [a.temp[s:e] for s, e in zip(a.start, a.end, strict=True)]
+
+
 def weather(rng: np.random.Generator, days: int, mean: float = 54.0, swing: float = 23.0):
     """Daily temperature with season and day-to-day persistence, in tenths of °F."""
     day = np.arange(days) + rng.integers(0, 365)

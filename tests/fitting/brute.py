@@ -10,13 +10,9 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from tests.fitting.accounts import Account
+from tests.fitting.accounts import Account, days_of
 
 Vector = NDArray[np.float64]
-
-
-def days_of(a: Account) -> list[Vector]:
-    return [a.temp[s:e] for s, e in zip(a.start, a.end, strict=True)]
 
 
 def allowed(a: Account, low: float, high: float) -> tuple[float, float]:
