@@ -17,6 +17,7 @@ import numpy as np
 
 from normalize.days import date_of, day_of, iso
 from normalize.errors import MissingWeather, WeatherError
+from normalize.weather.methods import daily_degree_days
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
@@ -133,12 +134,17 @@ class PeriodDegreeDays:
 
 
 def by_period(
-    weather: DailyTemperature, start: ArrayLike, end: ArrayLike, base: Base
+    weather: DailyTemperature,
+    start: ArrayLike,
+    end: ArrayLike,
+    base: Base,
+    *,
+    method: str = "mean",
 ) -> PeriodDegreeDays:
     """Degree-days over each period's own days.
 
     start, end : (n,) day numbers, half-open; they may reach outside the record, whose days
-    there are missing.
+    there are missing.  method : one of ``methods.METHODS``.
 
     >>> from normalize.weather.temperature import DailyTemperature
     >>> w = DailyTemperature("S", 0, np.array([50.0, 60.0, 70.0]), np.zeros(3, bool))
@@ -149,26 +155,27 @@ def by_period(
     if (ends < starts).any():
         raise WeatherError("a period ends before it starts", wanted="start before end")
     n = starts.size
+    daily = daily_degree_days(weather, base, method)
+    known = np.isfinite(daily.heating)
     heating, cooling = np.empty(n), np.empty(n)
     missing, filled = np.empty(n, dtype=np.int64), np.empty(n, dtype=np.int64)
     for i, (a, b) in enumerate(zip(starts.tolist(), ends.tolist(), strict=True)):
         cut = slice(max(a - weather.first_day, 0), max(b - weather.first_day, 0))
-        temp = weather.temp_f[cut]
-        present = int(np.isfinite(temp).sum())
-        missing[i], filled[i] = b - a - present, int(weather.filled[cut].sum())
-        whole = missing[i] == 0
-        heating[i] = daily_heating(temp, base.base_f).sum() * base.per_f_day if whole else np.nan
-        cooling[i] = daily_cooling(temp, base.base_f).sum() * base.per_f_day if whole else np.nan
+        missing[i] = b - a - int(known[cut].sum())
+        filled[i] = int((weather.filled[cut] & known[cut]).sum())
+        heating[i] = daily.heating[cut].sum() if missing[i] == 0 else np.nan
+        cooling[i] = daily.cooling[cut].sum() if missing[i] == 0 else np.nan
     return PeriodDegreeDays(heating, cooling, missing, filled)
 
 
 @dataclass(frozen=True, slots=True)
 class DegreeDayRow:
-    """One month or year of a table. start, end : day numbers, half-open.
+    """One month, year or bill of a table. start, end : day numbers, half-open.
 
     heating, cooling : in the base's own unit; None where a day is missing ("incomplete").
     heating_so_far, cooling_so_far : over the days that are present.
     mean_f : of the days that are present; None where there are none.
+    growing : growing degree-days without a ceiling, (mean − base)⁺; None where a day is missing.
     """
 
     label: str
@@ -182,6 +189,7 @@ class DegreeDayRow:
     days_present: int
     days_missing: int
     days_filled: int
+    growing: float | None = None
 
     @property
     def complete(self) -> bool:
@@ -191,9 +199,9 @@ class DegreeDayRow:
 
 @dataclass(frozen=True, slots=True)
 class DegreeDayTable:
-    """Degree-days of a station by month or by year.
+    """Degree-days of a station by month, by year or by bill.
 
-    by : "month" or "year".  method : how each day's mean was formed.
+    by : "month", "year" or "bill".  method : how each day's mean was formed.
     """
 
     station: str
@@ -214,48 +222,57 @@ class DegreeDayTable:
 
 
 def monthly_degree_days(
-    weather: DailyTemperature, base: Base, *, whole_degrees: bool = False
+    weather: DailyTemperature, base: Base, *, method: str = "mean"
 ) -> DegreeDayTable:
     """Degree-days of every calendar month that the record touches.
 
-    whole_degrees : count as the weather service does: maximum and minimum in whole °F, their
-    mean rounded half up; needs a file with both and a base in °F.
+    method : one of ``methods.METHODS``; "whole-degrees" counts as the weather service does.
     """
     first, last = date_of(weather.first_day), date_of(weather.last_day - 1)
     n = (last.year - first.year) * 12 + last.month - first.month + 1
     months = [divmod(first.year * 12 + first.month - 1 + i, 12) for i in range(n + 1)]
     edges = [day_of(date(year, month + 1, 1)) for year, month in months]
-    return _table(weather, base, "month", edges, [iso(e)[:7] for e in edges], whole_degrees)
+    spans = list(zip([iso(e)[:7] for e in edges], edges[:-1], edges[1:], strict=False))
+    return _table(weather, base, "month", spans, method)
 
 
 def annual_degree_days(
-    weather: DailyTemperature, base: Base, *, whole_degrees: bool = False
+    weather: DailyTemperature, base: Base, *, method: str = "mean"
 ) -> DegreeDayTable:
     """Degree-days of every calendar year that the record touches; see monthly_degree_days."""
     years = range(date_of(weather.first_day).year, date_of(weather.last_day - 1).year + 2)
     edges = [day_of(date(year, 1, 1)) for year in years]
-    return _table(weather, base, "year", edges, [iso(e)[:4] for e in edges], whole_degrees)
+    spans = list(zip([iso(e)[:4] for e in edges], edges[:-1], edges[1:], strict=False))
+    return _table(weather, base, "year", spans, method)
+
+
+def bill_degree_days(
+    weather: DailyTemperature, start: ArrayLike, end: ArrayLike, base: Base, *, method: str = "mean"
+) -> DegreeDayTable:
+    """Degree-days of each bill's own days; start, end : (n,) day numbers, half-open."""
+    starts, ends = np.asarray(start, dtype=np.int64), np.asarray(end, dtype=np.int64)
+    spans = [
+        (f"{iso(a)} to {iso(b - 1)}", a, b)
+        for a, b in zip(starts.tolist(), ends.tolist(), strict=True)
+    ]
+    return _table(weather, base, "bill", spans, method)
 
 
 def _table(
     weather: DailyTemperature,
     base: Base,
     by: str,
-    edges: Sequence[int],
-    labels: Sequence[str],
-    whole_degrees: bool,
+    spans: Sequence[tuple[str, int, int]],
+    method: str,
 ) -> DegreeDayTable:
-    temp_f, method = weather.temp_f, weather.method
-    if whole_degrees:
-        temp_f, method = _whole_degree_days(weather, base)
-    heating = daily_heating(temp_f, base.base_f) * base.per_f_day
-    cooling = daily_cooling(temp_f, base.base_f) * base.per_f_day
-    filled = weather.filled & np.isfinite(temp_f)
+    daily = daily_degree_days(weather, base, method)
+    temp_f, known = daily.temp_f, np.isfinite(daily.heating)
+    growing = np.maximum(temp_f - base.base_f, 0.0) * base.per_f_day
     rows = []
-    for label, a, b in zip(labels, edges[:-1], edges[1:], strict=False):
+    for label, a, b in spans:
         cut = slice(max(a - weather.first_day, 0), max(b - weather.first_day, 0))
-        present = int(np.isfinite(temp_f[cut]).sum())
-        hdd, cdd = float(np.nansum(heating[cut])), float(np.nansum(cooling[cut]))
+        present = int(known[cut].sum())
+        hdd, cdd = float(np.nansum(daily.heating[cut])), float(np.nansum(daily.cooling[cut]))
         whole = present == b - a
         rows.append(
             DegreeDayRow(
@@ -269,22 +286,8 @@ def _table(
                 mean_f=float(np.nansum(temp_f[cut])) / present if present else None,
                 days_present=present,
                 days_missing=b - a - present,
-                days_filled=int(filled[cut].sum()),
+                days_filled=int((weather.filled[cut] & known[cut]).sum()),
+                growing=float(np.nansum(growing[cut])) if whole else None,
             )
         )
-    return DegreeDayTable(weather.station, by, base, method, tuple(rows))
-
-
-def _whole_degree_days(weather: DailyTemperature, base: Base) -> tuple[NDArray[np.float64], str]:
-    from normalize.weather.day_means import whole_degree_mean
-
-    if weather.max_f is None or weather.min_f is None:
-        raise MissingWeather(
-            f"the file of {weather.station} has no daily maximum and minimum",
-            wanted="both, to count as the weather service does",
-            next_step="Leave whole degrees out, or use a file with maximum and minimum.",
-        )
-    if base.unit != "F":
-        raise WeatherError("whole degrees are counted in °F", where="base", wanted="a base in °F")
-    mean = whole_degree_mean(weather.max_f, weather.min_f)
-    return mean, "mean of maximum and minimum in whole °F, rounded half up"
+    return DegreeDayTable(weather.station, by, base, daily.method, tuple(rows))

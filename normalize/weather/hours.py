@@ -22,6 +22,7 @@ class DailyMeans:
 
     short_days : days with some hours but too few.  repeated, conflicting : readings that
     stood twice in the file with the same and with different values.
+    hour_day, hour_mean : (m,) each hour's day number and mean, in order of time.
     """
 
     first_day: int
@@ -30,6 +31,8 @@ class DailyMeans:
     short_days: int
     repeated: int
     conflicting: int
+    hour_day: NDArray[np.int64]
+    hour_mean: NDArray[np.float64]
 
 
 def means_of_days(stamp: NDArray[np.int64], temp_f: NDArray[np.float64]) -> DailyMeans:
@@ -49,7 +52,8 @@ def means_of_days(stamp: NDArray[np.int64], temp_f: NDArray[np.float64]) -> Dail
     stamp, temp_f = stamp[ok], temp_f[ok]
     if stamp.size == 0:
         empty = np.empty(0, dtype=np.float64)
-        return DailyMeans(0, empty, np.empty(0, dtype=np.int64), 0, 0, 0)
+        none = np.empty(0, dtype=np.int64)
+        return DailyMeans(0, empty, none, 0, 0, 0, none, empty)
     order = np.argsort(stamp, kind="stable")
     stamp, temp_f = stamp[order], temp_f[order]
     bucket = stamp // 60 * 2  # two buckets an hour; the second for an hour that comes twice
@@ -65,7 +69,9 @@ def means_of_days(stamp: NDArray[np.int64], temp_f: NDArray[np.float64]) -> Dail
     enough = hours >= MIN_HOURS
     mean = np.where(enough, total / np.maximum(hours, 1), np.nan)
     short = int(((hours > 0) & ~enough).sum())
-    return DailyMeans(first, mean, hours.astype(np.int64), short, repeated, conflicting)
+    return DailyMeans(
+        first, mean, hours.astype(np.int64), short, repeated, conflicting, day, hour_mean
+    )
 
 
 def _resolve_repeats(

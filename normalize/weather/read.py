@@ -28,6 +28,7 @@ def read_weather(
     dates: str | None = None,
     time_zone_offset: float | None = None,
     station: str | None = None,
+    neighbour: str | Path | None = None,
 ) -> DailyTemperature:
     """A station's daily mean temperature from its file, short gaps filled. [°F]
 
@@ -38,20 +39,34 @@ def read_weather(
     time_zone_offset : hours from UTC to local standard time (−5 for US Eastern), for files
         whose hours are UTC.
     station : its name; or which of several stations in the file.
+    neighbour : the file of a station near by, from which gaps of up to 30 days are filled by
+        regression; it must be readable without options.
 
     Raises UnreadableWeather for a file that cannot be read, AmbiguousWeather (which names
     the option to give) for one that can be read in two ways.
     """
-    options = WeatherOptions(
-        unit=unit,
-        date_column=date_column,
-        temperature_column=temperature_column,
-        max_column=max_column,
-        min_column=min_column,
-        dates=dates,
-        time_zone_offset=time_zone_offset,
-        station=station,
+    weather = _read(
+        path,
+        WeatherOptions(
+            unit=unit,
+            date_column=date_column,
+            temperature_column=temperature_column,
+            max_column=max_column,
+            min_column=min_column,
+            dates=dates,
+            time_zone_offset=time_zone_offset,
+            station=station,
+        ),
     )
+    if neighbour is not None:
+        from normalize.weather.neighbour import fill_from_neighbour
+
+        weather = fill_from_neighbour(weather, _read(neighbour, WeatherOptions()))
+    return fill_gaps(weather)
+
+
+def _read(path: str | Path, options: WeatherOptions) -> DailyTemperature:
+    """A file's days as they are, gaps and all."""
     source = read_source(path)
     found = format_of(source.head)
     if found is None:
@@ -70,4 +85,4 @@ def read_weather(
         )
     weather = found.read_days(source, options)
     name = clean_name(options.station or weather.station or source.path.stem)
-    return fill_gaps(replace(weather, station=name, source=source.fingerprint))
+    return replace(weather, station=name, source=source.fingerprint)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import re
+import zlib
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Final
@@ -14,10 +15,11 @@ MAX_BYTES: Final = 300 * 1024 * 1024  # 30 years of hourly rows are about 30 MB
 HEAD_BYTES: Final = 64 * 1024  # what a recogniser may look at
 MAX_NAME: Final = 80  # characters of a station's name that are kept
 
+GZIP: Final = b"\x1f\x8b"  # how a compressed file begins
+
 # What a file that is not text starts with, and what to do about it.
 _NOT_TEXT: Final = (
     (b"PK\x03\x04", "is a workbook or a zip archive", "Save the table as CSV, or unpack it."),
-    (b"\x1f\x8b", "is compressed (gzip)", "Unpack it first."),
     (b"%PDF", "is a PDF", "Download the data as CSV."),
     (b"\xd0\xcf\x11\xe0", "is an old Excel workbook", "Save the table as CSV."),
     (b"\x89HDF", "is a binary data file", "Export the daily temperatures as CSV."),
@@ -27,7 +29,7 @@ _NOT_TEXT: Final = (
 
 @dataclass(frozen=True, slots=True)
 class SourceFile:
-    """A weather file's bytes. name : without folders; sha256 : of the bytes."""
+    """A weather file's bytes, unpacked. name : without folders; sha256 : of the file as it is."""
 
     path: Path
     data: bytes
@@ -79,8 +81,47 @@ def read_source(path: str | Path) -> SourceFile:
             where=path.name,
             next_step="Check that it is a readable file.",
         ) from None
+    sha256 = hashlib.sha256(data).hexdigest()
+    if data.startswith(GZIP):
+        data = unpacked(data, path.name)
     _refuse_empty_or_binary(path.name, data)
-    return SourceFile(path=path, data=data, sha256=hashlib.sha256(data).hexdigest())
+    return SourceFile(path=path, data=data, sha256=sha256)
+
+
+def unpacked(data: bytes, name: str) -> bytes:
+    """What a gzip file holds; UnreadableWeather when it is torn or swells beyond the limit.
+
+    >>> import gzip
+    >>> unpacked(gzip.compress(b"date,mean_f"), "a.csv.gz")
+    b'date,mean_f'
+    """
+    parts, size, rest = [], 0, data
+    try:
+        while rest.startswith(GZIP):  # archives may be several gzip files on end
+            unpacker = zlib.decompressobj(wbits=31)
+            parts.append(unpacker.decompress(rest, MAX_BYTES + 1 - size))
+            size += len(parts[-1])
+            if size > MAX_BYTES:
+                raise UnreadableWeather(
+                    f"unpacks to more than {MAX_BYTES // 1024**2} MB",
+                    where=name,
+                    next_step="Unpack it and keep the years that are needed.",
+                )
+            if not unpacker.eof:
+                raise _torn_gzip(name)
+            rest = unpacker.unused_data
+    except zlib.error:
+        raise _torn_gzip(name) from None
+    return b"".join(parts)
+
+
+def _torn_gzip(name: str) -> UnreadableWeather:
+    return UnreadableWeather(
+        "is compressed (gzip) and cut off or damaged",
+        where=name,
+        wanted="the whole file",
+        next_step="Download it again.",
+    )
 
 
 def _refuse_empty_or_binary(name: str, data: bytes) -> None:

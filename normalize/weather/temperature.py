@@ -28,6 +28,8 @@ class DailyTemperature:
     by_bill : true when the temperatures are the bills' own means, laid over their days.
     max_f, min_f : (n_days,) float64, daily maximum and minimum, °F, as given and never
         filled; None where the file has none.
+    hour_day, hour_f : (m,) int64 day numbers and float64 °F, one mean for each hour that an
+        hourly file has, in order of time; None for daily files.
     """
 
     station: str
@@ -40,6 +42,8 @@ class DailyTemperature:
     by_bill: bool = False
     max_f: NDArray[np.float64] | None = None
     min_f: NDArray[np.float64] | None = None
+    hour_day: NDArray[np.int64] | None = None
+    hour_f: NDArray[np.float64] | None = None
 
     @property
     def n_days(self) -> int:

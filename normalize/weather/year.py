@@ -8,7 +8,7 @@ the days below it, cost one binary search (method.md §4).
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date
 from typing import TYPE_CHECKING, Final
 
@@ -27,6 +27,7 @@ if TYPE_CHECKING:
 
 DAYS_PER_YEAR = 365.0  # every long-term year; leap days are averaged over, not added
 YEARS: Final = 10  # whole calendar years averaged, by default
+MIN_TREND_YEARS: Final = 10  # fewer, and a trend is the weather of its ends
 MAX_MISSING_DAYS: Final = 15  # of a calendar year, measured days; more and it is left out
 
 
@@ -42,6 +43,8 @@ class LongTermYear:
     station : whose weather; source : (file, SHA-256) pairs; notes : sentences.
     years : the calendar years averaged; empty for a typical year.
     left_out : (year, reason) of the years that could not be used.
+    trend_f_per_decade, trend_error_f : how fast the record's whole years warmed (negative:
+        cooled) and the standard error of that, °F a decade; None with fewer than 10 of them.
     """
 
     name: str
@@ -55,6 +58,8 @@ class LongTermYear:
     left_out: tuple[tuple[int, str], ...] = ()
     source: tuple[tuple[str, str], ...] = ()
     notes: tuple[str, ...] = ()
+    trend_f_per_decade: float | None = None
+    trend_error_f: float | None = None
 
     def days_below(self, base_f: float) -> float:
         """Days a year colder than the base. [days]"""
@@ -166,9 +171,10 @@ def long_term_year(
     if not samples:
         raise _no_whole_year(weather, passed, max_missing)
     samples.reverse()
+    trend = _trend(weather, newest, max_missing)
     used = tuple(s.year for s in samples)
     left_out = tuple(p for p in reversed(passed) if p[0] > used[0] or len(used) < years)
-    return year_from_sample(
+    made = year_from_sample(
         _name(used),
         np.concatenate([s.temp_f for s in samples]),
         np.concatenate([s.weight for s in samples]) / len(samples),
@@ -177,7 +183,49 @@ def long_term_year(
         years=used,
         left_out=left_out,
         source=weather.source,
-        notes=_year_notes(weather, samples, left_out, years),
+        notes=(*_year_notes(weather, samples, left_out, years), *_trend_note(trend)),
+    )
+    if trend is None:
+        return made
+    return replace(made, trend_f_per_decade=trend.per_decade, trend_error_f=trend.error)
+
+
+@dataclass(frozen=True, slots=True)
+class _Trend:
+    """Warming of the yearly means, °F a decade, with its standard error."""
+
+    per_decade: float
+    error: float
+    n_years: int
+    first: int
+    last: int
+
+
+def _trend(weather: DailyTemperature, newest: int, max_missing: int) -> _Trend | None:
+    """Least squares through the means of all whole years of the record, not only those averaged."""
+    number, mean = [], []
+    for year in range(date_of(weather.first_day).year, newest + 1):
+        sample, _ = _calendar_year(weather, year, max_missing)
+        if sample is not None:
+            number.append(year)
+            mean.append(float(sample.temp_f @ sample.weight) / DAYS_PER_YEAR)
+    if len(number) < MIN_TREND_YEARS:
+        return None
+    x = np.array(number) - float(np.mean(number))
+    y = np.array(mean) - float(np.mean(mean))
+    slope = float(x @ y) / float(x @ x)
+    left = y - slope * x
+    error = float(np.sqrt(float(left @ left) / (len(number) - 2) / float(x @ x)))
+    return _Trend(10 * slope, 10 * error, len(number), number[0], number[-1])
+
+
+def _trend_note(trend: _Trend | None) -> tuple[str, ...]:
+    if trend is None:
+        return ()
+    moved = "warmed" if trend.per_decade >= 0 else "cooled"
+    return (
+        f"The record's {trend.n_years} whole years {trend.first}-{trend.last} {moved} by "
+        f"{abs(trend.per_decade):.1f} °F a decade (standard error {trend.error:.1f}).",
     )
 
 
@@ -286,7 +334,10 @@ def _no_whole_year(
 
 
 def read_long_term_year(path: str | Path) -> LongTermYear:
-    """The long-term year of a typical-year file (TMY3 or EPW), recognised by its content.
+    """The long-term year of a file, recognised by its content.
+
+    Typical years (TMY3, TMY2, EPW), published normals (annual, monthly or daily) and tables
+    of twelve monthly means.
 
     Raises UnreadableWeather when the file holds none.
     """
@@ -297,9 +348,9 @@ def read_long_term_year(path: str | Path) -> LongTermYear:
     found = format_of(source.head)
     if found is None or found.read_year is None:
         raise UnreadableWeather(
-            "is not a typical-year file",
+            "is not a typical-year or normals file",
             where=source.name,
-            wanted="TMY3 (CSV) or EPW",
+            wanted="TMY3 (CSV), TMY2, EPW, or 1991-2020 normals",
             next_step='Observed years belong in observed = "…" under [weather], and '
             "long_term = { years = 10 } averages them.",
         )

@@ -125,9 +125,9 @@ def test_central_park_2014() -> None:
     w = weather(date(2014, 1, 1), exact_mean(high, low), max_f=np.array(high), min_f=np.array(low))
     (exact,) = annual_degree_days(w, B65).rows
     assert (exact.heating, exact.cooling) == pytest.approx((4922.3, 1099.4), abs=0.05)
-    (counted,) = annual_degree_days(w, B65, whole_degrees=True).rows
+    (counted,) = annual_degree_days(w, B65, method="whole-degrees").rows
     assert (counted.heating, counted.cooling) == (4875.0, 1128.0)
-    months = monthly_degree_days(w, B65, whole_degrees=True)
+    months = monthly_degree_days(w, B65, method="whole-degrees")
     published = [1120, 927, 842, 377, 73, 0, 0, 0, 22, 179, 584, 751]
     assert [row.heating for row in months.rows] == published
 
@@ -208,10 +208,10 @@ def test_months_add_up_to_the_year() -> None:
 def test_whole_degrees_need_maximum_minimum_and_fahrenheit() -> None:
     w = years(2023, 2023)
     with pytest.raises(MissingWeather, match="no daily maximum and minimum"):
-        annual_degree_days(w, B65, whole_degrees=True)
+        annual_degree_days(w, B65, method="whole-degrees")
     both = weather(date(2023, 1, 1), w.temp_f, max_f=w.temp_f + 9, min_f=w.temp_f - 9)
     with pytest.raises(WeatherError, match="counted in °F"):
-        annual_degree_days(both, parse_base("18C"), whole_degrees=True)
+        annual_degree_days(both, parse_base("18C"), method="whole-degrees")
 
 
 @pytest.mark.parametrize("text", ["65", "", "F", "65K", "1e3F", "nanF", "999F", "sixty F"])

@@ -213,5 +213,5 @@ def test_epw_that_is_cut_short_or_torn(tmp_path: Path) -> None:
 
 def test_an_observed_file_is_no_typical_year(tmp_path: Path) -> None:
     path = write(tmp_path, ["date,mean_f", "2023-01-01,30"])
-    with pytest.raises(UnreadableWeather, match=r"not a typical-year file.*observed"):
+    with pytest.raises(UnreadableWeather, match=r"not a typical-year or normals file.*observed"):
         read_long_term_year(path)

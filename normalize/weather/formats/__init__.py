@@ -17,7 +17,21 @@ if TYPE_CHECKING:
     from normalize.weather.temperature import DailyTemperature
     from normalize.weather.year import LongTermYear
 
-MODULES: Final = ("tmy3", "epw", "generic_csv")  # asked in this order
+MODULES: Final = (  # asked in this order
+    "tmy3",
+    "epw",
+    "tmy2",
+    "normals",
+    "ghcn_dly",
+    "ghcn_rows",
+    "ghcn_access",
+    "gsod",
+    "lcd",
+    "isd_lite",
+    "environment_canada",
+    "monthly_means",
+    "generic_csv",
+)
 
 
 @dataclass(frozen=True, slots=True)

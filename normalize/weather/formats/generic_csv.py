@@ -31,6 +31,16 @@ if TYPE_CHECKING:
 MIN_READINGS_A_DAY: Final = 3  # at different times, for a file to count as hourly
 _PREAMBLE_UNIT: Final = re.compile(r"\b(units?|temperature)\b.*", re.IGNORECASE)
 _PREAMBLE_UTC: Final = re.compile(r"\b(UTC|GMT)\b(?!\s*[-+]\s*\d)")  # as gridded exports state it
+_PREAMBLE_GRID: Final = re.compile(
+    r"\b(lat|latitude)\b.*\b(lon|lng|longitude)\b.*\b(elevation|utc_offset_seconds|timezone)\b"
+    r"|\bgrid(ded)?\b|\breanalysis\b",
+    re.IGNORECASE | re.DOTALL,
+)
+_GRID_COLUMN: Final = re.compile(r"(temperature_2m|t2m|2m_temperature)", re.IGNORECASE)
+GRIDDED: Final = (
+    "Gridded weather: temperatures computed for a cell of a map, not measured at a station. "
+    "They can differ from the place's own, most of all in valleys and by water."
+)
 _PREAMBLE_STATION: Final = re.compile(
     r"^[#\s\"]*station(?:[ _]name)?\"?\s*[:=,;\t]\s*\"?([^\",;\t]+)", re.I
 )
@@ -63,11 +73,20 @@ def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
     readings = _coerce(table, columns, kept, source.name, options)
     hourly = _is_hourly(readings.stamps)
     assemble = assemble_hours if hourly else assemble_days
+    _label_gridded(table, columns, readings.notes)
     utc = columns.utc or any(_PREAMBLE_UTC.search(text) for text in table.preamble)
     return assemble(readings, station, utc, options)
 
 
 FORMAT = Format(name="table of temperatures", recognises=_recognises, read_days=_read_days)
+
+
+def _label_gridded(table: Table, columns: Columns, notes: list[str]) -> None:
+    """Say so when the table is an export of a gridded data set and not of a station."""
+    above = " ".join(table.preamble)
+    used = [table.header[i] for i in (columns.mean, columns.high, columns.low) if i is not None]
+    if _PREAMBLE_GRID.search(above) or any(_GRID_COLUMN.match(name.strip()) for name in used):
+        notes.append(GRIDDED)
 
 
 def _one_station(

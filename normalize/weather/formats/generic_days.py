@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
@@ -171,7 +172,8 @@ def assemble_hours(
         notes.append(
             f"{counted(short, 'day')} with fewer than {MIN_HOURS} hours {counts(short)} as missing."
         )
-    return _trimmed(station, means.first_day, temp, None, None, METHOD_HOURS, notes)
+    daily = _trimmed(station, means.first_day, temp, None, None, METHOD_HOURS, notes)
+    return replace(daily, hour_day=means.hour_day, hour_f=means.hour_mean)
 
 
 def _local_minutes(
