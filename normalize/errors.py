@@ -24,9 +24,9 @@ class NormalizeError(Exception):
     wanted : what would have been right; may be empty.
     next_step : what to do now; may be empty.
 
-    >>> str(NormalizeError("no column looks like usage", where="gas.csv:1",
+    >>> str(NormalizeError("no column is usage", where="gas.csv:1",
     ...     wanted="a header like 'kWh'", next_step="Name it with --usage-column."))
-    "gas.csv:1: no column looks like usage; wanted a header like 'kWh'. Name it with --usage-column."
+    "gas.csv:1: no column is usage; wanted a header like 'kWh'. Name it with --usage-column."
     """
 
     def __init__(
