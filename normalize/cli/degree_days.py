@@ -1,4 +1,4 @@
-"""``normalize degree-days FILE``: monthly and annual tables at any base."""
+"""``normalize degree-days FILE``: tables by month, year or bill at any base."""
 
 from __future__ import annotations
 
@@ -20,7 +20,7 @@ if TYPE_CHECKING:
 @click.command(
     "degree-days",
     epilog="Example: normalize degree-days station.csv --base 65F --base 18C --by year",
-    short_help="Degree-days of a weather file, by month or by year, at any base.",
+    short_help="Degree-days of a weather file, by month, year or bill, at any base.",
 )
 @click.argument("file", type=FILE)
 @click.option(
@@ -34,16 +34,38 @@ if TYPE_CHECKING:
 )
 @click.option(
     "--by",
-    type=click.Choice(["month", "year"]),
+    type=click.Choice(["month", "year", "bill"]),
     help="One table only; otherwise months and years are both shown.",
 )
 @click.option(
-    "--whole-degrees",
-    is_flag=True,
-    help="Count as the weather service does: maximum and minimum in whole °F, their mean "
-    "rounded half up.",
+    "--bills", type=FILE, metavar="FILE", help="With --by bill: the bills whose days are summed."
 )
+@click.option(
+    "--method",
+    type=click.Choice(["mean", "max-min", "whole-degrees", "four-case", "hourly"]),
+    default="mean",
+    show_default=True,
+    help="How a day's degree-days are formed: from the day's mean as the file gives it; from "
+    "the mean of maximum and minimum; from that in whole °F, as the weather service counts; by "
+    "the four-case formulas on both; or hour by hour.",
+)
+@click.option("--growing", is_flag=True, help="Growing degree-days too: (mean - base), never < 0.")
 @json_option
+@click.option("--csv", "csv_to", type=FILE, metavar="FILE", help="Write the tables as CSV.")
+@click.option("--xlsx", "xlsx_to", type=FILE, metavar="FILE", help="Write them as a workbook.")
+@click.option(
+    "--picture",
+    "picture_to",
+    type=FILE,
+    metavar="FILE",
+    help="Draw the first table, as .svg or .png.",
+)
+@click.option(
+    "--neighbour",
+    type=FILE,
+    metavar="FILE",
+    help="A station near by, from which gaps of up to 30 days are filled.",
+)
 @click.option("--unit", type=click.Choice(["F", "C"]), help="Where the file does not say.")
 @click.option("--date-column", metavar="NAME", help="The column of dates.")
 @click.option("--temperature-column", metavar="NAME", help="The column of mean temperatures.")
@@ -65,8 +87,14 @@ def command(
     file: Path,
     bases: tuple[str, ...],
     by: str | None,
-    whole_degrees: bool,
+    bills: Path | None,
+    method: str,
+    growing: bool,
     json_to: str | None,
+    csv_to: Path | None,
+    xlsx_to: Path | None,
+    picture_to: Path | None,
+    neighbour: Path | None,
     unit: str | None,
     date_column: str | None,
     temperature_column: str | None,
@@ -78,9 +106,12 @@ def command(
 ) -> None:
     """Show heating and cooling degree-days of a weather FILE, daily or hourly.
 
-    A month or year with a missing day has no total, and says how many days are missing;
-    gaps of up to three days are filled and counted.
+    A month, year or bill with a missing day has no total, and says how many days are missing;
+    gaps of up to three days are filled and counted.  Degree-days at one base are summed from
+    the days, never scaled from another base.
     """
+    if (by == "bill") != (bills is not None):
+        raise click.UsageError("--by bill and --bills FILE go together.")
     from normalize.weather.read import read_weather
 
     chosen = [_base(text) for text in bases]
@@ -94,12 +125,32 @@ def command(
         dates=dates,
         time_zone_offset=time_zone_offset,
         station=station,
+        neighbour=neighbour,
     )
-    tables = _tables(weather, chosen, by, whole_degrees=whole_degrees)
+    tables = _tables(weather, chosen, by, method, bills)
+    inputs = tuple(path for path in (file, bills, neighbour) if path is not None)
+    _write_files(tables, inputs, csv_to, xlsx_to, picture_to)
     if json_to is not None:
-        write_json(to_json(tables), json_to, inputs=(file,))
+        write_json(to_json(tables), json_to, inputs=inputs)
     if json_to != STDOUT:
-        show(to_text(tables, weather.notes))
+        show(to_text(tables, weather.notes, growing=growing))
+
+
+def _write_files(
+    tables: Sequence[DegreeDayTable],
+    inputs: tuple[Path, ...],
+    csv_to: Path | None,
+    xlsx_to: Path | None,
+    picture_to: Path | None,
+) -> None:
+    from normalize.cli import degree_day_files as files
+
+    if csv_to is not None:
+        files.write_csv(tables, csv_to, inputs)
+    if xlsx_to is not None:
+        files.write_workbook(tables, xlsx_to, inputs)
+    if picture_to is not None:
+        files.write_picture(tables[0], picture_to, inputs)
 
 
 def _base(text: str) -> Base:
@@ -113,33 +164,55 @@ def _base(text: str) -> Base:
 
 
 def _tables(
-    weather: DailyTemperature, bases: Sequence[Base], by: str | None, *, whole_degrees: bool
+    weather: DailyTemperature,
+    bases: Sequence[Base],
+    by: str | None,
+    method: str,
+    bills: Path | None,
 ) -> list[DegreeDayTable]:
     from normalize.weather.degree_days import annual_degree_days, monthly_degree_days
 
+    if bills is not None:
+        return _by_bill(weather, bases, method, bills)
     makers = {"month": monthly_degree_days, "year": annual_degree_days}
     return [
-        make(weather, base, whole_degrees=whole_degrees)
+        make(weather, base, method=method)
         for name, make in makers.items()
         if by in (None, name)
         for base in bases
     ]
 
 
-def to_text(tables: Sequence[DegreeDayTable], notes: Sequence[str] = ()) -> str:
+def _by_bill(
+    weather: DailyTemperature, bases: Sequence[Base], method: str, bills: Path
+) -> list[DegreeDayTable]:
+    from normalize.bills.read import read_bills
+    from normalize.weather.degree_days import bill_degree_days
+
+    periods = read_bills(bills).periods
+    return [
+        bill_degree_days(weather, periods.start, periods.end, base, method=method) for base in bases
+    ]
+
+
+def to_text(
+    tables: Sequence[DegreeDayTable], notes: Sequence[str] = (), *, growing: bool = False
+) -> str:
     """Tables in plain text, with a word about every row that is not whole."""
     blocks = []
     for t in tables:
         head = [t.by, f"heating {t.unit}", f"cooling {t.unit}", "mean °F", ""]
+        if growing:
+            head.insert(3, f"growing {t.unit}")
         blocks.append(
             f"{t.station}: degree-days by {t.by}, base {t.base} (each day: {t.method})\n\n"
-            + table(head, [_row(row) for row in t.rows])
+            + table(head, [_row(row, growing) for row in t.rows])
         )
     blocks += [paragraph(note) for note in notes]
     return "\n\n".join(blocks)
 
 
-def _row(row: DegreeDayRow) -> list[str]:
+def _row(row: DegreeDayRow, growing: bool) -> list[str]:
     from normalize.report.numbers import plain
 
     remarks = []
@@ -147,13 +220,10 @@ def _row(row: DegreeDayRow) -> list[str]:
         remarks.append(f"{row.days_missing} days missing")
     if row.days_filled:
         remarks.append(f"{row.days_filled} filled")
-    return [
-        row.label,
-        plain(row.heating, 1),
-        plain(row.cooling, 1),
-        plain(row.mean_f, 1),
-        ", ".join(remarks),
-    ]
+    cells = [row.label, plain(row.heating, 1), plain(row.cooling, 1)]
+    if growing:
+        cells.append(plain(row.growing, 1))
+    return [*cells, plain(row.mean_f, 1), ", ".join(remarks)]
 
 
 def to_json(tables: Sequence[DegreeDayTable]) -> str:
@@ -175,6 +245,7 @@ def to_json(tables: Sequence[DegreeDayTable]) -> str:
                         t.by: row.label,
                         "heating": row.heating,
                         "cooling": row.cooling,
+                        "growing": row.growing,
                         "mean_f": row.mean_f,
                         "days_present": row.days_present,
                         "days_missing": row.days_missing,
