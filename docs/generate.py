@@ -42,6 +42,9 @@ def cli_reference() -> str:
         assert command is not None
         text = _help(command, f"normalize {name}")
         parts.append(f"## normalize {name}\n\n```text\n{text}\n```\n")
+        for under, inner in sorted(getattr(command, "commands", {}).items()):
+            whole = f"normalize {name} {under}"
+            parts.append(f"## {whole}\n\n```text\n{_help(inner, whole)}\n```\n")
     return "\n".join(parts)
 
 

@@ -157,6 +157,8 @@ def _draw(table: DegreeDayTable, *, png: bool) -> tuple[Picture, bytes | None]:
         )
         _bars(axes, table)
         by_hand.number_axis(axes, "y")
+        for label in axes.texts:  # cooling is drawn downwards, and is not negative
+            label.set_text(label.get_text().removeprefix("\u2212"))
         by_hand.ticks_below(axes, _labels(table))
         by_hand.name_below(axes, f"{table.unit} a {table.by}, base {table.base}")
         alt = f"{title}. Heating above the line, cooling below it, by {table.by}."
@@ -192,14 +194,22 @@ def _bars(axes: Axes, table: DegreeDayTable) -> None:
         if row.heating is None or row.cooling is None:
             axes.plot([i], [0.0], "x", color=look.CARE, markersize=5)
             continue
-        axes.bar([i], [row.heating], width=0.8, color=look.WEATHER)
-        axes.bar(
-            [i], [-row.cooling], width=0.8, facecolor="none", edgecolor=look.WEATHER, linewidth=1.0
-        )
+        if row.heating > 0:
+            axes.bar([i], [row.heating], width=0.8, color=look.WEATHER)
+        if row.cooling > 0:
+            axes.bar(
+                [i],
+                [-row.cooling],
+                width=0.8,
+                facecolor="none",
+                edgecolor=look.WEATHER,
+                linewidth=1.0,
+            )
     axes.axhline(0.0, color=look.QUIET, linewidth=0.8)
     axes.set_xlim(-0.6, len(table.rows) - 0.4)
     low, high = axes.get_ylim()
-    axes.set_ylim(low, max(high, 1.0))
+    room = 0.1 * (max(high, 1.0) - low)  # for the two words
+    axes.set_ylim(low - room, max(high, 1.0) + room)
     for word, at in (("heating", 0.985), ("cooling", 0.015)):
         axes.text(
             0.995, at, word, transform=axes.transAxes, ha="right",

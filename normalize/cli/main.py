@@ -22,7 +22,8 @@ COMMANDS: Final = {
     "savings": "How much less was used after an upgrade, in a normal year. The main job.",
     "fit": "The fits alone: every form that was tried, before and after.",
     "bills": "How a file of bills was understood and repaired.",
-    "degree-days": "Degree-days of a weather file, by month or by year, at any base.",
+    "degree-days": "Degree-days of a weather file, by month, year or bill, at any base.",
+    "weather": "Find a weather station, get its files, check a file.",
     "new": "Start a folder for a new site.",
 }
 

@@ -222,10 +222,19 @@ def _trend(weather: DailyTemperature, newest: int, max_missing: int) -> _Trend |
 def _trend_note(trend: _Trend | None) -> tuple[str, ...]:
     if trend is None:
         return ()
-    moved = "warmed" if trend.per_decade >= 0 else "cooled"
+    which = f"The record's {trend.n_years} whole years {trend.first}-{trend.last}"
+    error = f"(standard error {trend.error:.1f})"
+    if abs(trend.per_decade) < 2 * trend.error:
+        return (
+            f"{which} show no clear warming or cooling: "
+            f"{trend.per_decade:+.1f} °F a decade {error}.".replace("-0.0 ", "+0.0 "),
+        )
+    moved = "warmed" if trend.per_decade > 0 else "cooled"
     return (
-        f"The record's {trend.n_years} whole years {trend.first}-{trend.last} {moved} by "
-        f"{abs(trend.per_decade):.1f} °F a decade (standard error {trend.error:.1f}).",
+        f"{which} {moved} by {abs(trend.per_decade):.1f} °F a decade {error}, so a mean of past "
+        "years is likely to be colder than the years to come."
+        if moved == "warmed"
+        else f"{which} {moved} by {abs(trend.per_decade):.1f} °F a decade {error}.",
     )
 
 
