@@ -68,4 +68,4 @@ def test_the_glossary_names_every_form() -> None:
 
     glossary = (ROOT / "docs" / "glossary.md").read_text(encoding="utf-8")
     for form in FORMS.values():
-        assert f"| {form.name} | {form.equation.removeprefix('use per day = ')} |" in glossary
+        assert f"| {form.name} | {form.equation.removeprefix('use a day = ')} |" in glossary

@@ -1,0 +1,1 @@
+"""Timings, as ratios against a named peer in the same run.  Each module offers ``measure()``."""
