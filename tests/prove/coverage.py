@@ -25,9 +25,7 @@ def prove() -> str:
         "default | alarms, plain |",
         "| --: | --: | --: | --: | --: | --: | --: |",
     ]
-    for bills in BILLS:
-        for rho in RHOS:
-            lines.append(_row(bills, rho))
+    lines += [_row(bills, rho) for bills in BILLS for rho in RHOS]
     lines.append(
         "\nThe ranges speak of the bills' noise, not of occupants, the station or the choice of "
         "long-term year.\n"

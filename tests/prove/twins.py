@@ -12,7 +12,7 @@ from tests.fitting import brute
 from tests.fitting.accounts import Account, rough
 
 TOLERANCE = 1e-9
-CASES = ((12, 900), (24, 300))  # bills, accounts
+CASES = ((12, 600), (24, 100))  # bills, accounts
 
 
 def prove() -> str:
