@@ -7,6 +7,7 @@ import os
 import re
 import tomllib
 from collections.abc import Callable, Mapping
+from dataclasses import replace
 from pathlib import Path
 from typing import Final
 
@@ -41,7 +42,15 @@ ACCOUNT_KEYS: Final = (
 )
 UPGRADE_KEYS: Final = ("name", "start", "end", "cost", "accounts")
 CHANGE_KEYS: Final = ("what", "since", "until")
-WEATHER_KEYS: Final = ("observed", "long_term", "from_bills")
+WEATHER_KEYS: Final = (
+    "observed",
+    "neighbour",
+    "long_term",
+    "from_bills",
+    "also",
+    "long_term_also",
+)
+MOST_ALSO: Final = 20  # stations or years that an answer is repeated with
 LONG_TERM_KEYS: Final = ("years", "file")
 
 
@@ -223,13 +232,34 @@ def _weather(table: Table, folder: Path) -> WeatherPlan:
     if observed is not None:
         _must_exist(observed, table.where("observed"))
     file, years = _long_term(table, folder)
+    reader = _reader(table, WEATHER_READER_KEYS)
+    neighbour = table.path("neighbour", folder)
+    if neighbour is not None:
+        _must_exist(neighbour, table.where("neighbour"))
+        reader["neighbour"] = neighbour
     return WeatherPlan(
         observed=observed,
         long_term_file=file,
         long_term_years=years,
         from_bills=from_bills,
-        reader=_reader(table, WEATHER_READER_KEYS),
+        reader=reader,
+        also=_files(table, "also", folder),
+        long_term_also=_files(table, "long_term_also", folder),
     )
+
+
+def _files(table: Table, key: str, folder: Path) -> tuple[Path, ...]:
+    """A list of files in the folder, all of them there."""
+    names = table.texts(key) or ()
+    if len(names) > MOST_ALSO:
+        raise table.bad(key, f"a list of {len(names)}", f"at most {MOST_ALSO} files")
+    one = Table(table.file, table.label, {}, table.lines, table.index)
+    files = []
+    for name in names:
+        path = replace(one, values={key: name}).required_path(key, folder)
+        _must_exist(path, table.where(key))
+        files.append(path)
+    return tuple(files)
 
 
 def _long_term(weather: Table, folder: Path) -> tuple[Path | None, int]:

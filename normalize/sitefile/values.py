@@ -66,7 +66,10 @@ class WeatherPlan:
     long_term_years : how many whole years are averaged when there is no such file.
     from_bills : fit on the mean temperatures that the bills themselves carry; a station's
         file may still be given, for the long-term year.
-    reader : answers to the weather reader's questions (unit, columns, dates …).
+    reader : answers to the weather reader's questions (unit, columns, dates …), and the
+        ``neighbour`` from whose file gaps are filled.
+    also, long_term_also : files of further stations, and of further typical years or normals,
+        with which the answer may be repeated to see how far it moves.
     """
 
     observed: Path | None
@@ -74,6 +77,8 @@ class WeatherPlan:
     long_term_years: int = 10
     from_bills: bool = False
     reader: dict[str, object] = field(default_factory=dict)
+    also: tuple[Path, ...] = ()
+    long_term_also: tuple[Path, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
