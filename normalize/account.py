@@ -64,6 +64,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
         occupied_since=plan.occupied_since,
         net_metered=plan.net_metered,
         year_unavailable=site.year_unavailable,
+        delivered=bills.kind == "delivery",
     )
     savings = found.savings
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
@@ -184,6 +185,7 @@ def _circumstances(site: Site, bills: Bills, found: Comparison, work: Work) -> C
         estimated_near_work=near,
         changes=tuple(c.what for c in site.changes),
         held=found.held,
+        stated_f=found.stated_f,
         bill_cautions=bills.cautions,
     )
 

@@ -11,6 +11,8 @@ CONFIDENCE: Final = 0.90  # two-sided; the trade's customary level (common pract
 
 # Which bills count.
 WINDOW_DAYS: Final = 731  # the 24 months next to the work window on either side
+FEW_INTERVALS: Final = 12  # fewer deliveries than this in 24 months: years are pooled
+POOLED_WINDOW_DAYS: Final = 1461  # to four years on either side
 MIN_DAYS_A_SIDE: Final = 270  # of bills, for a normalized result
 SPARE_PERIODS: Final = 3  # n >= parameters + 3 (method §3)
 MIN_COLD_PERIODS: Final = 3  # with more than half their days on the slope's side of τ

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from normalize.fitting.results import Fit
 from normalize.savings.results import Price, Savings
+from normalize.savings.stated import STATED_RANGE_F
 from normalize.savings.worth import AVERAGE
 
 POOR_TAU_F = 8.0  # a profile range wider than this is worth a word
@@ -31,6 +32,7 @@ class Circumstances:
     changes: tuple[str, ...]
     held: tuple[bool, bool]
     bill_cautions: tuple[str, ...] = ()
+    stated_f: float | None = None
 
 
 def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[str, ...]:
@@ -47,6 +49,13 @@ def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[s
         out.append(
             "An estimated reading fell near the work: its error moves use from one side to the "
             "other until the next actual reading."
+        )
+    if about.stated_f is not None:
+        low, high = STATED_RANGE_F
+        out.append(
+            f"The deliveries do not show at which temperature heating starts, so "
+            f"{about.stated_f:.0f}\u00a0°F was taken; the range covers {low:.0f} to "
+            f"{high:.0f}\u00a0°F."
         )
     if about.by_bill:
         out.append(
@@ -79,11 +88,22 @@ def _forms(savings: Savings) -> list[str]:
         if e.value is None or e.low is None or e.high is None:
             answers.append(f"“{form}” on both sides: {e.unavailable}")
         else:
-            answers.append(f"“{form}” on both sides: {e.value:.0f} ({e.low:.0f} to {e.high:.0f})")
+            answers.append(
+                f"“{form}” on both sides: {_whole(e.value)} ({_whole(e.low)} to {_whole(e.high)})"
+            )
     return [
         f"The form changed from “{savings.before.form}” before to “{savings.after.form}” after "
         "the work, so part of the difference may be the change of form. " + "; ".join(answers) + "."
     ]
+
+
+def _whole(number: float) -> str:
+    """A whole number with a minus sign that is one.
+
+    >>> _whole(-1234.4)
+    '−1,234'
+    """
+    return f"{number:,.0f}".replace("-", "−")
 
 
 def _size(savings: Savings) -> list[str]:
@@ -119,11 +139,11 @@ def _fit(which: str, fit: Fit, held: bool) -> list[str]:
         if span is not None and span[1] - span[0] > POOR_TAU_F:
             out.append(
                 f"The balance temperature for {kind} {which} the work is poorly placed: "
-                f"anything from {span[0]:.0f} to {span[1]:.0f} °F fits about as well."
+                f"anything from {span[0]:.0f} to {span[1]:.0f} °F fits about as well."
             )
         if kind == "heating" and not COOL_F <= tau <= WARM_F:
             out.append(
-                f"A balance temperature of {tau:.0f} °F for heating is unusual (55–65 °F is "
+                f"A balance temperature of {tau:.0f} °F for heating is unusual (55–65 °F is "
                 "customary): check the bills and the weather station."
             )
     if fit.on_bound:

@@ -9,7 +9,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from normalize.bills.periods import Bills
-from normalize.defaults import CONFIDENCE, SHORT_YEAR_DAYS
+from normalize.defaults import (
+    CONFIDENCE,
+    FEW_INTERVALS,
+    POOLED_WINDOW_DAYS,
+    SHORT_YEAR_DAYS,
+)
 from normalize.errors import NoUpgrade
 from normalize.fitting import forms as f
 from normalize.fitting.align import Aligned, align
@@ -32,6 +37,7 @@ from normalize.savings.kernel import (
 )
 from normalize.savings.results import Estimate, Savings
 from normalize.savings.sides import Work, codes, label_periods
+from normalize.savings.stated import STATED_F, at_stated, needs_stated
 from normalize.weather.temperature import DailyTemperature
 from normalize.weather.year import LongTermYear
 
@@ -55,6 +61,7 @@ class Comparison:
     tried_after: tuple[FormTried, ...]
     labels: tuple[str, ...]
     held: tuple[bool, bool]
+    stated_f: float | None = None  # balance temperature that was stated, not found
 
 
 def run_batch(
@@ -67,6 +74,7 @@ def run_batch(
     forced: tuple[int, int] = (-1, -1),
     weights: str = "days",
     criterion: int = BIC,
+    settings_: NDArray[np.float64] | None = None,
 ) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.float64]]:
     """The compiled comparison over a ragged batch; years are those of the stations, in order.
 
@@ -86,7 +94,8 @@ def run_batch(
         table.temp, table.order, table.offsets, table.first_day,
         np.concatenate(temp).astype(np.float64), _offsets(temp),
         np.concatenate(days).astype(np.float64), np.concatenate(degrees).astype(np.float64),
-        _offsets(days), settings(), criterion, weights == "equal", float(confidence),
+        _offsets(days), settings() if settings_ is None else settings_, criterion,
+        weights == "equal", float(confidence),
     )  # fmt: skip
     return fits, chosen, answers
 
@@ -105,19 +114,62 @@ def compare(
     occupied_since: int | None = None,
     net_metered: bool = False,
     year_unavailable: str = "",
+    delivered: bool = False,
 ) -> Comparison:
     """Fit both sides of the work and set one against the other.
 
     year : the long-term year, or None with the reason in ``year_unavailable``.
-    forms : names offered to the choice.  Source: docs/method.md §3-§5.
+    forms : names offered to the choice.  delivered : intervals between full fills, not meter
+    readings: years are pooled when they are few, and a balance temperature is stated when
+    none stands out.  Source: docs/method.md §3-§5.
     """
     offered = tuple(forms) if forms is not None else CHOICE
-    labels = label_periods(aligned, work, occupied_since=occupied_since)
+    labels = _labels(aligned, work, occupied_since, delivered)
     batch, table = batch_of_one(aligned, codes(labels), offered, net_metered)
     fits, chosen, answers = run_batch(
         batch, table, [year], confidence=confidence, tried=also_tried()
     )
-    tried = tuple(
+    tried = _tried(aligned, labels, work, batch, table, fits, chosen)
+    stated = None
+    if delivered and "heating" in offered:
+        stated = _stated(batch, table, year, confidence, tried, answers)
+    if stated is not None:
+        fits[0, :, f.HEATING] = stated[0][0, :, f.HEATING]
+        chosen, answers = stated[1], stated[2]
+        tried = _tried(aligned, labels, work, batch, table, fits, chosen)
+    facts = tuple(
+        SideFacts.of(aligned, labels, name, tried[i], offered, delivered)
+        for i, name in enumerate(("before", "after"))
+    )
+    savings = _assemble(
+        answers[0], tried, facts, work, year, year_unavailable, confidence,
+        _same_form(batch, table, year, fits[0], chosen[0], confidence),
+    )  # fmt: skip
+    held = (answers[0, HELD_BEFORE] == 1.0, answers[0, HELD_AFTER] == 1.0)
+    return Comparison(savings, tried[0], tried[1], labels, held, STATED_F if stated else None)
+
+
+def _labels(
+    aligned: Aligned, work: Work, occupied_since: int | None, delivered: bool
+) -> tuple[str, ...]:
+    labels = label_periods(aligned, work, occupied_since=occupied_since)
+    if delivered and min(labels.count("before"), labels.count("after")) < FEW_INTERVALS:
+        return label_periods(
+            aligned, work, occupied_since=occupied_since, window_days=POOLED_WINDOW_DAYS
+        )
+    return labels
+
+
+def _tried(
+    aligned: Aligned,
+    labels: tuple[str, ...],
+    work: Work,
+    batch: Batch,
+    table: Stations,
+    fits: NDArray[np.float64],
+    chosen: NDArray[np.int8],
+) -> tuple[tuple[FormTried, ...], ...]:
+    return tuple(
         as_tried(
             fits[0, code],
             batch.wanted[0],
@@ -128,16 +180,23 @@ def compare(
         )
         for code in (BEFORE, AFTER)
     )
-    facts = tuple(
-        SideFacts.of(aligned, labels, name, tried[i], offered)
-        for i, name in enumerate(("before", "after"))
-    )
-    savings = _assemble(
-        answers[0], tried, facts, work, year, year_unavailable, confidence,
-        _same_form(batch, table, year, fits[0], chosen[0], confidence),
-    )  # fmt: skip
-    held = (answers[0, HELD_BEFORE] == 1.0, answers[0, HELD_AFTER] == 1.0)
-    return Comparison(savings, tried[0], tried[1], labels, held)
+
+
+def _stated(
+    batch: Batch,
+    table: Stations,
+    year: LongTermYear | None,
+    confidence: float,
+    tried: tuple[tuple[FormTried, ...], ...],
+    answers: NDArray[np.float64],
+) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.float64]] | None:
+    """The answer at a stated balance temperature, where deliveries place none on a side."""
+    open_before = needs_stated(tried[0], answers[0, HELD_BEFORE] == 1.0)
+    after = int((batch.side == AFTER).sum())
+    open_after = after > 0 and needs_stated(tried[1], answers[0, HELD_AFTER] == 1.0)
+    if not (open_before or open_after):
+        return None
+    return at_stated(batch, table, year, confidence=confidence)
 
 
 def _set_aside(aligned: Aligned, labels: tuple[str, ...], work: Work, code: int) -> int:
@@ -222,7 +281,9 @@ def _assemble(
         avoided = Estimate.none(before_no, confidence=confidence)
     elif facts[1].n == 0:
         reason = "there are no usable bills after the work yet"
-        avoided = Estimate.none(reason, known_from=facts[1].first_known, confidence=confidence)
+        avoided = Estimate.none(
+            reason, known_from=work.end + facts[0].typical, confidence=confidence
+        )
     else:
         avoided = _estimate(
             answer, AVOIDED, float(answer[PREDICTED]), confidence,

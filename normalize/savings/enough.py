@@ -13,6 +13,7 @@ from normalize.fitting.fit import chosen_of
 from normalize.fitting.forms import BY_CODE, NO_BALANCE, REASONS, TOO_FEW
 from normalize.fitting.results import FormTried
 from normalize.savings.sides import Work
+from normalize.savings.stated import FEWEST
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,7 +32,7 @@ class SideFacts:
     typical: int
     chosen: str
     blind: str
-    weather_ends: int
+    delivered: bool
 
     @classmethod
     def of(
@@ -41,6 +42,7 @@ class SideFacts:
         name: str,
         tried: Sequence[FormTried],
         offered: Sequence[str],
+        delivered: bool = False,
     ) -> SideFacts:
         """Facts of the side called ``name``."""
         mine = np.array([label == name for label in labels], dtype=np.bool_)
@@ -54,13 +56,8 @@ class SideFacts:
             typical=int(np.median(lengths)) if mine.any() else 30,
             chosen=best.form if best else "",
             blind=_blind(tried, offered, best.form if best else ""),
-            weather_ends=aligned.weather.last_day,
+            delivered=delivered,
         )
-
-    @property
-    def first_known(self) -> int | None:
-        """When a first bill after the work may be expected; unknown here."""
-        return None
 
 
 def _blind(tried: Sequence[FormTried], offered: Sequence[str], chosen: str) -> str:
@@ -80,8 +77,10 @@ def _blind(tried: Sequence[FormTried], offered: Sequence[str], chosen: str) -> s
 
 def _lacks(facts: SideFacts) -> str:
     when = "before the work" if facts.name == "before" else "after the work"
-    if facts.n == 0:
+    if facts.n == 0 and not facts.delivered:
         return f"there are no usable bills {when}"
+    if facts.delivered and facts.n < FEWEST:
+        return _fills(facts, when)
     if facts.days < MIN_DAYS_A_SIDE:
         return (
             f"there are {facts.days} days of bills {when}; {MIN_DAYS_A_SIDE} are needed "
@@ -93,6 +92,16 @@ def _lacks(facts: SideFacts) -> str:
     if facts.blind:
         return f"{when}, use answers to weather but {facts.blind}"
     return ""
+
+
+def _fills(facts: SideFacts, when: str) -> str:
+    """How many more full fills a delivered fuel needs: the first one only opens the record."""
+    missing = FEWEST - facts.n + (1 if facts.n == 0 else 0)
+    number = ("one", "two", "three", "four", "five", "six")[missing - 1]
+    return (
+        f"there are {facts.n} intervals between full fills {when} and {FEWEST} are needed: "
+        f"{number} more full fill{'s' if missing > 1 else ''}"
+    )
 
 
 def before_reason(facts: SideFacts) -> tuple[str, int | None]:
