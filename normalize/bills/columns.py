@@ -6,6 +6,7 @@ columns, and asking when the file does not settle it.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
@@ -16,6 +17,7 @@ from normalize.bills.vocabulary import ROLES
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
 from normalize.units import FUELS, canonical_unit
 
+_DEMAND = re.compile(r"\bkw\b", re.IGNORECASE)
 CLEAR_LEAD = 2.0  # a usage column is chosen unasked when it leads by this (our own, no source)
 
 
@@ -56,6 +58,13 @@ def find_columns(table: RawTable, named: dict[str, str]) -> tuple[Columns, tuple
     scores = [header_score(row.cells, names) for row in head]
     at = max(range(len(head)), key=lambda k: scores[k])
     if scores[at] < LIKELY_HEADER:
+        if any(_DEMAND.search(as_text(c)) for row in head for c in row.cells):
+            raise UnreadableBills(
+                "the numbers are in kW, a rate of use (demand), and there are none in kWh",
+                where=table.name,
+                wanted="a column of use, such as 'Usage (kWh)'",
+                next_step="Ask for kWh, or multiply each kW by the hours of its interval.",
+            )
         raise UnreadableBills(
             "no line looks like the header of a table of bills",
             where=table.name,

@@ -9,7 +9,6 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import replace
-from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -21,12 +20,9 @@ from normalize.bills.espi_numbers import Numbers, added, cautions_of, merged
 from normalize.bills.espi_xml import Entry, Reading, read_entries
 from normalize.bills.local_days import Clock, clock_of, espi_clock
 from normalize.bills.periods import BillRow
-from normalize.bills.sum_rows import SHORT_READING, day_rows, months_of
+from normalize.bills.sum_rows import SHORT_READING, day_rows
 from normalize.errors import AmbiguousBills, UnknownUnit, UnreadableBills
 from normalize.units import canonical_unit
-
-if TYPE_CHECKING:
-    pass
 
 _COMPLETE_PARTS = 2  # parts by time of use or tier, beside no total, are added up
 
@@ -254,17 +250,14 @@ def _rows(
     table: Numbers, clock: Clock, said: Answers, name: str
 ) -> tuple[tuple[BillRow, ...], list[str]]:
     local = clock.local(table.start)
-    if np.median(table.seconds) < SHORT_READING or said.sum_to == "month":
+    if np.median(table.seconds) < SHORT_READING:
         if table.several:
             table = merged(table)
             local = clock.local(table.start)
-        sums, notes = day_rows(
+        return day_rows(
             name, local, table.seconds, table.use, table.cost, table.line, table.estimated,
             clock=clock,
         )  # fmt: skip
-        if said.sum_to == "month":
-            return months_of(sums, said.read_day or 1), notes
-        return sums, notes
     # A bill begins and ends at the midnight nearest to its instants: some producers write
     # durations that forget an hour of summer time.
     first = (local + 43_200) // 86_400

@@ -11,10 +11,10 @@ from collections.abc import Iterable, Sequence
 from normalize.bills.amounts import split_amount
 from normalize.bills.columns import Columns, answer, fuel_of_unit, fuel_suggested
 from normalize.bills.headings import known_unit
-from normalize.bills.select import cell
+from normalize.bills.select import cell, fuel_named
 from normalize.bills.table import RawRow
 from normalize.errors import AmbiguousBills, UnknownUnit
-from normalize.units import FUELS, canonical_fuel, canonical_unit
+from normalize.units import FUELS, canonical_unit
 
 
 def fuel_of(columns: Columns, body: Sequence[RawRow], unit: str | None, where: str) -> str:
@@ -22,7 +22,7 @@ def fuel_of(columns: Columns, body: Sequence[RawRow], unit: str | None, where: s
     if (k := columns.get("fuel")) is not None:
         for row in body:
             if cell(row, k) is not None and str(cell(row, k)).strip():
-                return canonical_fuel(str(cell(row, k)), where=where)
+                return fuel_named(str(cell(row, k)), where=where)
     suggested = fuel_suggested(columns.heading("usage"))
     if not suggested and (k := columns.get("unit")) is not None:
         texts = [str(cell(row, k) or "").strip() for row in body]

@@ -38,7 +38,7 @@ _LETTERS = re.compile(r"[^\W\d_]+\d?")
 _PER_DAY = re.compile(r"(?:/|\bper\b)\s*d(?:ay)?\b|\bdaily\b|\ba day\b", re.IGNORECASE)
 _PER_OTHER = re.compile(r"/|\bper\b", re.IGNORECASE)
 _WORD = re.compile(r"[^\W_]+|[$%°#]")
-_DATES = {"start", "end", "read", "range", "delivery", "bill date", "month"}
+_DATES = {"start", "end", "read", "range", "delivery", "bill date", "month", "time"}
 _AMOUNTS = {"usage", "register", "cost"}
 MIN_SCORE = 4.0  # below this a word in a longer heading says nothing (our own, no source)
 

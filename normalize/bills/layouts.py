@@ -21,6 +21,7 @@ REOPENS = (
     "opens the record again: the {event} on line {line} cannot be used, so what this one "
     "measures began at an unknown date"
 )
+DAILY_LINES = 10  # fewer lines a day apart are no daily record (our own, no source)
 NOT_OPENED = {
     "reading": "an estimated reading before any actual one: it cannot open the record",
     "delivery": "before the first full fill: it is not known when this fuel began to be used",
@@ -87,6 +88,13 @@ def newest_first(days: Sequence[int]) -> bool:
     """Whether a file lists its newest bill first."""
     steps = [b - a for a, b in pairwise(days)]
     return sum(s < 0 for s in steps) > sum(s > 0 for s in steps)
+
+
+def are_days(records: Sequence[Record]) -> bool:
+    """Whether nearly every line is the day after, or before, the line above it."""
+    days = [r.end for r in records if r.end is not None]
+    steps = [abs(b - a) for a, b in pairwise(days)]
+    return len(steps) >= DAILY_LINES and steps.count(1) >= 0.9 * len(steps)
 
 
 def from_dates_alone(records: Sequence[Record], event: str) -> None:

@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from normalize.bills.interval_kernel import add_days
 from normalize.days import FIRST_SANE_DAY, LAST_SANE_DAY, date_of, day_of
 from normalize.errors import BillError
 
@@ -210,30 +211,34 @@ def sum_days(
     >>> sum_days(hours, hours * 0 + 3600, one, one, hours, hours * 0).use.tolist()
     [24.0]
     """
-    day = local // DAY
-    sane = (day >= FIRST_SANE_DAY) & (day <= LAST_SANE_DAY) & np.isfinite(use)
-    day, seconds, use, cost = day[sane], seconds[sane], use[sane], cost[sane]
-    line, estimated = line[sane], estimated[sane]
-    if day.size == 0:
+    arrays = (np.ascontiguousarray(a, np.int64) for a in (local, seconds, line, estimated))
+    local, seconds, line, estimated = arrays
+    use, cost = np.ascontiguousarray(use, np.float64), np.ascontiguousarray(cost, np.float64)
+    sane = (local >= FIRST_SANE_DAY * DAY) & (local < (LAST_SANE_DAY + 1) * DAY) & np.isfinite(use)
+    if not np.all(sane):
+        local, seconds, use, cost = local[sane], seconds[sane], use[sane], cost[sane]
+        line, estimated = line[sane], estimated[sane]
+    if local.size == 0:
         none = np.empty(0, np.int64)
         return DaySums(none, np.empty(0), np.empty(0), none, none, none, none)
-    first = int(day.min())
-    place = day - first
-    count = np.bincount(place)
+    first = int(local.min()) // DAY
+    size = int(local.max()) // DAY - first + 1
+    count, covered, priced, top, guessed = (np.zeros(size, np.int64) for _ in range(5))
+    total, money = np.zeros(size), np.zeros(size)
+    add_days(
+        local, seconds, use, cost, line, estimated, first,
+        count, covered, total, money, priced, top, guessed,
+    )  # fmt: skip
     there = np.flatnonzero(count)
-    covered = np.bincount(place, seconds)[there].astype(np.int64)
-    priced = np.bincount(place, ~np.isnan(cost))[there] > 0
-    money = np.bincount(place, np.nan_to_num(cost, nan=0.0))[there]
-    first_line = np.full(count.size, np.iinfo(np.int64).max, np.int64)
-    np.minimum.at(first_line, place, line)
     days = (there + first).astype(np.int64)
+    covered = covered[there]
     full = _lengths(days, covered, clock) if length is None else length
     return DaySums(
         day=days,
-        use=np.bincount(place, use)[there].astype(np.float64),
-        cost=np.where(priced, money, np.nan),
-        line=first_line[there],
-        estimated=np.bincount(place, estimated)[there].astype(np.int64),
+        use=total[there],
+        cost=np.where(priced[there] > 0, money[there], np.nan),
+        line=top[there],
+        estimated=guessed[there],
         missing=np.maximum(0, full - covered),
         twice=np.maximum(0, covered - full),
     )

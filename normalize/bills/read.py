@@ -7,14 +7,17 @@ to its rows whatever they came from: repair, flags, and the check that nothing w
 from __future__ import annotations
 
 import os
+from collections.abc import Sequence
+from dataclasses import replace
 
 from normalize.bills.answers import Answers, Understood, answers_of
 from normalize.bills.headings import header_score, squeeze
 from normalize.bills.periods import Bills
 from normalize.bills.repair import reconcile, repair
 from normalize.bills.solar import solar_signature
-from normalize.bills.table import BillFile, open_file, read_table
-from normalize.errors import NoBills
+from normalize.bills.sum_rows import months_of
+from normalize.bills.table import BillFile, Cell, open_file, read_table
+from normalize.errors import NoBills, UnreadableBills
 
 
 def read_bills(
@@ -68,6 +71,8 @@ def read_bills(
     file = open_file(path)
     answers = answers_of(file.name, given)
     found = _understand(file, answers, sheet)
+    if answers.sum_to == "month":
+        found = _months(found, answers)
     bills = _repaired(file, found, account, net_metered=net_metered, currency=currency)
     reconcile(bills)
     return bills
@@ -81,11 +86,33 @@ def _understand(file: BillFile, answers: Answers, sheet: str | None) -> Understo
         from normalize.bills.espi import read_espi
 
         return read_espi(file.data, file.name, answers)
+    names = frozenset(squeeze(v) for v in answers.named.values())
+
+    def score(cells: Sequence[Cell]) -> float:
+        return header_score(cells, names)
+
+    from normalize.bills.intervals import is_interval_file, read_intervals
+
+    head = is_interval_file(file, answers, score)
+    if head is not None:
+        return read_intervals(file, head, answers)
     from normalize.bills.table_bills import understand_table
 
-    names = frozenset(squeeze(v) for v in answers.named.values())
-    table = read_table(file, score=lambda cells: header_score(cells, names), sheet=sheet)
-    return understand_table(table, answers)
+    return understand_table(read_table(file, score=score, sheet=sheet), answers)
+
+
+def _months(found: Understood, answers: Answers) -> Understood:
+    """Days summed to months, where that was asked for."""
+    lengths = [r.end - r.start for r in found.rows if r.start is not None and r.end is not None]
+    if not lengths or sorted(lengths)[len(lengths) // 2] != 1:
+        raise UnreadableBills("sum_to was given, but the file holds no days to add up",
+                              next_step="Leave out sum_to.")  # fmt: skip
+    day = answers.read_day or 1
+    return replace(
+        found,
+        rows=months_of(found.rows, day),
+        reading=(*found.reading, f"days summed to months that begin on day {day}"),
+    )
 
 
 def _repaired(

@@ -7,7 +7,7 @@ repair_overlaps.py and repair_join.py.  One account is a batch of one.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Literal
 
@@ -133,31 +133,42 @@ def repair(
     >>> periods.n, ledger[0].note
     (1, 'the same bill as line 2')
     """
-    good = [k for k, row in enumerate(rows) if _usable(row)]
+    good = [row for row in rows if _usable(row)]
     batch = repair_batch(
-        [_day(rows[k].start) for k in good],
-        [_day(rows[k].end) for k in good],
-        [_number(rows[k].use) for k in good],
-        [_number(rows[k].cost) for k in good],
-        [rows[k].estimated for k in good],
+        _days([row.start for row in good]),
+        _days([row.end for row in good]),
+        _numbers([row.use for row in good]),
+        _numbers([row.cost for row in good]),
+        [row.estimated for row in good],
         [0, len(good)],
-        mean_temp_f=[_number(rows[k].mean_temp_f) for k in good],
+        mean_temp_f=_numbers([row.mean_temp_f for row in good]),
         delivery=kind == "delivery",
         net_metered=net_metered,
     )
-    place = {k: i for i, k in enumerate(good)}
-    lines = [rows[k].line for k in good]
-    ledger = tuple(
-        _entry(row, batch, place[k], lines, kind)
-        if k in place
-        else LedgerEntry(row.file, row.line, "left out", row.problem or _missing(row))
-        for k, row in enumerate(rows)
-    )
-    return _periods(batch), ledger
+    return _periods(batch), tuple(_fates(rows, batch, [row.line for row in good], kind))
+
+
+def _fates(
+    rows: Sequence[BillRow], batch: RepairedBatch, lines: list[int], kind: Kind
+) -> Iterator[LedgerEntry]:
+    """One entry for each row. lines : of the rows that went to the kernel."""
+    # A million readings come to ten thousand days, most of them without a word to say.
+    plain = ((batch.note == 0) & (batch.fate >= 0)).tolist()
+    fates = batch.fate.tolist()
+    i = 0
+    for row in rows:
+        if not _usable(row):
+            yield LedgerEntry(row.file, row.line, "left out", row.problem or _missing(row))
+            continue
+        if plain[i]:
+            yield LedgerEntry(row.file, row.line, f"period {fates[i] + 1}")
+        else:
+            yield _entry(row, batch, i, lines, kind)
+        i += 1
 
 
 def _usable(row: BillRow) -> bool:
-    return not row.problem and None not in (row.start, row.end, row.use)
+    return not (row.problem or row.start is None or row.end is None or row.use is None)
 
 
 def _missing(row: BillRow) -> str:
@@ -165,13 +176,14 @@ def _missing(row: BillRow) -> str:
     return "without " + " and ".join(name for name, value in names if value is None)
 
 
-def _day(day: int | None) -> int:
-    """A day number that fits 32 bits; far-off days stay far off and are screened out."""
-    return max(-(2**30), min(2**30, day if day is not None else -(2**30)))
+def _days(days: list[int | None]) -> NDArray[np.int32]:
+    """Day numbers that fit 32 bits; far-off days stay far off and are screened out."""
+    far = 2.0**30
+    return np.clip(np.array(days, np.float64), -far, far).astype(np.int32)
 
 
-def _number(value: float | None) -> float:
-    return float("nan") if value is None else float(value)
+def _numbers(values: list[float | None]) -> NDArray[np.float64]:
+    return np.array([np.nan if v is None else v for v in values], np.float64)
 
 
 def _periods(batch: RepairedBatch) -> Periods:

@@ -17,6 +17,16 @@ from normalize.bills.vocabulary import TOTALS
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
 from normalize.units import canonical_fuel, canonical_unit
 
+_SERVICE_WORDS = {
+    "usage",
+    "use",
+    "service",
+    "consumption",
+    "delivery",
+    "meter",
+    "account",
+    "billing",
+}
 _DATE_ROLES = ("start", "end", "read", "range", "delivery", "bill date", "year", "month")
 
 
@@ -169,9 +179,19 @@ def _of_fuel(body: list[RawRow], k: int, fuel: str, where: str) -> list[RawRow]:
     return kept
 
 
+def fuel_named(text: str, *, where: str = "") -> str:
+    """The fuel that a cell names, also as "Electric usage" or "Gas service".
+
+    >>> fuel_named("Natural gas usage")
+    'natural gas'
+    """
+    words = [w for w in text.split() if w.lower().strip(".,:") not in _SERVICE_WORDS]
+    return canonical_fuel(" ".join(words) or text, where=where)
+
+
 def _fuel_of(value: Cell) -> str:
     try:
-        return canonical_fuel(as_text(value))
+        return fuel_named(as_text(value))
     except BillError:
         return ""  # water, sewer, rubbish: another service on the same bill
 

@@ -11,7 +11,6 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from normalize.bills import rules
-from normalize.days import date_of
 
 if TYPE_CHECKING:
     from normalize.bills.answers import Understood
@@ -46,7 +45,8 @@ def solar_signature(found: Understood, periods: Periods, *, net_metered: bool) -
 def vanishes_in_summer(periods: Periods) -> bool:
     """Whether use a day in sunny months falls to a small part of that in the dark ones."""
     per_day = periods.use / np.maximum(periods.days, 1)
-    months = np.array([date_of(int(m)).month for m in (periods.start + periods.end) // 2], int)
+    middle = ((periods.start + periods.end) // 2).astype("datetime64[D]")
+    months = middle.astype("datetime64[M]").astype(np.int64) % 12 + 1
     dark = per_day[np.isin(months, rules.DARK_MONTHS)]
     sunny = per_day[np.isin(months, rules.SUNNY_MONTHS)]
     days = periods.days[np.isin(months, rules.SUNNY_MONTHS)]

@@ -33,15 +33,14 @@ def day_rows(
 ) -> tuple[tuple[BillRow, ...], list[str]]:  # fmt: skip
     """One BillRow for each local day, and sentences; a day with readings missing has a problem."""
     s = sum_days(local, seconds, use, cost, line, estimated, length=length, clock=clock)
-    full = s.missing + 0
+    costs = [None if c != c else c for c in s.cost.tolist()]
+    columns = (s.line, s.day, s.use, s.missing, s.twice)
     rows = tuple(
-        BillRow(
-            name, int(s.line[k]), int(s.day[k]), int(s.day[k]) + 1, float(s.use[k]),
-            None if np.isnan(s.cost[k]) else float(s.cost[k]),
-            problem=_problem(int(full[k]), int(s.twice[k])),
+        BillRow(name, n, day, day + 1, u, cost, False, None, _problem(gone, more))
+        for (n, day, u, gone, more), cost in zip(
+            zip(*(c.tolist() for c in columns), strict=True), costs, strict=True
         )
-        for k in range(s.day.size)
-    )  # fmt: skip
+    )
     step = int(np.median(seconds)) if seconds.size else 0
     total = f"{several(s.day.size, 'local day')}"
     notes = [f"{several(use.size, 'reading')} of {spoken(step)}, summed to {total}"]

@@ -30,6 +30,7 @@ MAX_CELL = 5_000  # characters of one cell
 LIKELY_HEADER = 10.0  # score of a line with a date and an amount heading (our own, no source)
 HEADER_LINES = 60  # a header is looked for in this many rows from the top
 
+_UTF16 = (b"\xff\xfe", b"\xfe\xff")
 _DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "bar"}
 _NOT_TABLES = (
     (b"\xd0\xcf\x11\xe0", "an old Excel workbook (.xls)", "Save it as .xlsx or CSV."),
@@ -138,6 +139,50 @@ def _bytes_of(file: Path) -> bytes:
     return data
 
 
+@dataclass(frozen=True, slots=True)
+class CsvHead:
+    """The first lines of a CSV, split. lines : of the whole file.  encoding : to read it with."""
+
+    rows: tuple[RawRow, ...]
+    delimiter: str
+    lines: int
+    encoding: str
+
+
+def csv_head(file: BillFile, score: Score) -> CsvHead | None:
+    """The first lines of a CSV file without reading the rest; None if it is none."""
+    data = file.data
+    if data.startswith(b"PK") or (b"\0" in data[:4000] and not data.startswith(_UTF16)):
+        return None
+    lines = data.count(b"\n")
+    sample = data[: 32 * 1024]
+    if lines < 2 or b"\n" not in sample:
+        return None
+    encoding = _encoding_of(data)
+    cut = sample.rfind(b"\n")
+    text = sample[:cut].decode(encoding, errors="replace").lstrip("\ufeff")
+    if "\0" in text:
+        return None
+    delimiter = _delimiter_of(text, score)
+    try:
+        rows = tuple(_csv_rows(text, delimiter, file.name))
+    except UnreadableBills:
+        return None
+    return CsvHead(rows, delimiter, lines, encoding) if rows else None
+
+
+def _encoding_of(data: bytes) -> str:
+    if data.startswith(_UTF16):
+        return "utf-16"
+    if data.isascii():
+        return "ascii"
+    try:
+        data.decode("utf-8")
+    except UnicodeDecodeError:
+        return "cp1252"
+    return "utf-8-sig"
+
+
 def _text_of(data: bytes, name: str) -> str:
     """Decoded text: by its byte order mark, else UTF-8, UTF-16 without a mark, cp1252."""
     text = _decoded(data)
@@ -163,7 +208,7 @@ def _text_of(data: bytes, name: str) -> str:
 
 
 def _decoded(data: bytes) -> str:
-    if data.startswith((b"\xff\xfe", b"\xfe\xff")):
+    if data.startswith(_UTF16):
         return data.decode("utf-16", errors="replace")
     sample = data[:4000]
     if len(sample) > 8 and sample[1::2].count(0) > 0.4 * len(sample[1::2]):

@@ -28,6 +28,7 @@ from normalize.bills.headings import squeeze
 from normalize.bills.layout_choice import Layout, layout_of
 from normalize.bills.layouts import (
     Record,
+    are_days,
     days_that_disagree,
     from_dates_alone,
     from_days,
@@ -230,6 +231,10 @@ def _put_periods(records: Sequence[Record], found: _Found, answers: Answers) -> 
     if name == "date and days":
         from_days(records)
         return ("a bill starts so many days before its reading",)
+    if found.kind == "meter" and are_days(records):
+        for record in records:
+            record.start, record.end = record.end, None if record.end is None else record.end + 1
+        return ("each line is the use of its day",)
     event: Literal["delivery", "reading"] = "delivery" if found.kind == "delivery" else "reading"
     from_dates_alone(records, event)
     return (f"a bill runs from the {event} before to its own",)
