@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from normalize.days import iso
 from normalize.errors import NormalizeError
 from normalize.fitting.align import Aligned, align
 from normalize.savings.cautions import Circumstances, cautions_of
@@ -25,6 +26,7 @@ if TYPE_CHECKING:
 
 NEAR_WORK_DAYS = 60
 CURVE_POINTS = 121
+MAX_FLAGS = 5  # odd bills told one by one among the cautions
 
 
 def unread_account(plan: AccountPlan, problem: str, confidence: float) -> AccountResult:
@@ -66,7 +68,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
         year_unavailable=site.year_unavailable,
         delivered=bills.kind == "delivery",
     )
-    savings = found.savings
+    savings = _unfit(found.savings, bills.unfit, confidence) if bills.unfit else found.savings
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
     unavailable = ""
     if not savings.normalized.available and not savings.avoided.available:
@@ -186,8 +188,27 @@ def _circumstances(site: Site, bills: Bills, found: Comparison, work: Work) -> C
         changes=tuple(c.what for c in site.changes),
         held=found.held,
         stated_f=found.stated_f,
-        bill_cautions=bills.cautions,
+        bill_cautions=(*bills.cautions, *_flags(bills)),
     )
+
+
+def _unfit(savings: Savings, reason: str, confidence: float) -> Savings:
+    """No answer at all, where the use cannot answer to weather in the way of this method."""
+    none = Estimate.none(reason, confidence=confidence)
+    return Savings(None, None, none, none, none, none, reason, reason)
+
+
+def _flags(bills: Bills) -> tuple[str, ...]:
+    """What is odd about single periods, in sentences; the ledger has every one."""
+    told = []
+    for flag in bills.flags[:MAX_FLAGS]:
+        i = flag.period - 1
+        start, end = int(bills.periods.start[i]), int(bills.periods.end[i]) - 1
+        told.append(f"The bill of {iso(start)} to {iso(end)}: {flag.note}.")
+    more = len(bills.flags) - MAX_FLAGS
+    if more > 0:
+        told.append(f"{more} more odd bills are listed with the bills.")
+    return tuple(told)
 
 
 def _co2(plan: AccountPlan, bills: Bills) -> Factor | None:

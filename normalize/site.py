@@ -11,7 +11,14 @@ from typing import TYPE_CHECKING
 from normalize import defaults
 from normalize.days import iso
 from normalize.errors import NormalizeError, NoUpgrade
-from normalize.sitefile import AccountPlan, Change, SiteFile, Upgrade, read_site_file
+from normalize.sitefile import (
+    AccountPlan,
+    Change,
+    SiteFile,
+    Upgrade,
+    WeatherPlan,
+    read_site_file,
+)
 
 if TYPE_CHECKING:
     import numpy as np
@@ -20,6 +27,7 @@ if TYPE_CHECKING:
     from normalize.bills.periods import Bills
     from normalize.fitting.results import FormTried
     from normalize.savings.results import Check, Price, Savings, Total
+    from normalize.sensitivity import Moved
     from normalize.units import Factor
     from normalize.weather.temperature import DailyTemperature
     from normalize.weather.year import LongTermYear
@@ -45,6 +53,7 @@ class Site:
     floor_area_ft2: float | None = None
     currency: str = "USD"
     inputs: tuple[tuple[str, str], ...] = ()  # (file, SHA-256) of every input
+    weather_plan: WeatherPlan | None = None  # other stations and years that site.toml offers
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,6 +137,7 @@ class SiteResult:
     cautions: tuple[str, ...]
     settings: tuple[tuple[str, str], ...]  # the defaults that mattered, name and value
     versions: tuple[tuple[str, str], ...]  # normalize, python, numpy, numba
+    moved: tuple[Moved, ...] = ()  # the answer with other stations and years, where asked for
 
 
 def read_site(folder: str | os.PathLike[str]) -> Site:
@@ -158,6 +168,7 @@ def read_site(folder: str | os.PathLike[str]) -> Site:
         floor_area_ft2=plan.floor_area_ft2,
         currency=plan.currency,
         inputs=tuple(dict.fromkeys(inputs)),
+        weather_plan=plan.weather,
     )
 
 

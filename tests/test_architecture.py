@@ -25,7 +25,10 @@ FLOORS = (
     ("cli", "page"),
 )
 FLOOR = {room: number for number, rooms in enumerate(FLOORS) for room in rooms}
-SAME_ROOM = {"account": "site"}  # one account of a site, in a file of its own
+SAME_ROOM = {
+    "account": "site",
+    "sensitivity": "site",
+}  # parts of a site's job, in files of their own
 ENTRANCES = {"__init__", "__main__"}  # of the package itself: doors to everything, lazily
 
 MAX_LINES = 600  # the aim is 400

@@ -85,12 +85,20 @@ def write_json(text: str, target: str, *, inputs: tuple[Path, ...] = ()) -> None
         raise UnwritableReport(f"cannot be written ({reason})", where=target) from None
 
 
-def assess_folder(folder: Path, *, confidence: float) -> SiteResult:
+def assess_folder(folder: Path, *, confidence: float, sensitivity: bool = False) -> SiteResult:
     """Read and assess a site, with a word when the first run takes longer."""
     from normalize.site import assess, read_site
 
     with patience():
-        return assess(read_site(folder), confidence=confidence)
+        site = read_site(folder)
+        result = assess(site, confidence=confidence)
+        if sensitivity:
+            from dataclasses import replace
+
+            from normalize.sensitivity import how_far
+
+            result = replace(result, moved=how_far(site, result))
+        return result
 
 
 def input_files(result: SiteResult) -> tuple[Path, ...]:

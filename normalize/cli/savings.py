@@ -48,6 +48,11 @@ if TYPE_CHECKING:
     "--short", is_flag=True, help="Print the plain answer and its cautions, not the statistics."
 )
 @click.option(
+    "--sensitivity",
+    is_flag=True,
+    help="Repeat the job with every other station and normal year that site.toml offers.",
+)
+@click.option(
     "--show-accounts",
     is_flag=True,
     help="Show account numbers and addresses in full; otherwise long numbers are masked.",
@@ -58,6 +63,7 @@ def command(
     report_to: Path | None,
     confidence: float,
     short: bool,
+    sensitivity: bool,
     show_accounts: bool,
 ) -> int | None:
     """Say how much less (or more) was used after the work in FOLDER, in a normal year.
@@ -65,7 +71,7 @@ def command(
     FOLDER holds site.toml, which names the bills, the weather and the work. The plain answer
     comes first, with its range; the statistics follow. Exit code 1 when no account has an answer.
     """
-    result = assess_folder(folder, confidence=confidence)
+    result = assess_folder(folder, confidence=confidence, sensitivity=sensitivity)
     if json_to != STDOUT:
         from normalize.report.numbers import name
         from normalize.report.text import to_text

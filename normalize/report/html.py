@@ -102,6 +102,7 @@ def _site(result: SiteResult, say: Callable[[str], str], *, show_accounts: bool)
         "settings": tables.pairs_table("Settings that mattered", result.settings, "setting"),
         "versions": tables.pairs_table("Versions", result.versions, "program"),
         "inputs": tables.inputs_table(result, show_accounts=show_accounts),
+        "moved": _hidden(tables.moved_table(result), say) if result.moved else None,
     }
 
 

@@ -57,6 +57,17 @@ def to_dict(result: SiteResult) -> Json:
             "normalized": _total(result.total_normalized),
             "avoided": _total(result.total_avoided),
         },
+        "sensitivity": [
+            {
+                "account": m.account,
+                "weather": m.name,
+                "changes": m.changes,
+                "normalized": None if m.normalized is None else _estimate(m.normalized),
+                "avoided": None if m.avoided is None else _estimate(m.avoided),
+                "unavailable": m.unavailable or None,
+            }
+            for m in result.moved
+        ],
         "cautions": list(result.cautions),
         "settings": dict(result.settings),
         "versions": dict(result.versions),

@@ -36,7 +36,11 @@ def to_text(
     show_accounts : account numbers in full.  subject : who used less, e.g. "Your house".
     """
     sheet = _Sheet(max(width, MIN_WIDTH), ascii, show_accounts)
-    lines = [*_answer(result, sheet, subject), *_cautions(result, sheet)]
+    lines = [
+        *_answer(result, sheet, subject),
+        *_moved(result, sheet),
+        *_cautions(result, sheet),
+    ]
     if statistics:
         for account in result.accounts:
             lines += _statistics(account, result, sheet)
@@ -213,6 +217,17 @@ def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterat
         yield from sheet.item(f"{file}:{line}: {fate}: {note}")
     if len(noted) > MOST_LEDGER_LINES:
         yield from sheet.item(f"and {len(noted) - MOST_LEDGER_LINES} more, in the report")
+
+
+def _moved(result: SiteResult, sheet: _Sheet) -> Iterator[str]:
+    """How far the answer moves with other weather, where that was asked for."""
+    if not result.moved:
+        return
+    yield from ["", *sheet.heading("How far the answer moves", "-")]
+    yield from sheet.table(tables.moved_table(result), keep=range(6))
+    for row in tables.moved_table(result).rows:
+        if row[-1]:
+            yield from sheet.item(f"{row[0]}, {row[1]}: {row[-1]}")
 
 
 def _site_statistics(result: SiteResult, sheet: _Sheet) -> Iterator[str]:
