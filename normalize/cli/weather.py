@@ -98,7 +98,7 @@ def near(
     if json_to is not None:
         write_json(_near_json(where.name, span, found), json_to)
     if json_to != STDOUT:
-        show(_near_text(where.name, span, found))
+        show(_near_text(where.name, span, found, height_given=height is not None))
 
 
 @command.command("get", epilog="Example: normalize weather get USW00094765 --into my-house")
@@ -275,7 +275,9 @@ def _measured(cache: Cache, found: Sequence[Candidate], span: tuple[int, int]) -
     return shares
 
 
-def _near_text(place: str, span: tuple[int, int], found: Sequence[Candidate]) -> str:
+def _near_text(
+    place: str, span: tuple[int, int], found: Sequence[Candidate], *, height_given: bool
+) -> str:
     from normalize.days import iso
 
     when = f"{iso(span[0])} to {iso(span[1] - 1)}"
@@ -296,6 +298,9 @@ def _near_text(place: str, span: tuple[int, int], found: Sequence[Candidate]) ->
         "Best first: distance plus what height, missing days and another climate zone are worth "
         "in distance (docs/weather.md).",
         "* by the years that the archive's inventory lists; get the station to count its days.",
+        "Height: above the building."
+        if height_given
+        else "Height: above the median of the nearest five stations, as no --elevation was given.",
         "Zone: thermal climate zone from normals, after ASHRAE 169 (bounds from memory).",
         f"Next: normalize weather get {found[0].station.id} --into YOUR-SITE-FOLDER",
     ]

@@ -62,7 +62,7 @@ def fill_from_neighbour(
         n_filled += gap.days
     notes = (*weather.notes, *_notes(neighbour, lines, n_filled, left, max_days))
     shift = _shift(weather, theirs)
-    if shift and n_filled:
+    if shift and (n_filled or left):
         notes = (*notes, shift)
     source = (*weather.source, *neighbour.source)
     return replace(weather, temp_f=temp_f, filled=filled, notes=notes, source=source)

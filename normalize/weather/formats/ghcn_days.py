@@ -123,12 +123,14 @@ def _notes(station: str, tally: Tally) -> list[str]:
             f"{counts(tally.failed)} as missing."
         )
     if tally.from_gsod:
+        come = "comes" if tally.from_gsod == 1 else "come"
         notes.append(
-            f"{counted(tally.from_gsod, 'value')} come from summaries of GMT days, which begin "
+            f"{counted(tally.from_gsod, 'value')} {come} from summaries of GMT days, which begin "
             "hours before local days."
         )
     if tally.lagged:
-        notes.append(f"{counted(tally.lagged, 'value')} lag behind the hour of observation.")
+        lag = "lags" if tally.lagged == 1 else "lag"
+        notes.append(f"{counted(tally.lagged, 'value')} {lag} behind the hour of observation.")
     if tally.timed and tally.morning > MAX_MORNING_SHARE * tally.timed:
         notes.append(
             f"{100 * tally.morning / tally.timed:.0f} % of the readings were made in the morning, "

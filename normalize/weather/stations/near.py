@@ -8,8 +8,9 @@ what 20 km of distance may be); the list shows every part, so that a person can 
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
+from statistics import median
 from typing import TYPE_CHECKING, Final
 
 from normalize.days import date_of
@@ -25,13 +26,15 @@ KM_FOR_ALL_MISSING: Final = 400.0
 KM_FOR_ANOTHER_ZONE: Final = 50.0
 KM_FOR_MORNING_DAYS: Final = 10.0  # a volunteer observer's days may be shifted
 MOST_KM: Final = 250.0
+NEAREST_HEIGHTS: Final = 5  # stations whose median height stands for a building's
 
 
 @dataclass(frozen=True, slots=True)
 class Candidate:
     """A station as seen from a place.
 
-    rise_m : station above place, None where either height is unknown.  complete : share of
+    rise_m : station above place (or above the median of the nearest stations, where the
+    place's height is not given), None where a height is unknown.  complete : share of
     the span's days (or years, by the inventory) that it covers, None where unknown; measured
     says that its own file was looked at.  zone : None where unknown.  cost_km : sum of all.
     """
@@ -100,6 +103,8 @@ def rank(
             near.append((away, station))
     near.sort(key=lambda pair: (pair[0], pair[1].id))
     zones = zones or {}
+    if elevation_m is None:
+        elevation_m = usual_height([station for _, station in near])
     home = next((zones[s.id] for _, s in near if s.id in zones), None)
     found = [
         _candidate(station, away, span, elevation_m, measured or {}, zones.get(station.id), home)
@@ -107,6 +112,15 @@ def rank(
     ]
     found.sort(key=lambda c: (c.cost_km, c.station.id))
     return tuple(found[:count])
+
+
+def usual_height(stations: Sequence[Station]) -> float | None:
+    """The median height of the nearest stations, where the building's own is not given. [m]
+
+    stations : nearest first.  None where none of them has a height.
+    """
+    heights = [s.elevation_m for s in stations if s.elevation_m is not None][:NEAREST_HEIGHTS]
+    return median(heights) if heights else None
 
 
 def _candidate(
