@@ -13,7 +13,9 @@ import normalize.cli.weather as cli_weather
 from normalize.cli.main import main
 from normalize.days import day_of
 from normalize.errors import MissingWeather, UnreadableWeather, WeatherError
+from normalize.weather import neighbour
 from normalize.weather.source import read_source
+from normalize.weather.stations import near
 from normalize.weather.stations.cache import Cache
 from normalize.weather.stations.fetch import Fetcher, Limits
 from normalize.weather.stations.lists import Station, read_stations
@@ -247,3 +249,16 @@ def test_check_of_a_normals_file(run: Run, tmp_path: Path) -> None:
     assert code == 0
     assert "normals 1991-2020 of HARROW VALLEY AP" in out
     assert "7,333" in out
+
+
+def test_the_page_on_weather_gives_the_worths_that_are_used() -> None:
+    page = (Path(__file__).parents[2] / "docs" / "weather.md").read_text(encoding="utf-8")
+    for words in (
+        f"| 100 m of height above or below the building | {near.KM_PER_100_M:.0f} km",
+        f"| {near.KM_FOR_ALL_MISSING:.0f} km, in proportion",
+        f"| another thermal climate zone | {near.KM_FOR_ANOTHER_ZONE:.0f} km",
+        f"(no airport) | {near.KM_FOR_MORNING_DAYS:.0f} km",
+        f"gaps of up to {neighbour.MAX_DAYS} days",
+        f"{neighbour.MIN_COMMON_DAYS} days in common and an R² of {neighbour.MIN_R2}",
+    ):
+        assert words in " ".join(page.split()), words
