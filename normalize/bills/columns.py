@@ -17,6 +17,7 @@ from normalize.bills.vocabulary import ROLES
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
 from normalize.units import FUELS, canonical_unit
 
+_DATE = re.compile(r"\d[-/. ]\d+[-/. ]\d|[a-z]{3}", re.IGNORECASE)
 _DEMAND = re.compile(r"\bkw\b", re.IGNORECASE)
 CLEAR_LEAD = 2.0  # a usage column is chosen unasked when it leads by this (our own, no source)
 
@@ -31,6 +32,7 @@ class Columns:
     notes: tuple[int, ...] = ()
     accounts: tuple[int, ...] = ()
     usage: tuple[int, ...] = ()  # candidates, in order of columns
+    differenced: bool = False  # the usage column holds readings of the meter
 
     def get(self, role: str) -> int | None:
         """Column of a role."""
@@ -83,7 +85,7 @@ def _assign(columns: Columns, body: Sequence[RawRow]) -> Columns:
     """Each role's column: the best heading; the first of equals."""
     by_role: dict[str, int] = {}
     for k, heading in enumerate(columns.headings):
-        role = heading.role
+        role = _reading_role(heading, body, k)
         if not role or role in ("ignore", "private", "notes", "account", "usage"):
             continue
         if role not in by_role or heading.score > columns.headings[by_role[role]].score:
@@ -100,6 +102,24 @@ def _assign(columns: Columns, body: Sequence[RawRow]) -> Columns:
         accounts=tuple(k for k, role in enumerate(role_of) if role == "account"),
         usage=usage,
     )
+
+
+_READINGS = {"start": "register start", "end": "register", "read": "register"}
+_READ_DATES = {"register start": "start", "register": "end"}
+
+
+def _reading_role(heading: Heading, body: Sequence[RawRow], k: int) -> str:
+    """A heading's role; where it speaks of a reading, the cells say if its date or its number."""
+    role = heading.role
+    about = {"read", "reading", "readings", "register", "index"} & set(heading.words)
+    if role not in (*_READINGS, *_READ_DATES) or not about or "date" in heading.words:
+        return role
+    cells = [row.cells[k] for row in body[:500] if k < len(row.cells)]
+    filled = [c for c in cells if not is_blank(c)]
+    dates = sum(1 for c in filled if not isinstance(c, (int, float)) and _DATE.search(as_text(c)))
+    if 2 * dates > len(filled):
+        return _READ_DATES.get(role, role)
+    return _READINGS.get(role, role) if _holds_numbers(body, k) and filled else role
 
 
 def _holds_numbers(body: Sequence[RawRow], k: int) -> bool:
@@ -124,6 +144,9 @@ def _apply_names(columns: Columns, named: dict[str, str], where: str) -> Columns
         for other in [r for r, k in by_role.items() if k == hits[0] and r != role]:
             del by_role[other]
         by_role[role] = hits[0]
+    if "register" in named:
+        by_role["usage"] = by_role["register"]
+        columns = replace(columns, differenced=True)
     if "end" in named:  # a named end is the date of the reading, whatever else there is
         by_role.pop("read", None)
         by_role.pop("range", None)
@@ -139,6 +162,9 @@ def choose_usage(
     """
     if "usage" in columns.by_role:
         return columns, ()
+    if not columns.usage and "register" in columns.by_role:
+        by_role = {**columns.by_role, "usage": columns.by_role["register"]}
+        return replace(columns, by_role=by_role, differenced=True), ()
     if not columns.usage:
         raise _no_usage(columns, where)
     notes: list[str] = []
@@ -249,14 +275,6 @@ def choose_cost(columns: Columns, fuel: str) -> Columns:
 
 def _no_usage(columns: Columns, where: str) -> UnreadableBills:
     names = ", ".join(repr(h.text) for h in columns.headings if h.text)
-    if "register" in columns.by_role:
-        return UnreadableBills(
-            f"the file has readings of the meter ({columns.heading('register').text!r}) "
-            "but no usage",
-            where=f"{where}:{columns.line}",
-            wanted="a column of usage",
-            next_step="Add one: each reading less the one before, times the meter's multiplier.",
-        )
     return UnreadableBills(
         f"no column looks like usage (the headings are {names[:300]})",
         where=f"{where}:{columns.line}",

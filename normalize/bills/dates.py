@@ -24,7 +24,24 @@ _LONG_MONTHS = (
     *("january", "february", "march", "april", "may", "june"),
     *("july", "august", "september", "october", "november", "december"),
 )
-_MON = r"(?P<mon>[a-z]{3,9})\.?"
+# Months in other languages of the Latin alphabet, as spreadsheets set to them write them.  No
+# word here names another month elsewhere.  (common knowledge)
+_OTHER_MONTHS = {
+    1: "ene enero janv janvier januar jaen gen gennaio janeiro januari jän jänner",
+    2: "febrero févr fevr fév février fevrier februar febbraio fev fevereiro februari",
+    3: "marzo mars märz maerz mär mrz março marco maart mrt",
+    4: "abr abril avr avril aprile",
+    5: "mayo mai mag maggio maio mei",
+    6: "junio juin juni giu giugno junho",
+    7: "julio juil juillet juli lug luglio julho",
+    8: "ago agosto aoû août aout augustus",
+    9: "set settembre setiembre septiembre septembre setembro sept",
+    10: "octubre octobre okt oktober ott ottobre out outubro",
+    11: "noviembre novembre novembro",
+    12: "dic diciembre déc décembre dec decembre dez dezember dicembre dezembro",
+}
+_FOREIGN = {word: k for k, words in _OTHER_MONTHS.items() for word in words.split()}
+_MON = r"(?P<mon>[^\W\d_]{3,10})\.?"
 _SEP = r"[-/. ,]+"
 _YEAR = r"'?(?P<year>\d{4}|\d{2})"
 _NAMED = (
@@ -54,13 +71,18 @@ class Written:
     day : day number where there is but one way to read it.
     parts : (first, second, year) where the order of day and month decides.
     problem : why it is no date; "" for a blank cell, which has neither day nor parts.
-    month_only : names a month but no day.
+    month : (year, month) where it names a month but no day.
     """
 
     day: int | None = None
     parts: tuple[int, int, int] | None = None
     problem: str = ""
-    month_only: bool = False
+    month: tuple[int, int] | None = None
+
+    @property
+    def month_only(self) -> bool:
+        """Whether it names a month but no day."""
+        return self.month is not None
 
 
 def pivot(year: int) -> int:
@@ -147,7 +169,10 @@ def _of_words(text: str, shown: str) -> Written:
         named = "mon" in found.re.groupindex
         month = _month(found["mon"]) if named else int(found["number"])
         if 1 <= month <= 12:
-            return Written(problem=f"{quoted(shown)} names a month but no day", month_only=True)
+            year = pivot(int(found["year"]))
+            if 1900 <= year < 2100:
+                said = f"{quoted(shown)} names a month but no day"
+                return Written(problem=said, month=(year, month))
     return Written(problem=f"{quoted(shown)} is not a date")
 
 
@@ -156,7 +181,9 @@ def _month(word: str) -> int:
         return 9
     if word in _MONTHS:
         return _MONTHS.index(word) + 1
-    return _LONG_MONTHS.index(word) + 1 if word in _LONG_MONTHS else 0
+    if word in _LONG_MONTHS:
+        return _LONG_MONTHS.index(word) + 1
+    return _FOREIGN.get(word, 0)
 
 
 def quoted(text: str) -> str:

@@ -57,12 +57,14 @@ def layout_of(columns: Columns, body: Sequence[RawRow], kind: Kind, where: str) 
         return Layout("start and days", rec.Where(start=get("start")), ("start",))
     if month is not None and year is None and _are_dates(body, month):
         return Layout(name, rec.Where(end=month), ("month",))
+    if month is not None and year is not None:
+        return Layout(name, rec.Where(months=(year, month)), ("year", "month"))
     raise _no_dates(columns, where)
 
 
 def _are_dates(body: Sequence[RawRow], k: int) -> bool:
     found = [read_written(cell(row, k)) for row in body]
-    good = sum(1 for w in found if w.day is not None or w.parts is not None)
+    good = sum(1 for w in found if w.day is not None or w.parts is not None or w.month)
     return 2 * good > len(found)
 
 
@@ -79,7 +81,7 @@ def _no_dates(columns: Columns, where: str) -> BillError:
         )
     if columns.get("month") is not None:
         return AmbiguousBills(
-            "the file names months, but not the days on which the meter was read",
+            "the file names months, but no years and no days on which the meter was read",
             where=where,
             wanted="the date of the reading, or the first and last day of each bill",
             next_step="Add a column 'end' with the date of each reading.",
@@ -96,4 +98,16 @@ def _no_dates(columns: Columns, where: str) -> BillError:
         where=where,
         wanted="a heading such as 'Read date', or 'Start' and 'End'",
         next_step='Name it: end_column = "…" under [[account]] in site.toml, or --end-column.',
+    )
+
+
+def ask_read_day(where: str) -> AmbiguousBills:
+    """The question of a file that names months and no days."""
+    return AmbiguousBills(
+        "the file names months, but not the days on which the meter was read",
+        where=where,
+        wanted="the date of the reading, or the first and last day of each bill",
+        next_step="Put read_day = 5 (the day of the month on which the meter is read, so that a "
+        'bill of January ends on 5 January) or read_day = "calendar" (bills of whole calendar '
+        "months) under [[account]] in site.toml, or use --read-day.",
     )

@@ -13,6 +13,7 @@ from itertools import pairwise
 
 from normalize.bills.columns import answer
 from normalize.bills.periods import BillRow
+from normalize.bills.sum_rows import month_edge
 from normalize.days import iso
 from normalize.errors import AmbiguousBills
 
@@ -35,6 +36,7 @@ class Record:
     start, end : day numbers or None.  days : of a days column.  use, cost, mean_temp_f : None
     where blank.  estimated : estimated reading, or a fill not known to be full.
     problem : why the line cannot be used; the first one found stays.
+    note : what reading it took.
     """
 
     line: int
@@ -46,6 +48,7 @@ class Record:
     estimated: bool = False
     mean_temp_f: float | None = None
     problem: str = ""
+    note: str = ""
 
     def blame(self, problem: str) -> None:
         """Note a problem, unless an earlier one is already known."""
@@ -58,7 +61,7 @@ class Record:
             self.blame("no usage given")
         return BillRow(
             file, self.line, self.start, self.end, self.use, self.cost, self.estimated,
-            self.mean_temp_f, self.problem,
+            self.mean_temp_f, self.problem, self.note,
         )  # fmt: skip
 
 
@@ -88,6 +91,28 @@ def newest_first(days: Sequence[int]) -> bool:
     """Whether a file lists its newest bill first."""
     steps = [b - a for a, b in pairwise(days)]
     return sum(s < 0 for s in steps) > sum(s > 0 for s in steps)
+
+
+def from_months(
+    records: Sequence[Record], months: Sequence[tuple[int, int] | None], read_day: int
+) -> str:
+    """Bills that name only a month; returns a sentence.
+
+    read_day : 0 for whole calendar months; else the day of that month on which the meter is
+    read, so that the bill of January runs from that day of December to that of January.
+    """
+    for record, month in zip(records, months, strict=True):
+        if month is None:
+            continue
+        year, number = month
+        if read_day == 0:
+            record.start, record.end = month_edge(year, number, 1), month_edge(year, number + 1, 1)
+        else:
+            record.start = month_edge(year, number - 1, read_day)
+            record.end = month_edge(year, number, read_day)
+    if read_day == 0:
+        return "a bill is of its whole calendar month, as you said"
+    return f"a bill ends on day {read_day} of the month it names, as you said"
 
 
 def are_days(records: Sequence[Record]) -> bool:

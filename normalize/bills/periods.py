@@ -23,6 +23,7 @@ class BillRow:
     cost : in the account's currency; None where missing.
     mean_temp_f : the bill's own mean outdoor temperature, °F, where it carries one.
     problem : why the row cannot be used, in plain words; empty when it can.
+    note : what reading it took, for the ledger; empty for most.
     """
 
     file: str
@@ -34,6 +35,7 @@ class BillRow:
     estimated: bool = False
     mean_temp_f: float | None = None
     problem: str = ""
+    note: str = ""
 
 
 @dataclass(frozen=True, slots=True)

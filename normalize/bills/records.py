@@ -68,6 +68,7 @@ class Where:
     end: int | None = None
     range: int | None = None
     parts: tuple[int, int, int] | None = None
+    months: tuple[int, int] | None = None  # columns of year and month
 
 
 def split_range(value: Cell) -> tuple[str, str] | None:
@@ -86,7 +87,11 @@ def written_dates(
     """(start, end) of each row, as written."""
     found = []
     for row in rows:
-        if where.parts is not None:
+        if where.months is not None:
+            year, month = (as_text(cell(row, k)).removesuffix(".0") for k in where.months)
+            named = f"{month} {year}" if not month.isdigit() else f"{month}/{year}"
+            found.append((Written(), read_written(named) if month or year else Written()))
+        elif where.parts is not None:
             found.append((Written(), _from_parts(row, where.parts)))
         elif where.range is not None:
             both = split_range(cell(row, where.range))

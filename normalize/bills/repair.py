@@ -161,7 +161,7 @@ def _fates(
             yield LedgerEntry(row.file, row.line, "left out", row.problem or _missing(row))
             continue
         if plain[i]:
-            yield LedgerEntry(row.file, row.line, f"period {fates[i] + 1}")
+            yield LedgerEntry(row.file, row.line, f"period {fates[i] + 1}", row.note)
         else:
             yield _entry(row, batch, i, lines, kind)
         i += 1
@@ -210,7 +210,8 @@ def _entry(row: BillRow, batch: RepairedBatch, i: int, lines: list[int], kind: K
             words = rules.OPEN_PARTIAL
         return LedgerEntry(row.file, row.line, "left out", words.format(other=other))
     book = rules.NOTES | (rules.DELIVERY_NOTES if kind == "delivery" else {})
-    notes = [text.format(other=other) for bit, text in book.items() if int(batch.note[i]) & bit]
+    notes = [row.note] if row.note else []
+    notes += [text.format(other=other) for bit, text in book.items() if int(batch.note[i]) & bit]
     return LedgerEntry(row.file, row.line, f"period {int(batch.fate[i]) + 1}", "; ".join(notes))
 
 

@@ -44,6 +44,11 @@ TWO_MONTHLY_MEDIAN = 45  # days: half-way between one month and two
 MAX_TANGLE = 500  # rows that all overlap, or share one period: more is a fault of the file, and
 #                   comparing each with each would take for ever (safety, no source)
 
+# A register that falls has passed its highest number if the rise through zero is at most so many
+# times the largest ordinary rise a day; else the meter was replaced (our own, no source).
+ROLLOVER_TIMES = 3.0
+DIAL_DIGITS = (3, 9)  # fewest and most digits of a register (common practice, no source)
+
 # Solar panels, by their signature: electricity that all but vanishes in sunny months of the
 # northern half of the earth.  An occupied house always runs a refrigerator (our own, no source).
 DARK_MONTHS = (11, 12, 1, 2)

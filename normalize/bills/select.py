@@ -7,16 +7,18 @@ and units of one file apart.  Lines of different accounts are split or asked abo
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import pairwise
 
 from normalize.bills.amounts import as_text, is_blank
 from normalize.bills.columns import Columns, answer
-from normalize.bills.dates import read_written
+from normalize.bills.dates import ORDERS, read_written, settle
 from normalize.bills.headings import squeeze
 from normalize.bills.table import Cell, RawRow
 from normalize.bills.vocabulary import TOTALS
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
 from normalize.units import canonical_fuel, canonical_unit
 
+SURE_METER_LINES = 2  # of each meter, before a replacement is believed (our own, no source)
 _SERVICE_WORDS = {
     "usage",
     "use",
@@ -116,13 +118,39 @@ def select_rows(
         body = _of_fuel(body, k, fuel, where)
     if (k := columns.get("unit")) is not None:
         body = _of_unit(body, k, fuel, unit)
+    notes: tuple[str, ...] = ()
     if rows is None:
         for k in (columns.get("fuel"), columns.get("unit"), *columns.accounts):
-            if k is not None:
+            if k is None:
+                continue
+            if "meter" in columns.headings[k].words and _succeed(columns, body, k):
+                notes = ("the meter was replaced: one follows the other, without overlap",)
+            else:
                 _ask_if_several(columns, body, k, where)
     left = before - len(body)
-    notes = (f"{left} lines belong to other accounts, fuels or units",) if left else ()
+    if left:
+        notes += (f"{left} lines belong to other accounts, fuels or units",)
     return body, notes
+
+
+def _succeed(columns: Columns, body: list[RawRow], k: int) -> bool:
+    """Whether meters follow each other in time, as when one is replaced by another."""
+    when = next((c for r in ("end", "read", "start") if (c := columns.get(r)) is not None), None)
+    meters = list(dict.fromkeys(squeeze(_plain(cell(row, k))) for row in body))
+    if when is None or not 2 <= len(meters) <= 4 or "" in meters:
+        return False
+    written = [read_written(cell(row, when)) for row in body]
+    answers = []
+    for order in ORDERS[:2]:
+        days: dict[str, list[int]] = {m: [] for m in meters}
+        for row, one in zip(body, written, strict=True):
+            day, _ = settle(one, order)
+            if day is not None:
+                days[squeeze(_plain(cell(row, k)))].append(day)
+        if all(len(d) >= SURE_METER_LINES for d in days.values()):
+            spans = sorted((min(d), max(d)) for d in days.values())
+            answers.append(all(a[1] <= b[0] for a, b in pairwise(spans)))
+    return bool(answers) and all(answers)
 
 
 def _named_rows(columns: Columns, body: list[RawRow], rows: str, where: str) -> list[RawRow]:

@@ -25,20 +25,23 @@ from normalize.bills.columns import (
 from normalize.bills.dates import Written, read_written
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
 from normalize.bills.headings import squeeze
-from normalize.bills.layout_choice import Layout, layout_of
+from normalize.bills.layout_choice import Layout, ask_read_day, layout_of
 from normalize.bills.layouts import (
     Record,
     are_days,
     days_that_disagree,
     from_dates_alone,
     from_days,
+    from_months,
     from_start_days,
     settle_ends,
 )
+from normalize.bills.registers import Register, difference
 from normalize.bills.repair import Kind
 from normalize.bills.select import cell, select_rows, without_remarks
 from normalize.bills.table import RawRow, RawTable
-from normalize.errors import AmbiguousBills, NoBills
+from normalize.days import date_of
+from normalize.errors import NoBills
 
 
 def understand_table(table: RawTable, answers: Answers) -> Understood:
@@ -110,13 +113,7 @@ def _records(
     """Each bill line's record with what stood behind its number; sentences; cautions."""
     columns, body = found.columns, found.body
     written = rec.written_dates(found.table, found.layout.where, body)
-    ends = [w for _, w in written if w != Written()]
-    if ends and all(w.month_only for w in ends):
-        raise AmbiguousBills(
-                "the dates name months but no days", where=found.where,
-                wanted="the date of each reading, or the first and last day of each bill",
-                next_step="Add the day to each date.",
-            )  # fmt: skip
+    months = _months_named(written, found, answers)
     used = [columns.get(role) for role in ("usage", "cost", "temperature", "days")]
     numbers = rec.how_numbers_are_written(found.table, body, used, answers.decimal)
     days = [rec.days_of(cell(row, columns.get("days")), numbers.decimal) for row in body]
@@ -137,16 +134,71 @@ def _records(
             record.blame("a total, not a bill")
         if found.layout.name == "start and days":
             pair = (pair[0], pair[0])  # the end comes from the days
-        rec.put_dates(record, pair, order, both=both)
+        if months is None or pair[1].month is None:
+            rec.put_dates(record, pair, order, both=both)
         records.append((record, _put_numbers(record, row, columns, numbers.decimal)))
     plain = [record for record, _ in records]
     cautions = _put_marks(plain, found)
     _put_temperature(plain, found, answers, numbers.decimal)
     notes = (*order_notes, *((numbers.sentence,) if numbers.sentence else ()))
-    notes += _put_periods(plain, found, answers)
+    if months is not None:
+        notes += (from_months(plain, months, answers.read_day or 0),)
+    else:
+        notes += _put_periods(plain, found, answers)
+    if columns.differenced:
+        notes += _difference(plain, found, answers, numbers.decimal)
     _per_day(plain, columns)
     cautions += days_that_disagree(plain, found.table.name) if both else ()
     return records, notes, cautions
+
+
+def _months_named(
+    written: Sequence[tuple[Written, Written]], found: _Found, answers: Answers
+) -> list[tuple[int, int] | None] | None:
+    """(year, month) of each line of a file that names months only; asks for the reading day.
+
+    A spreadsheet makes "Jan 2023" the first of January: under a heading of months, too.
+    """
+    ends = [w for _, w in written if w != Written()]
+    named = [w for w in ends if w.month is not None]
+    months: list[tuple[int, int] | None]
+    if ends and 2 * len(named) > len(ends):
+        months = [w.month for _, w in written]
+    elif found.layout.roles == ("month",) and ends and all(_is_first(w) for w in ends):
+        whens = [date_of(w.day) if w.day is not None else None for _, w in written]
+        months = [(d.year, d.month) if d is not None else None for d in whens]
+    else:
+        return None
+    if answers.read_day is None:
+        raise ask_read_day(found.where)
+    return months
+
+
+def _is_first(written: Written) -> bool:
+    return written.day is not None and date_of(written.day).day == 1
+
+
+def _difference(
+    records: Sequence[Record], found: _Found, answers: Answers, decimal: Decimal
+) -> tuple[str, ...]:
+    """Readings of the meter become use."""
+    columns = found.columns
+    meters = [k for k in columns.accounts if "meter" in columns.headings[k].words]
+    times = [number_of(cell(row, columns.get("multiplier")), decimal) for row in found.body]
+    said = answers.multiplier
+    registers = [
+        Register(
+            record,
+            record.use,
+            number_of(cell(row, columns.get("register start")), decimal),
+            squeeze(cell(row, meters[0])) if meters else "",
+            said or (each if each is not None and each > 0 else 1.0),
+        )
+        for record, row, each in zip(records, found.body, times, strict=True)
+    ]
+    notes = difference(registers)
+    factors = sorted({r.times for r in registers} - {1.0})
+    return (*notes, *(f"times the multiplier of the meter, {f:g}" for f in factors[:3]))
 
 
 def _put_numbers(record: Record, row: RawRow, columns: Columns, decimal: Decimal) -> str:

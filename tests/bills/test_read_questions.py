@@ -181,10 +181,10 @@ NONSENSE: dict[str, tuple[bytes, str]] = {
     "no header": (b"2023-01-05,2023-02-06,81\n2023-02-06,2023-03-07,70\n", "no line looks like"),
     "prose": (b"Dear customer, please find your bill attached.\n", "no line looks like"),
     "no usage": (b"Start,End,Cost\n2023-01-05,2023-02-06,81\n", "no column looks like usage"),
-    "meter readings": (b"Read date,Meter reading\n2023-01-05,5012\n", "but no usage"),
+    "meter readings": (b"Read date,Meter reading\n2023-01-05,5012\n", "which fuel"),
     "no dates": (b"Month,Therms\nJanuary,81\nFebruary,70\n", "names months"),
     "months": (b"Month,Therms\nJan-23,81\nFeb-23,70\n", "names months"),
-    "months as dates": (b"Date,Therms\n2023-01,81\n2023-02,70\n", "name months but no days"),
+    "months as dates": (b"Date,Therms\n2023-01,81\n2023-02,70\n", "names months, but not the days"),
     "starts alone": (b"Start,Therms\n2023-01-05,81\n", "no end dates"),
     "all text": (H.encode() + b"2023-01-05,2023-02-06,lots\n", "cannot be used"),
     "all estimated": (
