@@ -18,6 +18,7 @@ from normalize.errors import BillError
 from normalize.units import canonical_fuel, canonical_unit
 
 ReadDay = int  # 1 to 31
+NO_COLUMN = "none"  # generation_column of a file whose usage is gross already
 CALENDAR = "calendar"  # read_day for bills of whole calendar months
 TankPercent = Literal["before", "after"]
 
@@ -40,7 +41,8 @@ COLUMN_ROLES = (
 class Answers:
     """What the user said; each is None where nothing was said.  As read_bills documents them.
 
-    read_day : 1 to 31, or 0 for calendar months.  named : role → heading.
+    read_day : 1 to 31, or 0 for calendar months.  gross : usage is what the house used, solar
+    panels or not.  named : role → heading.
     """
 
     fuel: str | None = None
@@ -58,6 +60,7 @@ class Answers:
     multiplier: float | None = None
     tank_size: float | None = None
     tank_percent: str | None = None
+    gross: bool = False
     named: dict[str, str] = field(default_factory=dict)
 
 
@@ -108,7 +111,12 @@ def answers_of(name: str, given: dict[str, object]) -> Answers:
         multiplier=_positive(given, "multiplier"),
         tank_size=_positive(given, "tank_size"),
         tank_percent=_text(given, "tank_percent"),
-        named={r: str(given[f"{r}_column"]) for r in COLUMN_ROLES if given.get(f"{r}_column")},
+        gross=given.get("generation_column") == NO_COLUMN,
+        named={
+            r: str(given[f"{r}_column"])
+            for r in COLUMN_ROLES
+            if given.get(f"{r}_column") and given[f"{r}_column"] != NO_COLUMN
+        },
     )
 
 

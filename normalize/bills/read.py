@@ -11,6 +11,7 @@ from collections.abc import Sequence
 from dataclasses import replace
 
 from normalize.bills.answers import Answers, Understood, answers_of
+from normalize.bills.flag_words import flag_cautions, flags_of
 from normalize.bills.headings import header_score, squeeze
 from normalize.bills.periods import Bills
 from normalize.bills.repair import reconcile, repair
@@ -120,10 +121,12 @@ def _repaired(
 ) -> Bills:
     net = net_metered or (found.sent and not found.generation)
     periods, ledger = repair(found.rows, kind=found.kind, net_metered=net)
+    flags = () if found.kind == "delivery" else flags_of(periods)
     bills = Bills(
         account=account, fuel=found.fuel, unit=found.unit, rows=found.rows, periods=periods,
         ledger=ledger, source=((file.name, file.sha256),), reading=found.reading,
-        kind=found.kind, currency=found.currency or currency, cautions=found.cautions,
+        kind=found.kind, currency=found.currency or currency, flags=flags,
+        cautions=(*found.cautions, *flag_cautions(flags)),
         unfit=solar_signature(found, periods, net_metered=net_metered), gross=found.generation,
     )  # fmt: skip
     if periods.n == 0:

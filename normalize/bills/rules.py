@@ -127,3 +127,46 @@ DELIVERY_NOTES = {
     ESTIMATE_JOINED: "partial fill, counted with the next full one",
     CLOSES_ESTIMATE: "full fill, takes in the partial fill before it",
 }
+
+# --- What is odd about a period and was left as it is --------------------------------------
+
+ZERO_USE = 1
+REPEATED_NUMBER = 2
+TIMES_10 = 4
+TIMES_100 = 8
+EMPTY_HOUSE = 16
+ALTERNATING = 32
+
+REPEATS = 3  # the same number so often in a row is a guess written down again (our own, no source)
+YEAR_SLACK_DAYS = 20  # "the same season": the middle of a period within so much of a year
+JUMP_DECADES = 0.12  # within a third of 10 or 100 times, so that no cold month passes for a
+#                      multiplier (our own, no source)
+JUMP_RUN = 3  # bills in a row ten times those of the year before (our own, no source)
+EMPTY_SHARE = 0.25  # of the same season's use, the year before and (where known) the year after
+EMPTY_DAYS = 45  # so long (both our own, no source)
+SEASON_TERMS = 5  # of the season taken out before looking for a sway: level and two waves a year
+ALTERNATING_MIN_PERIODS = 18
+ALTERNATING_SIGMAS = 2.5  # of white noise's lag-1 correlation, 1/sqrt(n) (Bartlett 1946)
+
+# Bit → (name, words for the ledger and cautions).
+FLAGS = {
+    ZERO_USE: ("zero use", "no use at all"),
+    REPEATED_NUMBER: (
+        "repeated number",
+        f"the same use {REPEATS} times or more in a row: probably estimated, though not marked",
+    ),
+    TIMES_10: ("multiplier", "ten times more or less than its neighbours or the year before"),
+    TIMES_100: (
+        "multiplier",
+        "a hundred times more or less than its neighbours or the year before",
+    ),
+    EMPTY_HOUSE: (
+        "empty house",
+        "a quarter or less of the same season's use in other years: perhaps nobody lived there, "
+        "or the heating failed or was replaced",
+    ),
+    ALTERNATING: (
+        "alternating",
+        "bills sway high and low in turn: readings may be estimated, though not marked",
+    ),
+}

@@ -8,7 +8,6 @@ module: columns (roles) → select (lines of the account) → records (dates, nu
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Literal
 
 from normalize.bills import records as rec
@@ -23,9 +22,11 @@ from normalize.bills.columns import (
     is_delivered,
 )
 from normalize.bills.dates import Written, read_written
+from normalize.bills.deliveries import open_by_levels, use_by_levels
+from normalize.bills.found import Found, add_generation, tanks_of
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
 from normalize.bills.headings import squeeze
-from normalize.bills.layout_choice import Layout, ask_read_day, layout_of
+from normalize.bills.layout_choice import ask_read_day, layout_of
 from normalize.bills.layouts import (
     Record,
     are_days,
@@ -62,8 +63,9 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
     columns = choose_cost(columns, fuel)
     kind = answers.kind or _kind_of(columns, fuel)
     layout = layout_of(columns, body, kind, where)
-    found = _Found(table, columns, body, totals, layout, kind, where)
+    found = Found(table, columns, body, totals, layout, kind, where)
     records, notes, cautions = _records(found, answers)
+    solar = add_generation([record for record, _ in records], found, answers)
     unit, unit_note = unit_of(
         columns, body, (suffix for _, suffix in records),
         said=answers.unit, fuel=fuel, where=where,
@@ -73,23 +75,10 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
         (
             *_sheet_note(table), f"header on line {columns.line}", f"fuel: {fuel}", unit_note,
             *described(columns, (*layout.roles, "usage", "cost", _mark(kind), "temperature")),
-            *usage_notes, *notes, *remark_notes, *other_notes,
+            *usage_notes, *notes, *solar.notes, *remark_notes, *other_notes,
         ),
-        cautions,
+        cautions, sent=solar.sent, generation=solar.generation,
     )  # fmt: skip
-
-
-@dataclass(frozen=True, slots=True)
-class _Found:
-    """What is known of the file once its layout is settled."""
-
-    table: RawTable
-    columns: Columns
-    body: Sequence[RawRow]
-    totals: Sequence[int]
-    layout: Layout
-    kind: Kind
-    where: str
 
 
 def _sheet_note(table: RawTable) -> tuple[str, ...]:
@@ -108,7 +97,7 @@ def _kind_of(columns: Columns, fuel: str) -> Kind:
 
 
 def _records(
-    found: _Found, answers: Answers
+    found: Found, answers: Answers
 ) -> tuple[list[tuple[Record, str]], tuple[str, ...], tuple[str, ...]]:
     """Each bill line's record with what stood behind its number; sentences; cautions."""
     columns, body = found.columns, found.body
@@ -153,7 +142,7 @@ def _records(
 
 
 def _months_named(
-    written: Sequence[tuple[Written, Written]], found: _Found, answers: Answers
+    written: Sequence[tuple[Written, Written]], found: Found, answers: Answers
 ) -> list[tuple[int, int] | None] | None:
     """(year, month) of each line of a file that names months only; asks for the reading day.
 
@@ -179,7 +168,7 @@ def _is_first(written: Written) -> bool:
 
 
 def _difference(
-    records: Sequence[Record], found: _Found, answers: Answers, decimal: Decimal
+    records: Sequence[Record], found: Found, answers: Answers, decimal: Decimal
 ) -> tuple[str, ...]:
     """Readings of the meter become use."""
     columns = found.columns
@@ -209,7 +198,7 @@ def _put_numbers(record: Record, row: RawRow, columns: Columns, decimal: Decimal
     return suffix
 
 
-def _put_marks(records: Sequence[Record], found: _Found) -> tuple[str, ...]:
+def _put_marks(records: Sequence[Record], found: Found) -> tuple[str, ...]:
     """Estimated readings, or fills not known to be full; returns cautions."""
     delivery = found.kind == "delivery"
     role = "fill" if delivery else "estimated"
@@ -252,7 +241,7 @@ def _put_marks(records: Sequence[Record], found: _Found) -> tuple[str, ...]:
 
 
 def _put_temperature(
-    records: Sequence[Record], found: _Found, answers: Answers, decimal: Decimal
+    records: Sequence[Record], found: Found, answers: Answers, decimal: Decimal
 ) -> None:
     k = found.columns.get("temperature")
     if k is None:
@@ -269,7 +258,7 @@ def _put_temperature(
             record.mean_temp_f = value * 1.8 + 32.0 if celsius else value
 
 
-def _put_periods(records: Sequence[Record], found: _Found, answers: Answers) -> tuple[str, ...]:
+def _put_periods(records: Sequence[Record], found: Found, answers: Answers) -> tuple[str, ...]:
     """Start and end of every record, by the file's layout; returns sentences."""
     name = found.layout.name
     if name == "start and end":
@@ -288,7 +277,11 @@ def _put_periods(records: Sequence[Record], found: _Found, answers: Answers) -> 
             record.start, record.end = record.end, None if record.end is None else record.end + 1
         return ("each line is the use of its day",)
     event: Literal["delivery", "reading"] = "delivery" if found.kind == "delivery" else "reading"
+    tanks = tanks_of(records, found, answers) if found.kind == "delivery" else []
+    open_by_levels(tanks)
     from_dates_alone(records, event)
+    if use_by_levels(tanks):
+        return ("use between deliveries by the levels of the tank",)
     return (f"a bill runs from the {event} before to its own",)
 
 

@@ -488,6 +488,36 @@ CORPUS = [
         [(f"2023-01-{d:02}", f"2023-01-{d + 1:02}", float(d)) for d in range(5, 17)],
         reading=("each line is the use of its day",),
     ),
+    Ugly(
+        "net metering with generation: gross is net and generation",
+        "Start,End,Net usage (kWh),Solar generation (kWh)\n2023-01-05,2023-02-06,-19,100\n"
+        "2023-02-06,2023-03-07,20.5,50\n",
+        JFM,
+        reading=("gross use is net use and column",),
+    ),
+    Ugly(
+        "what came in, what went out and what the panels made",
+        "Start,End,Delivered kWh,Exported kWh,Generation kWh\n2023-01-05,2023-02-06,60,79,100\n"
+        "2023-02-06,2023-03-07,60,39.5,50\n",
+        JFM,
+    ),
+    Ugly(
+        "tank levels make partial fills count",
+        "Delivery date,Gallons delivered,Tank % after\n2022-12-01,100,90\n2023-01-05,50,60\n"
+        "2023-02-06,61,50\n2023-03-07,120.5,75\n",
+        [("2022-12-01", "2023-01-05", 110.0), *[(a, b, u) for a, b, u in JFM]],
+        {"fuel": "heating oil", "tank_size": 200},
+        left_out={2: "opens the record"},
+        reading=("by the levels of the tank",),
+    ),
+    Ugly(
+        "tank levels before the delivery, size in a column",
+        "Delivery date,Gallons,Tank % before,Tank size\n2023-01-05,150,20,200\n"
+        "2023-02-06,40,54.5,200\n2023-03-07,90,39.25,200\n",
+        JFM,
+        {"fuel": "propane"},
+        left_out={2: "opens the record"},
+    ),
 ]
 
 
