@@ -6,6 +6,7 @@ same way as those of any table.
 
 from __future__ import annotations
 
+import csv
 from collections.abc import Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING
@@ -17,8 +18,8 @@ from normalize.weather.degrees import drop_absurd, to_fahrenheit
 from normalize.weather.formats.generic_csv import Readings
 from normalize.weather.formats.generic_days import METHOD_GIVEN, assemble_days, assemble_hours
 from normalize.weather.options import WeatherOptions, ask
-from normalize.weather.source import clean_name
-from normalize.weather.stamps import NO_OFFSET, Stamps
+from normalize.weather.source import clean_name, decode
+from normalize.weather.stamps import NO_DAY, NO_OFFSET, Stamps
 from normalize.weather.words import counted, counts, listed
 
 if TYPE_CHECKING:
@@ -78,7 +79,7 @@ def _readings(
     columns: Sequence[NDArray[np.float64] | None],
     notes: list[str],
 ) -> Readings:
-    if day.size == 0:
+    if not (day != NO_DAY).any():
         raise nothing_in(where)
     offset = np.full_like(day, NO_OFFSET)
     mean, high, low = columns
@@ -99,6 +100,35 @@ def _fahrenheit(
             f"{counts(absurd)} as missing."
         )
     return temp_f
+
+
+def table_of_archive(source: SourceFile, needed: Sequence[str]) -> list[dict[str, str]]:
+    """The rows of a delimited archive file under its header, each with every needed column.
+
+    Repeated headers (files put on end) are passed over; a short row's cells are empty.
+    """
+    reader = csv.DictReader(decode(source).splitlines(), restval="", restkey="")
+    try:
+        names = [name.strip() for name in reader.fieldnames or ()]
+        reader.fieldnames = names
+        lacking = [name for name in needed if name not in names]
+        if lacking:
+            raise UnreadableWeather(
+                f"has no column {' and no column '.join(map(repr, lacking[:3]))}",
+                where=source.name,
+                wanted="the archive's own file, all of its columns",
+                next_step="Download the file again.",
+            )
+        rows = [row for row in reader if row[needed[0]].strip() not in ("", needed[0])]
+    except csv.Error as error:
+        raise UnreadableWeather(
+            f"cannot be read as a table ({error})",
+            where=source.name,
+            next_step="Download the file again.",
+        ) from None
+    if not rows:
+        raise nothing_in(source.name)
+    return rows
 
 
 def nothing_in(where: str) -> UnreadableWeather:

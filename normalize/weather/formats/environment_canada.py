@@ -81,8 +81,7 @@ def _values(
     rows: list[list[str]], at: int, header: list[str], flag: str, notes: list[str]
 ) -> NDArray[np.float64]:
     value = read_numbers([_cell(row, at) for row in rows]).value
-    flag_at = header.index(flag)
-    flags = [_cell(row, flag_at) for row in rows]
+    flags = [_cell(row, header.index(flag)) if flag in header else "" for row in rows]
     value[[f == "M" for f in flags]] = np.nan
     estimated = sum(f == "E" and bool(np.isfinite(v)) for f, v in zip(flags, value, strict=True))
     if estimated:

@@ -13,10 +13,9 @@ from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from normalize.errors import UnreadableWeather
-from normalize.weather.degrees import HOTTEST_F, read_numbers
+from normalize.weather.degrees import HOTTEST_C, HOTTEST_F, read_numbers
 from normalize.weather.formats import Format
-from normalize.weather.formats.archive import nothing_in, one_station
+from normalize.weather.formats.archive import nothing_in, one_station, table_of_archive
 from normalize.weather.formats.ghcn_days import (
     ELEMENTS,
     FROM_GSOD,
@@ -27,7 +26,7 @@ from normalize.weather.formats.ghcn_days import (
     ghcn_days,
 )
 from normalize.weather.options import WeatherOptions, ask
-from normalize.weather.source import clean_name, decode
+from normalize.weather.source import clean_name
 from normalize.weather.stamps import NO_DAY, read_stamps
 from normalize.weather.words import counted, was
 
@@ -50,7 +49,7 @@ def _recognises(head: bytes) -> bool:
 
 
 def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
-    rows = _rows(source)
+    rows = table_of_archive(source, ("STATION", "DATE"))
     station = one_station(sorted({row["STATION"] for row in rows}), source.name, options)
     rows = [row for row in rows if row["STATION"] == station]
     tally = Tally()
@@ -77,21 +76,6 @@ def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
     }
     name = clean_name(rows[0].get("NAME") or "")
     return ghcn_days(source, station, elements, tally, name=name)
-
-
-def _rows(source: SourceFile) -> list[dict[str, str]]:
-    try:
-        rows = list(csv.DictReader(decode(source).splitlines(), restval=""))
-    except csv.Error as error:
-        raise UnreadableWeather(
-            f"cannot be read as a table ({error})",
-            where=source.name,
-            next_step="Download the file again.",
-        ) from None
-    rows = [row for row in rows if row["STATION"]]
-    if not rows:
-        raise nothing_in(source.name)
-    return rows
 
 
 def _apply_flags(value: NDArray[np.float64], cells: list[str], tally: Tally) -> None:
@@ -129,13 +113,14 @@ def _in_tenths(
     tally: Tally,
 ) -> _Tenths:
     values = np.concatenate([v[np.isfinite(v)] for v in columns.values()])
+    if np.abs(values).max() > HOTTEST_F:
+        return _Tenths("tenths")  # as the archive stores them; no °F or °C is so high
     if options.unit is not None:
         return _Tenths(options.unit)
     if (values != np.floor(values)).any():
-        tally.notes.append("Values have decimals, so they are read as whole degrees Celsius.")
-        return _Tenths("C")
-    if np.abs(values).max() > HOTTEST_F:
-        return _Tenths("tenths")  # as the archive stores them; no °F or °C is so high
+        unit = "F" if values.max() > HOTTEST_C else "C"
+        tally.notes.append(f"Values have decimals, so they are degrees and not tenths: °{unit}.")
+        return _Tenths(unit)
     if day.size and int(day.max() - day.min()) >= WHOLE_YEAR:
         tally.notes.append(
             f"No value is above {HOTTEST_F:.0f} in most of a year, which tenths of a °C would be: "

@@ -6,17 +6,20 @@ missing is 9999.9; "*" beside MAX or MIN says that it was derived from the hours
 
 from __future__ import annotations
 
-import csv
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from normalize.errors import UnreadableWeather
 from normalize.weather.degrees import read_numbers
 from normalize.weather.formats import Format
-from normalize.weather.formats.archive import days_of_archive, nothing_in, one_station
+from normalize.weather.formats.archive import (
+    days_of_archive,
+    nothing_in,
+    one_station,
+    table_of_archive,
+)
 from normalize.weather.hours import MIN_HOURS
-from normalize.weather.source import clean_name, decode
+from normalize.weather.source import clean_name
 from normalize.weather.stamps import read_stamps
 from normalize.weather.words import counted, counts
 
@@ -38,17 +41,7 @@ def _recognises(head: bytes) -> bool:
 
 
 def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
-    try:
-        rows = list(csv.DictReader(decode(source).splitlines(), restval=""))
-    except csv.Error as error:
-        raise UnreadableWeather(
-            f"cannot be read as a table ({error})",
-            where=source.name,
-            next_step="Download the file again.",
-        ) from None
-    rows = [row for row in rows if row["STATION"] and row["STATION"] != "STATION"]
-    if not rows:
-        raise nothing_in(source.name)
+    rows = table_of_archive(source, _NEEDED)
     station = one_station(sorted({row["STATION"] for row in rows}), source.name, options)
     rows = [row for row in rows if row["STATION"] == station]
     notes = [GMT_DAYS]
@@ -75,5 +68,8 @@ def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
 
 
 _COLUMNS: Final = ("TEMP", "MAX", "MIN")
+_NEEDED: Final = (
+    "STATION", "DATE", *_COLUMNS, "TEMP_ATTRIBUTES", "MAX_ATTRIBUTES", "MIN_ATTRIBUTES"
+)  # fmt: skip
 
 FORMAT = Format(name="global summary of the day", recognises=_recognises, read_days=_read_days)

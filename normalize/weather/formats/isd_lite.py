@@ -30,21 +30,32 @@ MISSING: Final = -9999
 
 def _recognises(head: bytes) -> bool:
     lines = head.splitlines()
-    return bool(lines) and all(_LINE.match(line) for line in lines[:2])
+    return bool(lines) and all(_hour(line) for line in lines[:2])
+
+
+def _hour(line: bytes) -> tuple[int, int, int, int, int] | None:
+    """Year, month, day, hour and temperature of a line, or None where it is none."""
+    match = _LINE.match(line)
+    if match is None:
+        return None
+    try:
+        year, month, day, hour, temp = (int(part) for part in match.groups())
+    except ValueError:
+        return None
+    if not (1 <= month <= 12 and 1 <= day <= 31 and hour <= 23):
+        return None
+    return year, month, day, hour, temp
 
 
 def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
     text, hours, temps, bad = [], [], [], []
     for number, line in enumerate(source.data.splitlines(), start=1):
-        match = _LINE.match(line)
-        if match is None:
+        found = _hour(line)
+        if found is None:
             if line.strip():
                 bad.append(number)
             continue
-        year, month, day, hour, temp = (int(part) for part in match.groups())
-        if not (1 <= month <= 12 and 1 <= day <= 31 and hour <= 23):
-            bad.append(number)
-            continue
+        year, month, day, hour, temp = found
         text.append((year, month, day))
         hours.append(hour)
         temps.append(temp)

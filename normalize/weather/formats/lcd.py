@@ -7,13 +7,11 @@ estimated one, "M" or a blank a missing one (memory).
 
 from __future__ import annotations
 
-import csv
 import re
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
 
-from normalize.errors import UnreadableWeather
 from normalize.weather.degrees import read_numbers
 from normalize.weather.formats import Format
 from normalize.weather.formats.archive import (
@@ -21,8 +19,8 @@ from normalize.weather.formats.archive import (
     hours_of_archive,
     nothing_in,
     one_station,
+    table_of_archive,
 )
-from normalize.weather.source import decode
 from normalize.weather.stamps import read_stamps
 from normalize.weather.words import counted, counts
 
@@ -46,17 +44,7 @@ def _recognises(head: bytes) -> bool:
 
 
 def _read_days(source: SourceFile, options: WeatherOptions) -> DailyTemperature:
-    try:
-        rows = list(csv.DictReader(decode(source).splitlines(), restval=""))
-    except csv.Error as error:
-        raise UnreadableWeather(
-            f"cannot be read as a table ({error})",
-            where=source.name,
-            next_step="Download the file again.",
-        ) from None
-    rows = [row for row in rows if row["STATION"] and row["STATION"] != "STATION"]
-    if not rows:
-        raise nothing_in(source.name)
+    rows = table_of_archive(source, ("STATION", "DATE", "REPORT_TYPE"))
     station = one_station(sorted({row["STATION"] for row in rows}), source.name, options)
     rows = [row for row in rows if row["STATION"] == station]
     daily = [

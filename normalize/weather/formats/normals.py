@@ -7,7 +7,6 @@ values: -7777 is more than nothing that rounds to 0, others below -5000 are miss
 
 from __future__ import annotations
 
-import csv
 import re
 from typing import TYPE_CHECKING, Final
 
@@ -16,8 +15,9 @@ import numpy as np
 from normalize.errors import UnreadableWeather
 from normalize.weather.estimate import estimated_year
 from normalize.weather.formats import Format
+from normalize.weather.formats.archive import table_of_archive
 from normalize.weather.published import MIN_BASES, Published, year_of_published
-from normalize.weather.source import clean_name, decode
+from normalize.weather.source import clean_name
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -69,15 +69,7 @@ def _read_year(source: SourceFile) -> LongTermYear:
 
 
 def _rows(source: SourceFile) -> list[dict[str, str]]:
-    try:
-        rows = list(csv.DictReader(decode(source).splitlines(), restval=""))
-    except csv.Error as error:
-        raise UnreadableWeather(
-            f"cannot be read as a table ({error})",
-            where=source.name,
-            next_step="Download the file again.",
-        ) from None
-    rows = [row for row in rows if (row.get("STATION") or "").strip()]
+    rows = table_of_archive(source, ("STATION",))
     if len({row["STATION"] for row in rows}) != 1:
         raise UnreadableWeather(
             "holds no station, or several",
