@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any, Final
 
 import click
 
@@ -12,9 +12,78 @@ from normalize.cli.options import FILE, STDOUT, json_option, write_json
 from normalize.cli.tables import paragraph, table
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from normalize.bills.periods import Bills
 
 LEFT_OUT = "left out"
+MOST_PERIODS: Final = 60  # shown from either end of a long record
+MOST_ENTRIES: Final = 200
+
+# Options that answer what a file leaves open; the same keys under [[account]] keep the answers.
+ANSWERS: Final = (
+    click.option("--fuel", metavar="NAME", help="Where the file does not say: natural gas, …"),
+    click.option("--unit", metavar="NAME", help="Where the file does not say: therm, kWh, gal, …"),
+    click.option(
+        "--dates",
+        type=click.Choice(["month first", "day first", "year first"]),
+        help="The order of dates such as 01/02/2023.",
+    ),
+    click.option(
+        "--end-dates",
+        type=click.Choice(["exclusive", "inclusive"]),
+        help="Whether an end date is the day of the reading or the last day of the bill.",
+    ),
+    click.option("--start-column", metavar="NAME", help="The column in which a bill starts."),
+    click.option("--end-column", metavar="NAME", help="The column of ends or of readings."),
+    click.option("--days-column", metavar="NAME", help="The column of days."),
+    click.option("--usage-column", metavar="NAME", help="The column of use."),
+    click.option("--register-column", metavar="NAME", help="The column of meter readings."),
+    click.option("--generation-column", metavar="NAME", help="What solar panels made, or none."),
+    click.option("--cost-column", metavar="NAME", help="The column of cost."),
+    click.option("--estimated-column", metavar="NAME", help="The column that marks estimates."),
+    click.option("--temperature-column", metavar="NAME", help="The column of mean temperature."),
+    click.option(
+        "--temperature-unit", type=click.Choice(["F", "C"]), help="The unit of that column."
+    ),
+    click.option("--sheet", metavar="NAME", help="The sheet of a workbook."),
+    click.option(
+        "--kind", type=click.Choice(["meter", "delivery"]), help="Readings or deliveries."
+    ),
+    click.option("--rows", metavar="NAME", help="Which account, meter or fuel, where several."),
+    click.option(
+        "--decimal", type=click.Choice(["point", "comma"]), help="How decimals are written."
+    ),
+    click.option(
+        "--read-day",
+        metavar="DAY",
+        help="For bills that name a month: the day on which the meter is read, or calendar.",
+    ),
+    click.option(
+        "--time-zone",
+        metavar="ZONE",
+        help="Where readings are in UTC: America/New_York or -05:00.",
+    ),
+    click.option("--sum-to", type=click.Choice(["day", "month"]), help="For interval data."),
+    click.option(
+        "--interval-times",
+        type=click.Choice(["start", "end"]),
+        help="Whether a time is the start or the end of its interval.",
+    ),
+    click.option("--multiplier", type=float, help="Of the meter whose readings are given."),
+    click.option("--tank-size", type=float, help="What the full tank holds."),
+    click.option(
+        "--tank-percent",
+        type=click.Choice(["before", "after"]),
+        help="Whether levels of the tank are before or after the delivery.",
+    ),
+)
+
+
+def _answers(command: Callable[..., Any]) -> Callable[..., Any]:
+    for option in reversed(ANSWERS):
+        command = option(command)
+    return command
 
 
 @click.command(
@@ -23,31 +92,20 @@ LEFT_OUT = "left out"
     short_help="How a file of bills was understood and repaired.",
 )
 @click.argument("file", type=FILE)
-@click.option("--fuel", metavar="NAME", help="Where the file does not say: natural gas, …")
-@click.option("--unit", metavar="NAME", help="Where the file does not say: therm, kWh, gal, …")
-@click.option(
-    "--dates",
-    type=click.Choice(["month first", "day first", "year first"]),
-    help="The order of dates such as 01/02/2023.",
-)
-@click.option(
-    "--end-dates",
-    type=click.Choice(["exclusive", "inclusive"]),
-    help="Whether an end date is the day of the reading or the last day of the bill.",
-)
-@click.option("--start-column", metavar="NAME", help="The column in which a bill starts.")
-@click.option("--end-column", metavar="NAME", help="The column of ends or of readings.")
-@click.option("--days-column", metavar="NAME", help="The column of days.")
-@click.option("--usage-column", metavar="NAME", help="The column of use.")
-@click.option("--cost-column", metavar="NAME", help="The column of cost.")
-@click.option("--estimated-column", metavar="NAME", help="The column that marks estimates.")
-@click.option("--temperature-column", metavar="NAME", help="The column of mean temperature.")
-@click.option("--temperature-unit", type=click.Choice(["F", "C"]), help="The unit of that column.")
-@click.option("--sheet", metavar="NAME", help="The sheet of a workbook.")
-@click.option("--kind", type=click.Choice(["meter", "delivery"]), help="Readings or deliveries.")
+@_answers
 @click.option("--net-metered", is_flag=True, help="Use may be below zero (solar panels).")
-@click.option("--rows", metavar="NAME", help="Which account, meter or fuel, where several.")
-@click.option("--decimal", type=click.Choice(["point", "comma"]), help="How decimals are written.")
+@click.option(
+    "--picture",
+    "picture_to",
+    metavar="FILE",
+    type=FILE,
+    help="Also draw the bills on a time line, repairs marked, as SVG to a new FILE.",
+)
+@click.option(
+    "--expect-total",
+    metavar="USE",
+    help="Check the sum of use against a total that is printed elsewhere.",
+)
 @click.option(
     "--write",
     "write_to",
@@ -58,27 +116,15 @@ LEFT_OUT = "left out"
 @json_option
 def command(
     file: Path,
-    fuel: str | None,
-    unit: str | None,
-    dates: str | None,
-    end_dates: str | None,
-    start_column: str | None,
-    end_column: str | None,
-    days_column: str | None,
-    usage_column: str | None,
-    cost_column: str | None,
-    estimated_column: str | None,
-    temperature_column: str | None,
-    temperature_unit: str | None,
-    sheet: str | None,
-    kind: str | None,
+    *,
     net_metered: bool,
-    rows: str | None,
-    decimal: str | None,
+    picture_to: Path | None,
+    expect_total: str | None,
     write_to: Path | None,
     json_to: str | None,
+    **answers: Any,
 ) -> None:
-    """Show how FILE (CSV or XLSX) was understood: its periods, and what became of every bill.
+    """Show how FILE (CSV, XLSX or ESPI XML) was understood: periods, and the fate of every bill.
 
     Options answer what the file leaves open; in site.toml they are keys of [[account]], with _
     for -.
@@ -86,39 +132,45 @@ def command(
     from normalize.bills.read import read_bills
 
     with patience():
-        bills = read_bills(
-            file,
-            fuel=fuel,
-            unit=unit,
-            account=file.stem,
-            dates=dates,
-            end_dates=end_dates,
-            usage_column=usage_column,
-            start_column=start_column,
-            end_column=end_column,
-            days_column=days_column,
-            cost_column=cost_column,
-            estimated_column=estimated_column,
-            temperature_column=temperature_column,
-            temperature_unit=temperature_unit,
-            sheet=sheet,
-            kind=kind,
-            net_metered=net_metered,
-            rows=rows,
-            decimal=decimal,
-        )
+        bills = read_bills(file, account=file.stem, net_metered=net_metered, **answers)
     if write_to is not None:
         from normalize.bills.write import write_periods
 
         write_periods(bills, write_to)
+    if picture_to is not None:
+        from normalize.report.figure_bills import write_bills_figure
+
+        write_bills_figure(bills, picture_to)
     if json_to is not None:
         write_json(to_json(bills), json_to, inputs=(file,))
     if json_to != STDOUT:
-        show(to_text(bills))
+        show(to_text(bills, keep=lines_to_keep(answers, net_metered=net_metered)))
+    if expect_total is not None:
+        from normalize.bills.totals import check_total
+
+        said = check_total(bills, expect_total)
+        if json_to != STDOUT:
+            show(f"\n{said}")
 
 
-def to_text(bills: Bills) -> str:
-    """What was read, the periods, and the rows that did not simply become one."""
+def lines_to_keep(answers: dict[str, Any], *, net_metered: bool) -> list[str]:
+    """The lines of site.toml that keep the answers given as options."""
+    lines = []
+    for key, value in answers.items():
+        if value is None:
+            continue
+        number = isinstance(value, float) or (key == "read_day" and str(value).isdigit())
+        text = f"{value:g}" if isinstance(value, float) else str(value)
+        quoted = text.replace("\\", "\\\\").replace('"', '\\"')
+        lines.append(f"{key} = {text}" if number else f'{key} = "{quoted}"')
+    return [*lines, "net_metered = true"] if net_metered else lines
+
+
+def to_text(bills: Bills, *, keep: list[str] | None = None) -> str:
+    """What was read, the periods, and the rows that did not simply become one.
+
+    keep : lines of site.toml that keep the answers.
+    """
     from normalize.report.numbers import mask
 
     blocks = [
@@ -126,10 +178,22 @@ def to_text(bills: Bills) -> str:
         "How the file was understood:\n"
         + "\n".join(paragraph(mask(f"{text}."), indent="  ") for text in bills.reading),
         _periods(bills),
+        *([paragraph(f"Unfit for this method: {bills.unfit}")] if bills.unfit else []),
         *(f"Caution: {paragraph(mask(text))}" for text in bills.cautions),
         _ledger(bills),
     ]
+    if keep:
+        lines = "\n".join(f"  {mask(line)}" for line in keep)
+        blocks.append(f"To keep these answers, put them under [[account]] in site.toml:\n{lines}")
     return "\n\n".join(blocks)
+
+
+def _marks(bills: Bills, i: int) -> str:
+    p = bills.periods
+    words = [f"{int(p.joined[i])} bills joined"] if p.joined[i] > 1 else []
+    words += ["ends on an estimate"] if p.estimated[i] else []
+    flags = [f.what for f in bills.flags if f.period == i + 1 and f.what != "alternating"]
+    return ", ".join([*words, *dict.fromkeys(f"{what}?" for what in flags)])
 
 
 def _periods(bills: Bills) -> str:
@@ -137,17 +201,6 @@ def _periods(bills: Bills) -> str:
     from normalize.report.numbers import plain
 
     p = bills.periods
-    marks = [
-        ", ".join(
-            word
-            for word, holds in (
-                (f"{int(p.joined[i])} bills joined", p.joined[i] > 1),
-                ("ends on an estimate", p.estimated[i]),
-            )
-            if holds
-        )
-        for i in range(p.n)
-    ]
     rows = [
         [
             str(i + 1),
@@ -157,10 +210,13 @@ def _periods(bills: Bills) -> str:
             plain(float(p.use[i]), 1),
             plain(float(p.use[i] / p.days[i]), 2),
             plain(float(p.cost[i]), 2),
-            marks[i],
+            _marks(bills, i),
         ]
         for i in range(p.n)
     ]
+    if len(rows) > 2 * MOST_PERIODS:
+        gap = [["…", "", "", "", "", "", "", f"{len(rows) - 2 * MOST_PERIODS} more"]]
+        rows = rows[:MOST_PERIODS] + gap + rows[-MOST_PERIODS:]
     head = ["period", "start", "end", "days", bills.unit, "a day", "cost", ""]
     days, use = int(p.days.sum()), plain(float(p.use.sum()), 1)
     return f"{table(head, rows, left=3)}\n\n{p.n} periods, {days} days, {use} {bills.unit}"
@@ -174,7 +230,11 @@ def _ledger(bills: Bills) -> str:
     count = f"{len(bills.rows)} rows, {len(left_out)} of them left out"
     if not noted:
         return f"Ledger: {count}; every row became a period as it was."
+    more = len(noted) - MOST_ENTRIES
+    noted = noted[:MOST_ENTRIES]
     lines = [paragraph(mask(f"{e.file}:{e.line}: {e.fate}: {e.note}"), indent="  ") for e in noted]
+    if more > 0:
+        lines.append(f"  … and {more} more; --json writes all of them.")
     return f"Ledger: {count}. What was done:\n" + "\n".join(lines)
 
 
@@ -211,6 +271,8 @@ def to_json(bills: Bills) -> str:
         "periods": periods,
         "ledger": ledger,
         "cautions": list(bills.cautions),
+        "flags": [{"period": f.period, "what": f.what, "note": f.note} for f in bills.flags],
+        "unfit": bills.unfit or None,
         "source": [{"file": name, "sha256": digest} for name, digest in bills.source],
     }
     return json.dumps(whole, indent=2, ensure_ascii=False, allow_nan=False)

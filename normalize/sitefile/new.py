@@ -7,7 +7,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Final
 
-from normalize.bills.write import TEMPLATE, write_template
+from normalize.bills.write import write_template, write_template_workbook
 from normalize.errors import SiteError, UnwritableReport
 
 SITE_TEXT: Final = """\
@@ -35,6 +35,9 @@ bills = "bills.csv"
 # price = 1.32                     # what one more unit costs, without the fixed charge
 # occupied_since = 2021-06-01      # leave out the bills of whoever lived there before
 # space_heating = false            # for an account that heats only water
+# net_metered = true               # for solar panels whose surplus goes to the grid
+# Where the bills leave something open, `normalize bills FILE` asks, and names the line to put
+# here: dates = "day first", read_day = 5, time_zone = "America/New_York", tank_size = 275 …
 
 # The work: first and last day, or only the month, start = "2023-09".
 [[upgrade]]
@@ -75,7 +78,7 @@ def write_new_site(folder: str | os.PathLike[str]) -> tuple[Path, ...]:
     writers: dict[str, Callable[[Path], None]] = {
         "site.toml": lambda path: _write_text(path, SITE_TEXT),
         "bills.csv": write_template,
-        "bills.xlsx": _write_workbook,
+        "bills.xlsx": write_template_workbook,
         "README.txt": lambda path: _write_text(path, README_TEXT),
     }
     if folder.exists() and not folder.is_dir():
@@ -101,15 +104,3 @@ def write_new_site(folder: str | os.PathLike[str]) -> tuple[Path, ...]:
 def _write_text(path: Path, text: str) -> None:
     with path.open("x", encoding="utf-8", newline="") as file:
         file.write(text)
-
-
-def _write_workbook(path: Path) -> None:
-    from openpyxl import Workbook
-
-    book = Workbook(write_only=True)
-    sheet = book.create_sheet("bills")
-    for letter in "ABCDEF":
-        sheet.column_dimensions[letter].width = 14
-    sheet.append(list(TEMPLATE))
-    with path.open("xb") as file:
-        book.save(file)

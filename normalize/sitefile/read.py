@@ -58,6 +58,17 @@ def _hours(table: Table, key: str) -> object:
     return table.number(key, low=-14.0, high=14.0, unit="hours")
 
 
+def _read_day(table: Table, key: str) -> object:
+    """A day of the month, or "calendar"."""
+    if isinstance(table.values.get(key), str):
+        return table.text(key)
+    return table.whole(key, low=1, high=31, unit="day of the month")
+
+
+def _above_zero(table: Table, key: str) -> object:
+    return table.number(key, low=1e-9, high=1e9, unit="above zero")
+
+
 # Answers to the readers' questions: passed on as their keywords, under the same names.
 BILL_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "dates": Table.text,
@@ -69,11 +80,20 @@ BILL_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "cost_column": Table.text,
     "estimated_column": Table.text,
     "temperature_column": Table.text,
+    "register_column": Table.text,
+    "generation_column": Table.text,
     "temperature_unit": Table.text,
     "sheet": Table.text,
     "kind": Table.text,
     "rows": Table.text,
     "decimal": Table.text,
+    "read_day": _read_day,
+    "time_zone": Table.text,
+    "sum_to": Table.text,
+    "interval_times": Table.text,
+    "multiplier": _above_zero,
+    "tank_size": _above_zero,
+    "tank_percent": Table.text,
 }
 WEATHER_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "unit": Table.text,

@@ -3,14 +3,22 @@
 from __future__ import annotations
 
 import csv
+from datetime import date
 from pathlib import Path
 
 import pytest
 
 from normalize.bills.read import read_bills
-from normalize.bills.write import safe_text, write_periods, write_template
+from normalize.bills.totals import check_total
+from normalize.bills.write import (
+    TEMPLATE,
+    safe_text,
+    write_periods,
+    write_template,
+    write_template_workbook,
+)
 from normalize.days import iso
-from normalize.errors import UnwritableReport
+from normalize.errors import BillError, NoBills, UnwritableReport
 
 
 def test_template_filled_in_reads_back(tmp_path: Path) -> None:
@@ -75,3 +83,68 @@ def test_no_cell_acts_as_a_formula(text: str) -> None:
 @pytest.mark.parametrize("text", ["", "gas", "2023-01-05", "a=b"])
 def test_plain_text_is_untouched(text: str) -> None:
     assert safe_text(text) == text
+
+
+def test_template_workbook_is_the_same_bytes_and_reads_back(tmp_path: Path) -> None:
+    from openpyxl import load_workbook
+
+    one, two = tmp_path / "one.xlsx", tmp_path / "two.xlsx"
+    write_template_workbook(one)
+    write_template_workbook(two)
+    assert one.read_bytes() == two.read_bytes()
+    book = load_workbook(one)
+    assert book.sheetnames == ["bills", "help"]
+    sheet = book["bills"]
+    checks = {str(v.sqref): v.type for v in sheet.data_validations.dataValidation}
+    assert checks["A2:A1000 B2:B1000"] == "date"
+    assert sorted(checks.values()) == ["date", "decimal", "list", "list"]
+    helped = [row[0].value for row in book["help"].iter_rows(min_row=2)]
+    assert helped == list(TEMPLATE)
+    lines = [
+        [date(2023, 1, 5), date(2023, 2, 6), 81, "therm", 95.1, "yes"],
+        [date(2023, 2, 6), date(2023, 3, 7), 70.5, "therm", 88, None],
+        [date(2023, 3, 7), date(2023, 4, 6), 60, "therm", None, "no"],
+    ]
+    for number, line in enumerate(lines, start=2):
+        for column, value in enumerate(line, start=1):
+            sheet.cell(number, column, value)
+    book.save(two)
+    bills = read_bills(two)
+    assert bills.periods.use.tolist() == [151.5, 60.0]
+    assert bills.unit == "therm"
+    assert len(bills.rows) == 3
+
+
+def test_empty_templates_ask_for_bills(tmp_path: Path) -> None:
+    write_template(tmp_path / "a.csv")
+    write_template_workbook(tmp_path / "a.xlsx")
+    for name in ("a.csv", "a.xlsx"):
+        with pytest.raises(NoBills, match="no bill beneath"):
+            read_bills(tmp_path / name)
+
+
+TYPED = "Start,End,Therms\n2023-01-05,2023-02-06,81\n2023-02-06,2023-03-07,70.5\n"
+
+
+@pytest.mark.parametrize(
+    ("text", "expected", "words"),
+    [
+        (TYPED, "151.5", None),
+        (TYPED, "152", None),  # right to half of its last digit
+        (TYPED, "1,151.5", "1,000 less than"),
+        (TYPED, "88.5", "Line 2 (to 2023-02-06) has 81: should it be 18?"),
+        (TYPED + "2023-03-99,2023-03-06,9\n", "160.5", "Line 4, which was left out"),
+        (TYPED, "81", "is it there twice"),
+        (TYPED, "much", "not a number"),
+    ],
+)
+def test_expected_total(text: str, expected: str, words: str | None, tmp_path: Path) -> None:
+    file = tmp_path / "typed.csv"
+    file.write_text(text)
+    bills = read_bills(file)
+    if words is None:
+        assert "as expected" in check_total(bills, expected)
+    else:
+        with pytest.raises(BillError) as said:
+            check_total(bills, expected)
+        assert words in str(said.value)

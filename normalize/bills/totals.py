@@ -1,0 +1,73 @@
+"""Typed bills against a total that is printed elsewhere.
+
+What belongs here: the comparison, and where to look first when it fails.
+"""
+
+from __future__ import annotations
+
+from normalize.bills.amounts import number_of, split_amount
+from normalize.bills.periods import Bills
+from normalize.days import iso
+from normalize.errors import BillError
+
+
+def check_total(bills: Bills, expected: str) -> str:
+    """A sentence when use adds up to ``expected``.  Raises BillError, with what may be wrong.
+
+    expected : as printed; it is right to half of its last digit.
+    """
+    wanted = number_of(expected, "point")
+    if wanted is None or abs(wanted) > 1e15:
+        raise BillError(
+            f"the expected total {expected[:30]!r} is not a number", wanted="one such as 1074.8"
+        )
+    total = float(bills.periods.use.sum())
+    unit = bills.unit
+    if abs(total - wanted) <= _half_digit(expected) + 1e-9 * abs(wanted):
+        return f"The bills add up to {total:,.10g} {unit}, as expected."
+    gap = total - wanted
+    raise BillError(
+        f"the bills add up to {total:,.10g} {unit}, {abs(gap):,.6g} "
+        f"{'more' if gap > 0 else 'less'} than the {wanted:,.10g} expected",
+        where=bills.source[0][0] if bills.source else "",
+        next_step=_where_to_look(bills, gap),
+    )
+
+
+def _half_digit(text: str) -> float:
+    amount = split_amount(text)
+    decimals = len(amount.body.partition(".")[2]) if amount is not None else 0
+    return 0.5 * 10.0**-decimals
+
+
+def _where_to_look(bills: Bills, gap: float) -> str:
+    close = 1e-6 * max(1.0, abs(gap))
+    left_out = {e.line for e in bills.ledger if e.fate == "left out"}
+    for row in bills.rows:
+        use = row.use or 0.0
+        if row.line in left_out and abs(use + gap) <= close:
+            return f"Line {row.line}, which was left out, has just that use."
+        if row.line not in left_out and abs(use - gap) <= close and use:
+            return f"Line {row.line} has just that use: is it there twice?"
+    if left_out:
+        return f"{len(left_out)} lines were left out: the ledger says why."
+    swapped = _digits_swapped(bills, gap)
+    if swapped:
+        return swapped
+    return f"Compare the {len(bills.rows)} bills with their paper."
+
+
+def _digits_swapped(bills: Bills, gap: float) -> str:
+    """Two neighbouring digits the wrong way round: bookkeepers' rule of nine."""
+    for row in bills.rows:
+        text = f"{row.use or 0.0:.10g}"
+        for k in range(len(text) - 1):
+            other = text[:k] + text[k + 1] + text[k] + text[k + 2 :]
+            try:
+                apart = (row.use or 0.0) - float(other)
+            except ValueError:
+                continue
+            if apart and abs(apart - gap) <= 1e-6 * max(1.0, abs(gap)):
+                when = f" (to {iso(row.end)})" if row.end is not None else ""
+                return f"Line {row.line}{when} has {text}: should it be {other}?"
+    return ""
