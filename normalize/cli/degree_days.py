@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Final
 
 import click
 
@@ -13,6 +13,7 @@ from normalize.cli.options import FILE, STDOUT, json_option, write_json
 from normalize.cli.tables import paragraph, table
 
 if TYPE_CHECKING:
+    from normalize.bills.periods import Periods
     from normalize.weather.degree_days import Base, DegreeDayRow, DegreeDayTable
     from normalize.weather.temperature import DailyTemperature
 
@@ -186,13 +187,43 @@ def _tables(
 def _by_bill(
     weather: DailyTemperature, bases: Sequence[Base], method: str, bills: Path
 ) -> list[DegreeDayTable]:
-    from normalize.bills.read import read_bills
     from normalize.weather.degree_days import bill_degree_days
 
-    periods = read_bills(bills).periods
+    periods = bill_periods(bills)
     return [
         bill_degree_days(weather, periods.start, periods.end, base, method=method) for base in bases
     ]
+
+
+# What a bill file may be about, where it does not say and only its days matter.
+_FUELS: Final = (
+    ("electricity", "kWh"),
+    ("natural gas", "therm"),
+    ("heating oil", "gallon"),
+    ("propane", "gallon"),
+)
+
+
+def bill_periods(file: Path) -> Periods:
+    """The periods of a bill file, of which only the days matter here.
+
+    A file that does not say its fuel or unit is read as whichever it can be, since nothing of
+    the use is shown; where none fits, its own first question is asked.
+    """
+    from normalize.bills.read import read_bills
+    from normalize.errors import AmbiguousBills, BillError, UnknownUnit
+
+    try:
+        return read_bills(file).periods
+    except (AmbiguousBills, UnknownUnit) as error:
+        first = error
+    for fuel, unit in _FUELS:
+        for stated in (None, unit):
+            try:
+                return read_bills(file, fuel=fuel, unit=stated).periods
+            except BillError:
+                continue
+    raise first
 
 
 def to_text(

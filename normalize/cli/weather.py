@@ -187,9 +187,9 @@ def _span(bills: Path | None, first: str | None, last: str | None) -> tuple[int,
     from normalize.days import day_of, day_of_iso
 
     if bills is not None:
-        from normalize.bills.read import read_bills
+        from normalize.cli.degree_days import bill_periods
 
-        periods = read_bills(bills).periods
+        periods = bill_periods(bills)
         return int(periods.start.min()), int(periods.end.max())
     try:
         end = day_of_iso(last) + 1 if last else day_of(datetime.now(UTC).date())

@@ -21,7 +21,9 @@ name = "My house"
 [weather]
 observed = "station.csv"           # daily or hourly temperatures of the nearest good station
 long_term = { years = 10 }         # a normal year is the mean of so many whole years
-# long_term = { file = "typical_year.epw" }    # or a typical-year file
+# long_term = { file = "typical_year.epw" }    # or a typical-year file, or published normals
+# neighbour = "second.csv"         # a station near by, to fill gaps from
+# also = ["second.csv"]            # for --sensitivity: other stations to try
 # unit = "F"                       # only if the file does not say it
 
 # One [[account]] for each fuel. Bills need the day on which the meter was read (or the first

@@ -130,7 +130,8 @@ def test_unit_conversion_at_the_same_base_is_exact() -> None:
 def test_no_rescaling_reproduces_ephrata() -> None:
     """WRCC, Ephrata WA: 5859/4606/3925/3500/2540 at 65/60/57/55/50 °F.
 
-    Neither scaling by the base nor by a constant share gives the others: each is summed anew.
+    Neither scaling by the base, nor 365 a degree, nor another station's shares give the others
+    within 3 %: each is summed anew.
     """
     published = {65: 5859, 60: 4606, 57: 3925, 55: 3500, 50: 2540}
     slopes = [
@@ -141,6 +142,10 @@ def test_no_rescaling_reproduces_ephrata() -> None:
     for base, value in published.items():
         if base != 65:
             assert abs(published[65] * base / 65 - value) > 0.03 * value
+            assert abs(published[65] - 365 * (65 - base) - value) > 0.03 * value
+    # Another station's share (Lebanon, NH, normals 1991-2020) is no help either.
+    for base, other in ((60, 5991.6), (57, 5264.1), (55, 4806.6), (50, 3761.0)):
+        assert abs(published[65] * other / 7333.4 - published[base]) > 0.03 * published[base]
 
 
 def test_methods_that_differ_are_flagged() -> None:
