@@ -446,6 +446,16 @@ def canonical_unit(text: str, fuel: str | None, *, where: str = "") -> str:
     return unit
 
 
+def is_unit(text: str) -> bool:
+    """Whether the text is a unit, or a word that the trade uses for two units.
+
+    >>> is_unit("Therms"), is_unit("MBtu"), is_unit("bananas")
+    (True, True, False)
+    """
+    word = _squeeze(text)
+    return word in _UNIT_OF or word in _QUESTION_OF
+
+
 def _usual_units(fuel: Fuel | None) -> str:
     """The units that bills of the fuel use, its default first, for a message."""
     rare = {"Btu", "J", "Wh", "GWh", "MMcf"}

@@ -74,11 +74,29 @@ def find_columns(table: RawTable, named: dict[str, str]) -> tuple[Columns, tuple
             next_step="Add one, or name the columns with end_column and usage_column.",
         )
     header = head[at]
-    headings = tuple(take_apart(as_text(c)) for c in header.cells)
+    above = head[at - 1] if at else None
+    headings = tuple(take_apart(text) for text in _heading_texts(header, above))
     body = table.rows[at + 1 :]
     columns = Columns(header.line, headings)
     columns = _assign(columns, body)
     return _apply_names(columns, named, table.name), body
+
+
+def _heading_texts(header: RawRow, above: RawRow | None) -> list[str]:
+    """Texts of a header; under merged cells ("Gas" over "Use" and "Cost") with what is above.
+
+    A merged cell has its text in its first column only.
+    """
+    texts = [as_text(c) for c in header.cells]
+    filled = [t for t in texts if t]
+    if above is None or len(set(filled)) == len(filled):
+        return texts
+    over, last = [], ""
+    for k in range(len(texts)):
+        last = as_text(above.cells[k]) if k < len(above.cells) and above.cells[k] else last
+        over.append(last)
+    twice = {t for t in filled if filled.count(t) > 1}
+    return [f"{o} {t}" if t in twice and o else t for o, t in zip(over, texts, strict=True)]
 
 
 def _assign(columns: Columns, body: Sequence[RawRow]) -> Columns:

@@ -14,8 +14,7 @@ from functools import lru_cache
 from normalize.bills.amounts import as_text
 from normalize.bills.table import Cell
 from normalize.bills.vocabulary import COMPOUNDS, WORDS
-from normalize.errors import UnknownUnit
-from normalize.units import canonical_unit
+from normalize.units import is_unit
 
 _PHRASES = tuple((role, tuple(phrase.split()), weight) for role, phrase, weight in WORDS)
 _STARTS = {"start", "from", "begin", "beginning", "previous", "prior"}
@@ -70,17 +69,10 @@ class Heading:
         return max(roles_of(self).values(), default=0.0)
 
 
-@lru_cache(maxsize=4096)  # an unknown word costs a search for the nearest known one
 def known_unit(text: str) -> bool:
     """Whether the text is a unit, or a word that the trade uses for two units."""
-    if not text or len(text) > 25:
-        return False
-    try:
-        canonical_unit(text, None)
-    except UnknownUnit as err:
-        # A unit with two meanings is still a unit: the question is asked when it is used.
-        return "no unit is called" not in err.found
-    return True
+    # A unit with two meanings is still a unit: the question is asked when it is used.
+    return bool(text) and len(text) <= 25 and is_unit(text)
 
 
 @lru_cache(maxsize=4096)

@@ -11,6 +11,7 @@ from collections.abc import Sequence
 from dataclasses import replace
 
 from normalize.bills.answers import Answers, Understood, answers_of
+from normalize.bills.deliveries import fills_sentence
 from normalize.bills.flag_words import flag_cautions, flags_of
 from normalize.bills.headings import header_score, squeeze
 from normalize.bills.periods import Bills
@@ -139,10 +140,15 @@ def _no_bills(bills: Bills, where: str) -> NoBills:
     reasons = [entry.note for entry in bills.ledger]
     top = max(dict.fromkeys(reasons), key=reasons.count)
     first = bills.ledger[reasons.index(top)]
+    hints = [c for c in bills.cautions if "formula" in c]
+    if bills.kind == "delivery":
+        hints.append(f"For a fit, {fills_sentence(0)} after the first.")
     return NoBills(
         f"none of {len(reasons)} bills can be used"
         if len(reasons) > 1
         else "the one bill there is cannot be used",
         where=where,
-        next_step=f"{reasons.count(top)} because: {top} (first on line {first.line}).",
+        next_step=" ".join(
+            [f"{reasons.count(top)} because: {top} (first on line {first.line}).", *hints]
+        ),
     )

@@ -55,6 +55,7 @@ class RawTable:
 
     name : file name without folder.  sha256 : of the file's bytes.  delimiter : of a CSV,
     empty for a sheet.  sheet : name, empty for a CSV.  epoch_1904 : Excel's other calendar.
+    hidden : rows that the sheet hides.  uncomputed : formulas whose results it does not hold.
     """
 
     name: str
@@ -63,6 +64,8 @@ class RawTable:
     delimiter: str = ""
     sheet: str = ""
     epoch_1904: bool = False
+    hidden: tuple[int, ...] = ()
+    uncomputed: int = 0
 
 
 @dataclass(frozen=True, slots=True)

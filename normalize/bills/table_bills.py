@@ -40,6 +40,7 @@ from normalize.bills.layouts import (
 from normalize.bills.registers import Register, difference
 from normalize.bills.repair import Kind
 from normalize.bills.select import cell, select_rows, without_remarks
+from normalize.bills.sum_rows import several
 from normalize.bills.table import RawRow, RawTable
 from normalize.days import date_of
 from normalize.errors import NoBills
@@ -58,7 +59,10 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
         columns, body, rows=answers.rows, fuel=answers.fuel, unit=answers.unit, where=where
     )
     if not body:
-        raise NoBills("there is a header but no bill beneath it", where=where)
+        raise NoBills(
+            "there is a header but no bill beneath it", where=where,
+            next_step=" ".join(_unseen(table, all_rows)),
+        )  # fmt: skip
     fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
     columns = choose_cost(columns, fuel)
     kind = answers.kind or _kind_of(columns, fuel)
@@ -77,8 +81,26 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
             *described(columns, (*layout.roles, "usage", "cost", _mark(kind), "temperature")),
             *usage_notes, *notes, *solar.notes, *remark_notes, *other_notes,
         ),
-        cautions, sent=solar.sent, generation=solar.generation,
+        (*cautions, *_unseen(table, body)), sent=solar.sent, generation=solar.generation,
     )  # fmt: skip
+
+
+def _unseen(table: RawTable, body: Sequence[RawRow]) -> tuple[str, ...]:
+    """Cautions on what a person who looks at the sheet does not see."""
+    lines = {row.line for row in body}
+    hidden = [line for line in table.hidden if line in lines]
+    said = []
+    if hidden:
+        said.append(
+            f"{several(len(hidden), 'row')} that the sheet hides, read like the others (first on line "
+            f"{hidden[0]})."
+        )
+    if table.uncomputed:
+        said.append(
+            f"{several(table.uncomputed, 'formula')} without a stored result, read as "
+            "empty; open the workbook in a spreadsheet program and save it."
+        )
+    return tuple(said)
 
 
 def _sheet_note(table: RawTable) -> tuple[str, ...]:

@@ -7,6 +7,7 @@ sheet's values.  openpyxl is loaded only when a workbook is read.
 from __future__ import annotations
 
 import io
+import re
 import warnings
 import zipfile
 import zlib
@@ -28,6 +29,10 @@ from normalize.errors import NormalizeError, UnreadableBills
 if TYPE_CHECKING:
     from collections.abc import Iterator
 
+_ROW = re.compile(rb"<row [^>]{0,500}>")
+_HIDDEN = re.compile(rb"hidden=[\"'](?:1|true)[\"']")
+_ROW_NUMBER = re.compile(rb"\br=[\"'](\d{1,7})[\"']")
+_NO_RESULT = re.compile(rb"(?:</f>|<f[^>]{0,500}/>)\s{0,20}(?:</c>|<v\s{0,5}/>|<v></v>)")
 MAX_PARTS = 2_000  # files inside the zip
 MAX_UNPACKED = 200_000_000  # bytes
 MAX_RATIO = 100  # unpacked over packed, of a part of more than a megabyte
@@ -49,6 +54,7 @@ def read_workbook(
             )
             chosen = _pick(book, name, score, sheet)
             rows = tuple(_rows(book[chosen], name, MAX_ROWS))
+            hidden, uncomputed = _unseen(data, getattr(book[chosen], "_worksheet_path", ""))
             epoch_1904 = book.epoch == CALENDAR_MAC_1904
             book.close()
         except NormalizeError:
@@ -59,7 +65,19 @@ def read_workbook(
         raise UnreadableBills(
             f"the sheet {chosen[:40]!r} is empty", where=name, wanted="a table of bills"
         )
-    return RawTable(name, sha256, rows, "", chosen, epoch_1904)
+    return RawTable(name, sha256, rows, "", chosen, epoch_1904, hidden, uncomputed)
+
+
+def _unseen(data: bytes, part: str) -> tuple[tuple[int, ...], int]:
+    """Hidden rows of a sheet, and how many of its formulas have no stored result."""
+    with zipfile.ZipFile(io.BytesIO(data)) as packed:
+        text = packed.read(part.lstrip("/")) if part else b""
+    hidden = [
+        int(found[1])
+        for tag in _ROW.findall(text)
+        if _HIDDEN.search(tag) and (found := _ROW_NUMBER.search(tag)) is not None
+    ]
+    return tuple(hidden), len(_NO_RESULT.findall(text))
 
 
 def _broken(name: str) -> UnreadableBills:

@@ -596,3 +596,33 @@ def test_same_table_as_a_workbook(tmp_path: Path) -> None:
         assert periods_of(bills) == JFM
         assert "sheet 'Bills'" in bills.reading
         assert [row.line for row in bills.rows] == [3, 4]
+
+
+def test_hidden_rows_and_sheets_formulas_and_merged_headings(tmp_path: Path) -> None:
+    """Hidden rows are read and told; hidden sheets are not; a merged heading is of its columns."""
+    from openpyxl import Workbook
+
+    book = Workbook()
+    sheet = book.active
+    assert sheet is not None
+    sheet.append(["", "", "Gas", "", "Electricity", ""])
+    sheet.merge_cells("C1:D1")
+    sheet.merge_cells("E1:F1")
+    sheet.append(["Start", "End", "Use", "Cost", "Use", "Cost"])
+    sheet.append([date(2023, 1, 5), date(2023, 2, 6), 81, 90, 700, 80])
+    sheet.append([date(2023, 2, 6), date(2023, 3, 7), 70.5, 80, 600, 70])
+    sheet.append([date(2023, 3, 7), date(2023, 4, 6), "=1+1", 80, 500, 60])
+    sheet.row_dimensions[4].hidden = True
+    other = book.create_sheet("old")
+    other.append(["Start", "End", "Therms"])
+    other.append([date(2013, 1, 5), date(2013, 2, 6), 1])
+    other.sheet_state = "hidden"
+    file = tmp_path / "bills.xlsx"
+    book.save(file)
+    bills = read_bills(file, fuel="natural gas", unit="therm")
+    assert periods_of(bills) == JFM
+    assert bills.periods.cost.tolist() == [90.0, 80.0]
+    assert any("1 row that the sheet hides" in c and "line 4" in c for c in bills.cautions)
+    assert any("1 formula without a stored result" in c for c in bills.cautions)
+    power = read_bills(file, fuel="electricity", unit="kWh")
+    assert power.periods.use.tolist() == [700.0, 600.0, 500.0]
