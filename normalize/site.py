@@ -251,7 +251,7 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
         accounts=accounts,
         total_normalized=_total(accounts, "normalized"),
         total_avoided=_total(accounts, "avoided"),
-        cautions=_site_cautions(accounts),
+        cautions=_site_cautions(site, accounts),
         settings=_settings(site, confidence),
         versions=_versions(),
     )
@@ -277,17 +277,26 @@ def _total(accounts: tuple[AccountResult, ...], kind: str) -> Total:
                 getattr(a.savings, kind),
                 a.mmbtu_per_unit.value if a.mmbtu_per_unit else None,
                 a.price.per_unit,
-                a.co2.value if a.co2 else None,
+                # Carbon of wood is told apart from fossil carbon, never added to it.
+                a.co2.value if a.co2 and not _biogenic(a.fuel) else None,
             )
             for a in accounts
         ]
     )
 
 
-def _site_cautions(accounts: tuple[AccountResult, ...]) -> tuple[str, ...]:
-    from normalize.savings.cautions import site_cautions
+def _biogenic(fuel: str) -> bool:
+    from normalize.units import FUELS
 
-    return site_cautions([(a.account, a.savings) for a in accounts])
+    return fuel in FUELS and FUELS[fuel].biogenic
+
+
+def _site_cautions(site: Site, accounts: tuple[AccountResult, ...]) -> tuple[str, ...]:
+    from normalize.savings.cautions import site_cautions
+    from normalize.weather.methods import mismatch
+
+    differs = mismatch(site.weather, site.year) if site.year is not None else ""
+    return (*site_cautions([(a.account, a.savings) for a in accounts]), *filter(None, [differs]))
 
 
 def _settings(site: Site, confidence: float) -> tuple[tuple[str, str], ...]:

@@ -10,13 +10,14 @@ from __future__ import annotations
 
 import numpy as np
 
+from normalize.defaults import RHO_HIGH, RHO_LOW, RHO_POINTS
 from normalize.fitting.forms import COOLING, HEATING, LINE, TWO_SLOPES
 from normalize.fitting.least_squares import weighted_fit
 from normalize.fitting.sweep import days_below
 from normalize.jit import kernel
 
-RHO = np.round(np.linspace(-0.4, 0.9, 27), 10)
-RHO_ZERO = 8  # index of ρ = 0 in RHO
+RHO = np.round(np.linspace(RHO_LOW, RHO_HIGH, RHO_POINTS), 10)
+RHO_ZERO = int(np.argmin(np.abs(RHO)))  # index of ρ = 0
 WEAK = 1e-5  # a τ column that keeps less than this of its length cannot be told from the rest
 
 
@@ -143,9 +144,7 @@ def through_rho(jac, resid, w, place, targets):
     shift = np.zeros((RHO.shape[0], m))
     scale2 = np.zeros((RHO.shape[0], m))
     innovation = np.zeros(RHO.shape[0])
-    floor = 1e-30
-    for p in range(n):
-        floor += 1e-28 * rows[p, k] ** 2
+    floor = 1e-300  # bills without any noise: no logarithm of zero
     for i in range(RHO.shape[0]):
         white, log_scale = whiten(rows, place, RHO[i])
         x = np.ascontiguousarray(white[:, :k])
@@ -187,7 +186,7 @@ def _log_det(a):
 
 @kernel
 def weights_of(like):
-    """Posterior weights of the grid under a flat prior; NaN where nothing is plausible."""
+    """Posterior weights of the grid under a flat prior; all on ρ = 0 where nothing is plausible."""
     top = like.max()
     out = np.zeros(like.shape[0])
     if not top > -np.inf:

@@ -65,7 +65,7 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
     """A kernel's row as a Fit, with the diagnostics that one account deserves."""
     form = f.BY_CODE[form_code]
     n = int(row[N])
-    jac, resid, held = linearise(row, form_code, side.ts, side.ps, side.y, side.d, side.w)
+    jac, resid, held = linearise(row, form_code, side.ts, side.ps, side.y, side.d, side.w, False)
     place = positions(side.start, side.end)
     like, _, _, _ = through_rho(jac, resid, side.w, place, np.zeros((1, jac.shape[1])))
     root = resid * np.sqrt(side.w)

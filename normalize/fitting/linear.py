@@ -55,10 +55,12 @@ def times(x, coef):
 
 
 @kernel
-def linearise(row, form, ts, ps, y, d, w):
+def linearise(row, form, ts, ps, y, d, w, hold):
     """The fit linearised: (Jacobian, residuals, τ held?)."""
-    x, jac = design_and_jacobian(row, form, ts, ps, d, True)
+    x, jac = design_and_jacobian(row, form, ts, ps, d, not hold)
     resid = y - times(x, coefficients_of(row, form))
+    if hold:
+        return x, resid, True
     n_tau = jac.shape[1] - x.shape[1]
     if n_tau > 0 and not well_determined(jac, w, n_tau):
         return x, resid, True

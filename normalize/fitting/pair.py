@@ -6,7 +6,7 @@ one-sided sweeps; because alternation stalls in slanted valleys, each place it s
 searched with τ_cooling (and then τ_heating) set to every observed temperature nearby, the
 other swept exactly; and inside the final cells the model is linear in its five coefficients,
 so Newton steps in both temperatures finish the search (Hudson 1966, JASA 61:1097-1129, memory).
-Measured against an exhaustive search in tests/fitting/test_pair.py.
+Measured against an exhaustive search in tests/fitting/test_twins.py and `make prove`.
 """
 
 from __future__ import annotations
@@ -17,7 +17,7 @@ from normalize.fitting.least_squares import orthonormal, residual, weighted_fit
 from normalize.fitting.sweep import degree_days_per_day, sweep
 from normalize.jit import kernel
 
-GRID_F = 0.5  # a 1 °F grid missed 14 of 1 709 rough accounts in a prototype, ½ °F four
+GRID_F = 0.5  # coarse enough to be cheap, fine enough that no valley lies between its points
 NEAR_F = 1.25  # how far around a stall the other temperature is stepped
 MAX_STARTS = 8
 MAX_ROUNDS = 30

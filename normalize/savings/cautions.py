@@ -44,7 +44,7 @@ def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[s
         ("before", "after"), (savings.before, savings.after), about.held, strict=True
     ):
         if fit is not None:
-            out += _fit(which, fit, held)
+            out += _fit(which, fit, held and about.stated_f is None)
     if about.estimated_near_work:
         out.append(
             "An estimated reading fell near the work: its error moves use from one side to the "

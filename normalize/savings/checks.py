@@ -10,6 +10,8 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
+from normalize.defaults import SHORT_YEAR_DAYS
+from normalize.fitting.forms import form_named
 from normalize.fitting.results import Fit
 from normalize.fitting.student import t_quantile
 from normalize.savings.results import Check, Savings
@@ -35,10 +37,10 @@ def cv_limit(reporting_days: int) -> float:
     >>> cv_limit(200), cv_limit(400), cv_limit(2000)
     (0.2, 0.25, 0.3)
     """
-    months = reporting_days / 30.4
-    if months < 12:
+    # Twelve bills are rarely 365 days to the day.
+    if reporting_days < SHORT_YEAR_DAYS:
         return 0.20
-    return 0.25 if months <= 60 else 0.30
+    return 0.25 if reporting_days <= 5 * 366 else 0.30
 
 
 def fractional_uncertainty(
@@ -176,7 +178,7 @@ def _saving_checks(savings: Savings, n_after: int) -> list[Check]:
         )
     if before is not None and avoided.fraction is not None and avoided.fraction > 0.0:
         rho = min(max(before.rho, 0.0), 0.9)
-        df = max(before.n_periods - len(before.terms), 1)
+        df = max(before.n_periods - form_named(before.form).parameters, 1)
         value = fractional_uncertainty(
             n=before.n_periods,
             m=max(n_after, 1),

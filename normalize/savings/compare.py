@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,7 +19,7 @@ from normalize.errors import NoUpgrade
 from normalize.fitting import forms as f
 from normalize.fitting.align import Aligned, align
 from normalize.fitting.batch import Batch, Stations, gate, settings
-from normalize.fitting.columns import AFTER, BASE, BEFORE, BIC
+from normalize.fitting.columns import AFTER, BASE, BEFORE, BIC, UNUSED
 from normalize.fitting.describe import as_tried
 from normalize.fitting.fit import CHOICE, also_tried, batch_of_one, chosen_of, side_data
 from normalize.fitting.results import FormTried
@@ -35,21 +35,12 @@ from normalize.savings.kernel import (
     PREDICTED,
     compare_batch,
 )
+from normalize.savings.methods import METHOD, METHOD_HELD, Methods
 from normalize.savings.results import Estimate, Savings
 from normalize.savings.sides import Work, codes, label_periods
 from normalize.savings.stated import STATED_F, at_stated, needs_stated
 from normalize.weather.temperature import DailyTemperature
 from normalize.weather.year import LongTermYear
-
-METHOD = (
-    "balance temperature and serial correlation of the bills both integrated over "
-    "(restricted likelihood, first-order autoregression, Student t)"
-)
-METHOD_HELD = METHOD + "; the balance temperature was held, because the bills do not place it"
-METHOD_AVOIDED = (
-    "the baseline fit's uncertainty and the bills' noise, serial correlation integrated over; "
-    "the reporting period's bills are taken as they are"
-)
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,6 +66,7 @@ def run_batch(
     weights: str = "days",
     criterion: int = BIC,
     settings_: NDArray[np.float64] | None = None,
+    hold: bool = False,
 ) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.float64]]:
     """The compiled comparison over a ragged batch; years are those of the stations, in order.
 
@@ -95,7 +87,7 @@ def run_batch(
         np.concatenate(temp).astype(np.float64), _offsets(temp),
         np.concatenate(days).astype(np.float64), np.concatenate(degrees).astype(np.float64),
         _offsets(days), settings() if settings_ is None else settings_, criterion,
-        weights == "equal", float(confidence),
+        weights == "equal", hold, float(confidence),
     )  # fmt: skip
     return fits, chosen, answers
 
@@ -141,12 +133,38 @@ def compare(
         SideFacts.of(aligned, labels, name, tried[i], offered, delivered)
         for i, name in enumerate(("before", "after"))
     )
-    savings = _assemble(
-        answers[0], tried, facts, work, year, year_unavailable, confidence,
-        _same_form(batch, table, year, fits[0], chosen[0], confidence),
-    )  # fmt: skip
+    own = answers[0]
+    if after_reason(facts[1], work)[0] and facts[1].n:
+        own = _without_after(batch, table, year, confidence, tried[0], own)
     held = (answers[0, HELD_BEFORE] == 1.0, answers[0, HELD_AFTER] == 1.0)
+    savings = _assemble(
+        own, tried, facts, work, year, year_unavailable, confidence,
+        _same_form(batch, table, year, fits[0], chosen[0], confidence),
+        Methods.of(held, stated is not None),
+    )  # fmt: skip
     return Comparison(savings, tried[0], tried[1], labels, held, STATED_F if stated else None)
+
+
+def _without_after(
+    batch: Batch,
+    table: Stations,
+    year: LongTermYear | None,
+    confidence: float,
+    tried: tuple[FormTried, ...],
+    answer: NDArray[np.float64],
+) -> NDArray[np.float64]:
+    """The answer with NAC before as the baseline alone gives it.
+
+    Too few bills after the work must not lend their correlation to the range before it.
+    """
+    chosen = next((f.form_named(t.form).code for t in tried if t.chosen), -1)
+    if chosen < 0 or year is None:
+        return answer
+    alone = replace(batch, side=np.where(batch.side == AFTER, UNUSED, batch.side).astype(np.uint8))
+    found = run_batch(alone, table, [year], confidence=confidence, forced=(chosen, -1))[2][0]
+    out = answer.copy()
+    out[NAC_BEFORE : NAC_BEFORE + 5] = found[NAC_BEFORE : NAC_BEFORE + 5]
+    return out
 
 
 def _labels(
@@ -227,7 +245,9 @@ def _same_form(
         _, _, answers = run_batch(
             batch, table, [year], confidence=confidence, tried=mask, forced=(code, code)
         )
-        out.append((f.BY_CODE[code].name, _normalized(answers[0], confidence, METHOD)))
+        held = answers[0, HELD_BEFORE] == 1.0 or answers[0, HELD_AFTER] == 1.0
+        method = METHOD_HELD if held else METHOD
+        out.append((f.BY_CODE[code].name, _normalized(answers[0], confidence, method)))
     return tuple(out)
 
 
@@ -263,14 +283,13 @@ def _assemble(
     year_unavailable: str,
     confidence: float,
     same_form: tuple[tuple[str, Estimate], ...],
+    methods: Methods,
 ) -> Savings:
     before_no, _ = before_reason(facts[0])
     after_no, known_from = after_reason(facts[1], work)
-    held = answer[HELD_BEFORE] == 1.0 or answer[HELD_AFTER] == 1.0
-    method = METHOD_HELD if held else METHOD
     no_year = "" if year is not None else (year_unavailable or "there is no long-term year")
 
-    def side(at: int, reason: str, when: int | None) -> Estimate:
+    def side(at: int, reason: str, when: int | None, method: str) -> Estimate:
         if reason:
             return Estimate.none(reason, known_from=when, confidence=confidence)
         return _estimate(answer, at, None, confidence, method)
@@ -285,17 +304,14 @@ def _assemble(
             reason, known_from=work.end + facts[0].typical, confidence=confidence
         )
     else:
-        avoided = _estimate(
-            answer, AVOIDED, float(answer[PREDICTED]), confidence,
-            METHOD_AVOIDED + ("; balance temperature held" if held else ""),
-        )  # fmt: skip
+        avoided = _estimate(answer, AVOIDED, float(answer[PREDICTED]), confidence, methods.avoided)
         if days < SHORT_YEAR_DAYS:
             avoided = _so_far(avoided)
     return Savings(
         before=None if before_no else chosen_of(tried[0]),
         after=None if after_no else chosen_of(tried[1]),
-        nac_before=side(NAC_BEFORE, before_no or no_year, None),
-        nac_after=side(NAC_AFTER, after_no or no_year or before_no, known_from),
+        nac_before=side(NAC_BEFORE, before_no or no_year, None, methods.before),
+        nac_after=side(NAC_AFTER, after_no or no_year or before_no, known_from, methods.after),
         normalized=(
             Estimate.none(
                 normalized_no,
@@ -303,7 +319,7 @@ def _assemble(
                 confidence=confidence,
             )
             if normalized_no
-            else _normalized(answer, confidence, method)
+            else _normalized(answer, confidence, methods.both)
         ),
         avoided=avoided,
         before_unavailable=before_no,
@@ -316,8 +332,6 @@ def _assemble(
 
 
 def _so_far(estimate: Estimate) -> Estimate:
-    from dataclasses import replace
-
     return replace(estimate, so_far=True)
 
 

@@ -6,7 +6,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
+from normalize.days import iso
 from normalize.defaults import MIN_ABS_T, MIN_DAYS_A_SIDE, SPARE_PERIODS
 from normalize.fitting.align import Aligned
 from normalize.fitting.fit import chosen_of
@@ -23,6 +25,7 @@ class SideFacts:
     n, days : usable periods and their days.  last : end of its last usable period.
     typical : median days of a period.  chosen : name of the form or "".
     blind : the load answers to weather but no balance temperature can be placed.
+    beyond : bills that the weather record does not reach; weather_end : its end.
     """
 
     name: str
@@ -33,6 +36,8 @@ class SideFacts:
     chosen: str
     blind: str
     delivered: bool
+    beyond: int = 0
+    weather_end: int | None = None
 
     @classmethod
     def of(
@@ -57,7 +62,18 @@ class SideFacts:
             chosen=best.form if best else "",
             blind=_blind(tried, offered, best.form if best else ""),
             delivered=delivered,
+            beyond=int(((aligned.end > aligned.weather.last_day) & _on(name, aligned, mine)).sum()),
+            weather_end=aligned.weather.last_day,
         )
+
+
+def _on(name: str, aligned: Aligned, mine: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """Bills later than the side's last usable one; only the side after the work has such."""
+    if name != "after":
+        return np.zeros(aligned.n, dtype=np.bool_)
+    last = aligned.end[mine].max() if mine.any() else aligned.start.min(initial=0)
+    late: NDArray[np.bool_] = aligned.start >= last
+    return late
 
 
 def _blind(tried: Sequence[FormTried], offered: Sequence[str], chosen: str) -> str:
@@ -115,6 +131,12 @@ def after_reason(facts: SideFacts, work: Work) -> tuple[str, int | None]:
     reason = _lacks(facts)
     if not reason:
         return "", None
+    if facts.beyond and facts.weather_end is not None:
+        return (
+            f"{reason}. The weather record ends on {iso(facts.weather_end - 1)}, before "
+            f"{facts.beyond} of the bills do: later weather would help",
+            None,
+        )
     missing = max(MIN_DAYS_A_SIDE - facts.days, 0)
     start = facts.last if facts.last is not None else work.end
     if missing == 0:

@@ -89,8 +89,9 @@ def nac_gradient(row, form, k, temp, days, degrees):
         at += 1
     above = 0.0
     if cooling:
-        under, _, g[at] = year_at(row[TAU_C], temp, days, degrees)
-        above = days[last] - under
+        _, _, g[at] = year_at(row[TAU_C], temp, days, degrees)
+        # Strictly above, as the Jacobian counts: a day at τ itself does not move.
+        above = days[last] - days[np.searchsorted(temp, row[TAU_C], side="right")]
         at += 1
     if at < k:
         if form == TWO_SLOPES:
@@ -187,7 +188,7 @@ def _normalized(out, value, like1, sh1, sc1, df1, like2, sh2, sc2, df2, n1, n2, 
 
 
 @kernel
-def compare_sides(out, row1, form1, side1, row2, form2, side2, year, confidence):
+def compare_sides(out, row1, form1, side1, row2, form2, side2, year, hold, confidence):
     """One account's answer for given forms; writes what can be known into ``out``.
 
     side : (ts, ps, y, d, w, start, end); year : (temp, cum days, cum degrees).
@@ -198,7 +199,7 @@ def compare_sides(out, row1, form1, side1, row2, form2, side2, year, confidence)
     ts2, ps2, y2, d2, w2, s2, e2 = side2
     if form1 < 0:
         return
-    jac, resid, held = linearise(row1, form1, ts, ps, y, d, w)
+    jac, resid, held = linearise(row1, form1, ts, ps, y, d, w, hold)
     out[HELD_BEFORE] = 1.0 if held else 0.0
     n, k = jac.shape
     # One pass over ρ serves both the normal year and the reporting period.
@@ -224,7 +225,7 @@ def compare_sides(out, row1, form1, side1, row2, form2, side2, year, confidence)
     if form2 < 0:
         _one_range(out, NAC_BEFORE, nac1, weights_of(like), sh1, sc1, n - k, confidence)
         return
-    jac2, resid2, held2 = linearise(row2, form2, ts2, ps2, y2, d2, w2)
+    jac2, resid2, held2 = linearise(row2, form2, ts2, ps2, y2, d2, w2, hold)
     out[HELD_AFTER] = 1.0 if held2 else 0.0
     n2, k2 = jac2.shape
     target2 = np.zeros((1, k2))
@@ -241,11 +242,12 @@ def compare_sides(out, row1, form1, side1, row2, form2, side2, year, confidence)
 def compare_batch(
     start, end, use, side, offsets, station, offered, wanted, net, forced,
     temp, order, soff, first_day, ytemp, yoff, ydays, ydegrees, ydoff,
-    settings, criterion, equal, confidence,
+    settings, criterion, equal, hold, confidence,
 ):  # fmt: skip
     """Fits of both sides, the forms chosen and the answer of every account.
 
     forced (accounts, 2) int8 : a form to use whatever the choice says, or −1.
+    hold : balance temperatures are stated, not found: their uncertainty is left to the caller.
     ytemp/yoff, ydays, ydegrees/ydoff : long-term years by station, ragged.
     Returns fits (accounts, 2, N_FORMS, WIDTH), chosen (accounts, 2), answers (accounts,
     ANSWER_WIDTH).
@@ -280,6 +282,6 @@ def compare_batch(
         compare_sides(
             answers[i], fits[i, 0, max(chosen[i, 0], 0)], chosen[i, 0], sides[0],
             fits[i, 1, max(chosen[i, 1], 0)], chosen[i, 1], sides[1],
-            (ytemp[y1:y2], ydays[d1:d2], ydegrees[d1:d2]), confidence,
+            (ytemp[y1:y2], ydays[d1:d2], ydegrees[d1:d2]), hold, confidence,
         )  # fmt: skip
     return fits, chosen, answers

@@ -16,8 +16,8 @@ REASONS = {
     "after": "",
     "work window": "it touches the work, so it belongs to neither side",
     "between": "it lies between two upgrades",
-    "older": "it is more than 24 months before the work",
-    "later": "it is more than 24 months after the work",
+    "older": "it is further before the work than the bills used",
+    "later": "it is further after the work than the bills used",
     "earlier occupant": "it belongs to an earlier occupant",
     "set aside": "",
 }

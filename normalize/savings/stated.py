@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from normalize.fitting.batch import Batch, Stations, settings
-from normalize.fitting.columns import BASE
+from normalize.fitting.columns import BASE, ON_BOUND
 from normalize.fitting.forms import HEATING
 from normalize.fitting.results import FormTried
 from normalize.fitting.side import S_COLD, S_H_HIGH, S_H_LOW, S_MILD, S_SPARE
@@ -59,6 +59,7 @@ def at_stated(
             _widen(hull[0], found[2][0])
     if middle is None or hull is None:
         return None
+    middle[0][..., ON_BOUND] = 0.0  # where it was put, not where it ended
     return middle[0], middle[1], hull
 
 
@@ -75,7 +76,7 @@ def _held_at(
     only[:, HEATING] = True
     return run_batch(
         batch, table, [year], confidence=confidence, tried=only, forced=(HEATING, HEATING),
-        settings_=fixed,
+        settings_=fixed, hold=True,
     )  # fmt: skip
 
 

@@ -206,3 +206,28 @@ def test_no_cost_gives_no_price_and_says_what_to_do() -> None:
     found = price_of(prices(np.full(24, np.nan), use), stated=None, delivered=False)
     assert found.per_unit is None
     assert "price = " in (found.unavailable or "")
+
+
+def test_weather_that_ends_too_early_is_named_and_gives_no_date() -> None:
+    """Bills go on, the station's record does not: waiting for bills would cure nothing."""
+    bills, work = house(24, 18)
+    short = DailyTemperature(
+        "ends early", 0, TEMP[: work.end + 130], np.zeros(work.end + 130, bool)
+    )
+    found = measure_savings(bills, short, upgrade=(work.start, work.end), long_term=year())
+    assert found.normalized.unavailable is not None
+    assert "weather record ends on" in found.normalized.unavailable
+    assert found.normalized.known_from is None
+
+
+def test_too_few_bills_after_do_not_touch_the_range_before() -> None:
+    bills, work = house(24, 5, noise=0.05)
+    both = measure_savings(bills, STATION, upgrade=(work.start, work.end), long_term=year())
+    p = bills.periods
+    alone = Bills(
+        "gas", "natural gas", "therm", (),
+        Periods(p.start[:24], p.end[:24], p.use[:24], p.cost[:24], p.estimated[:24], p.joined[:24]),
+        (),
+    )  # fmt: skip
+    only = measure_savings(alone, STATION, upgrade=(work.start, work.end), long_term=year())
+    assert both.nac_before == only.nac_before
