@@ -298,6 +298,7 @@ def test_every_example_in_a_new_site_is_true_when_uncommented(tmp_path: Path) ->
     folder = tmp_path / "new"
     write_new_site(folder)
     (folder / "station.csv").write_text("date,mean_f\n")
+    (folder / "second.csv").write_text("date,mean_f\n")
     lines = (folder / "site.toml").read_text(encoding="utf-8").splitlines()
     examples = [
         i for i, line in enumerate(lines) if line.split()[:1] + line.split()[2:3] == ["#", "="]
