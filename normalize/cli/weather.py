@@ -350,7 +350,7 @@ def _copy(file: Path, folder: Path) -> Path:
 
     target = folder / file.name
     data = file.read_bytes()
-    if target.exists() and target.read_bytes() != data:
+    if target.is_symlink() or (target.exists() and target.read_bytes() != data):
         raise UnwritableReport(
             "another file of that name is there already",
             where=str(target),

@@ -323,6 +323,36 @@ def test_paths_of_every_product_stay_in_the_cache(tmp_path: Path) -> None:
             cache.place(bad)
 
 
+def test_without_the_extra_a_message_says_what_to_install(
+    make: Callable[..., Fetcher], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("importlib.util.find_spec", lambda name: None)
+    with pytest.raises(WeatherError, match=r"Install normalize\[download\]"):
+        make().fetch(PATH)
+
+
+def test_the_pool_for_the_archive_checks_certificates(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Made, not used: nothing leaves this machine."""
+    import ssl
+
+    import urllib3
+
+    for name in ("https_proxy", "HTTPS_PROXY", "no_proxy", "NO_PROXY", "all_proxy", "ALL_PROXY"):
+        monkeypatch.delenv(name, raising=False)
+    direct = fetch_module.connection(ARCHIVE.base)
+    assert not isinstance(direct, urllib3.ProxyManager)
+    context = direct.connection_pool_kw["ssl_context"]
+    assert context.verify_mode == ssl.CERT_REQUIRED
+    assert context.check_hostname
+    monkeypatch.setenv("https_proxy", "proxy.example:3128")
+    through = fetch_module.connection(ARCHIVE.base)
+    assert isinstance(through, urllib3.ProxyManager)
+    assert through.proxy is not None
+    assert through.proxy.url == "http://proxy.example:3128"
+    monkeypatch.setenv("no_proxy", "ncei.noaa.gov")
+    assert not isinstance(fetch_module.connection(ARCHIVE.base), urllib3.ProxyManager)
+
+
 def test_no_other_command_goes_online(tmp_path: Path) -> None:
     """The network modules are not even loaded by a command that reads weather."""
     station = tmp_path / "s.csv"

@@ -83,6 +83,7 @@ def test_the_three_files_of_normals_agree(kind: str) -> None:
     for base in (65, 60, 57, 55, 70, 72):
         assert year.cooling(base) == pytest.approx(COOLING[base], abs=off + 0.1)
     assert "rest on 22 of the 30 years" in " ".join(year.notes)
+    assert "flag R (representative)" in " ".join(year.notes)
     assert zone_of(year) == 6  # Lebanon, NH (memory)
 
 

@@ -29,6 +29,12 @@ _COLUMN: Final = re.compile(r"(ANN|MLY|DLY)-(HTDD|CLDD)-(?:NORMAL|BASE(\d\d))$")
 _ROWS: Final = {"ANN": (1,), "MLY": (12,), "DLY": (365, 366)}
 _KIND: Final = {"ANN": "annual", "MLY": "monthly", "DLY": "daily"}
 CUSTOMARY_BASE: Final = 65.0
+WEAK: Final = {  # flags of completeness below C (complete) and S (standard) (memory)
+    "R": "representative",
+    "P": "provisional",
+    "Q": "quasi-normal",
+    "E": "estimated",
+}
 ROUNDS_TO_NOTHING: Final = -7777.0
 LOWEST_VALUE: Final = -5000.0
 METHOD: Final = "1991-2020 normals of daily maximum and minimum"
@@ -113,6 +119,14 @@ def _notes(rows: Sequence[dict[str, str]], kind: str, published: Published) -> t
     years = [y for y in used if np.isfinite(y)]
     if years and min(years) < 30:
         notes.append(f"The normals rest on {min(years):.0f} of the 30 years 1991-2020.")
+    flags = {(row.get(f"comp_flag_{kind}-HTDD-NORMAL") or "").strip() for row in rows}
+    weak = sorted(flags & set(WEAK))
+    if weak:
+        notes.append(
+            "Their completeness is less than standard: "
+            + ", ".join(f"flag {flag} ({WEAK[flag]})" for flag in weak)
+            + "."
+        )
     if kind == "DLY":
         notes.append("February 29 was left out: a long-term year has 365 days.")
     return tuple(notes)

@@ -122,6 +122,7 @@ class Fetcher:
                     next_step="Get it once with a connection, without --offline.",
                 )
             return Fetched(file, held, "cached")
+        _need_urllib3()
         try:
             return self._with_patience(path, held)
         except MissingWeather:
@@ -269,6 +270,17 @@ class Fetcher:
         if self._pool is None:
             self._pool = connection(url)
         return self._pool
+
+
+def _need_urllib3() -> None:
+    from importlib.util import find_spec
+
+    if find_spec("urllib3") is None:
+        raise WeatherError(
+            "what downloads need is not installed",
+            where="download",
+            next_step="Install normalize[download], or fetch the file with a browser.",
+        )
 
 
 def _pieces(response: BaseHTTPResponse) -> Iterator[bytes]:
