@@ -289,11 +289,12 @@ def read_lines(
                     number_span[i, 2 * s], number_span[i, 2 * s + 1] = a, b
             elif role == _WORD:
                 s = slots[k]
-                if last[s] >= 0 and word_spans[s, last[s], 1] - word_spans[s, last[s], 0] == b - a:
-                    w = _word(data, a, b, word_spans[s, last[s] : last[s] + 1], 1)
-                    w = last[s] if w == 0 else -2
-                else:
-                    w = -2
+                w = -2
+                if last[s] >= 0:
+                    before = word_spans[s, last[s], 0]
+                    size = word_spans[s, last[s], 1] - before
+                    if size == b - a and _same_bytes(data, a, before, size):
+                        w = last[s]
                 if w == -2:
                     w = _word(data, a, b, word_spans[s], word_count[s])
                     if w == word_count[s]:
