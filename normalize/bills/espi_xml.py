@@ -11,6 +11,7 @@ import io
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field
+from functools import lru_cache
 from typing import TYPE_CHECKING
 from urllib.parse import urlsplit
 
@@ -132,6 +133,7 @@ def _unsafe(name: str) -> UnreadableBills:
     )
 
 
+@lru_cache(maxsize=512)  # a file has few names and many elements
 def _local(tag: object) -> tuple[str, str]:
     """(namespace, lower-case name); typing errors such as IntervalBLock then do no harm."""
     if not isinstance(tag, str):

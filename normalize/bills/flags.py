@@ -32,6 +32,8 @@ _REPEATS = rules.REPEATS
 _YEAR_SLACK = rules.YEAR_SLACK_DAYS
 _JUMP_DECADES = rules.JUMP_DECADES
 _JUMP_RUN = rules.JUMP_RUN
+_SPIKE_DECADES = rules.SPIKE_DECADES
+_SPIKE_LEAST = rules.SPIKE_LEAST
 _EMPTY_SHARE = rules.EMPTY_SHARE
 _EMPTY_DAYS = rules.EMPTY_DAYS
 _SEASON_TERMS = rules.SEASON_TERMS
@@ -56,13 +58,13 @@ def _year_apart(middle: Float, i: int, step: int) -> int:
 
 
 @kernel
-def _decade(ratio: float) -> int:
+def _decade(ratio: float, slack: float) -> int:
     """2 for a hundredfold, 1 for tenfold, 0 for neither, negative for the inverse."""
     if ratio <= 0.0:
         return 0
     power = np.log10(ratio)
     near = int(np.round(power))
-    if 1 <= abs(near) <= 2 and abs(power - near) <= _JUMP_DECADES:
+    if 1 <= abs(near) <= 2 and abs(power - near) <= slack:
         return near
     return 0
 
@@ -87,13 +89,14 @@ def _flag_jumps(per_day: Float, middle: Float, flag: Short) -> None:
     for i in range(1, n - 1):
         a, b = per_day[i - 1], per_day[i + 1]
         if a > 0.0 and b > 0.0:
-            up, down = _decade(per_day[i] / a), _decade(per_day[i] / b)
-            if up == down and up != 0:
-                flag[i] |= _TIMES_10 if abs(up) == 1 else _TIMES_100
+            power = _decade(per_day[i] / np.sqrt(a * b), _SPIKE_DECADES)
+            least = max(per_day[i] / max(a, b), min(a, b) / max(per_day[i], 1e-300))
+            if power != 0 and least >= _SPIKE_LEAST:
+                flag[i] |= _TIMES_10 if abs(power) == 1 else _TIMES_100
     run, before = 0, 0
     for i in range(n):
         j = _year_apart(middle, i, -1)
-        jump = _decade(per_day[i] / per_day[j]) if j >= 0 and per_day[j] > 0.0 else 0
+        jump = _decade(per_day[i] / per_day[j], _JUMP_DECADES) if j >= 0 and per_day[j] > 0.0 else 0
         run = run + 1 if jump != 0 and jump == before else (1 if jump != 0 else 0)
         before = jump
         if run >= _JUMP_RUN:

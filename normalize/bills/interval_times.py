@@ -25,6 +25,7 @@ if TYPE_CHECKING:
     Long = NDArray[np.int64]
 
 LONGEST_STEP = 36 * 3600
+SURELY_NO_DATES = 200  # lines looked at before a file of months by name is ruled out
 _CLOCK_TIME = re.compile(rb"(\d{1,2}):(\d{2})(?::(\d{2}))?[\d.]*\s*([aApP])?")
 _FIRST_OF_MONTH = (
     np.arange("1900-01", "2100-03", dtype="datetime64[M]").astype("datetime64[D]").astype(np.int64)
@@ -64,8 +65,9 @@ def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: st
 
     Raises AmbiguousBills, UnreadableBills.
     """
-    if 2 * np.count_nonzero(lines.fields[:, 0] >= 0) < np.count_nonzero(lines.state == FULL):
-        _months_as_numbers(lines, data)
+    bad = np.flatnonzero((lines.fields[:, 0] < 0) & (lines.state == FULL))
+    if 2 * bad.size > np.count_nonzero(lines.state == FULL):
+        _months_as_numbers(lines, data, bad)
     order, note = _order(lines, answers, where)
     local, known = _local(lines, order)
     if not np.any(known):
@@ -91,28 +93,50 @@ def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: st
     return Moments(local, offset, known, step, clock, tuple(notes), tuple(cautions), zoned)
 
 
-def _months_as_numbers(lines: Lines, data: bytes) -> None:
-    """Stamps whose dates name their month, in place; each date is looked up once."""
-    from normalize.bills.dates import read_written
-    from normalize.days import date_of
+def _months_as_numbers(lines: Lines, data: bytes, bad: NDArray[np.intp]) -> None:
+    """Stamps whose dates name their month, in place; each date is looked up once.
 
+    bad : lines that are no stamps in numbers.  When none of the first is a date either, the rest
+    is not looked at.
+    """
     dates: dict[bytes, tuple[int, int, int]] = {}
-    for i in np.flatnonzero(lines.state == FULL).tolist():
-        text = data[lines.span[i, 0] : lines.span[i, 1]]
+    first = bad[:SURELY_NO_DATES]
+    _named_stamps(lines, data, first, dates)
+    if any(year > 0 for year, _, _ in dates.values()):
+        _named_stamps(lines, data, bad[SURELY_NO_DATES:], dates)
+
+
+def _named_stamps(
+    lines: Lines, data: bytes, bad: NDArray[np.intp], dates: dict[bytes, tuple[int, int, int]]
+) -> None:
+    for i, (a, b) in zip(bad.tolist(), lines.span[bad].tolist(), strict=True):
+        text = data[a:b]
         cut = text.find(b":")
         cut = text.rfind(b" ", 0, cut) if cut > 0 else len(text)
         date = text[:cut]
         if date not in dates:
-            day = read_written(date.decode("utf-8", "replace")).day
-            when = date_of(day) if day is not None and abs(day) < 10**6 else None
-            dates[date] = (when.year, when.month, when.day) if when else (-1, -1, -1)
+            dates[date] = _named_date(date)
+        if dates[date][0] < 0:
+            continue
         lines.fields[i, :3] = dates[date]
         found = _CLOCK_TIME.search(text[cut:])
-        if found and dates[date][0] > 0:
+        if found:
             hour = int(found[1])
             if found[4]:
                 hour = hour % 12 + (12 if found[4] in b"pP" else 0)
             lines.fields[i, 3:6] = hour, int(found[2]), int(found[3] or 0)
+
+
+def _named_date(text: bytes) -> tuple[int, int, int]:
+    """Year, month and day of a date that names its month; -1 for anything else."""
+    from normalize.bills.dates import read_written
+    from normalize.days import date_of
+
+    day = read_written(text.decode("utf-8", "replace")).day
+    if day is None or abs(day) > 10**6:
+        return (-1, -1, -1)
+    when = date_of(day)
+    return (when.year, when.month, when.day)
 
 
 def _order(lines: Lines, answers: Answers, where: str) -> tuple[Order, str]:

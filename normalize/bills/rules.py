@@ -141,6 +141,9 @@ REPEATS = 3  # the same number so often in a row is a guess written down again (
 YEAR_SLACK_DAYS = 20  # "the same season": the middle of a period within so much of a year
 JUMP_DECADES = 0.12  # within a third of 10 or 100 times, so that no cold month passes for a
 #                      multiplier (our own, no source)
+SPIKE_DECADES = 0.25  # a single bill, against the geometric mean of its neighbours, which lie on
+#                       either side of it in season (our own, no source)
+SPIKE_LEAST = 3.5  # and at least so many times the nearer of the two
 JUMP_RUN = 3  # bills in a row ten times those of the year before (our own, no source)
 EMPTY_SHARE = 0.25  # of the same season's use, the year before and (where known) the year after
 EMPTY_DAYS = 45  # so long (both our own, no source)

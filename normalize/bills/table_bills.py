@@ -92,8 +92,8 @@ def _unseen(table: RawTable, body: Sequence[RawRow]) -> tuple[str, ...]:
     said = []
     if hidden:
         said.append(
-            f"{several(len(hidden), 'row')} that the sheet hides, read like the others (first on line "
-            f"{hidden[0]})."
+            f"{several(len(hidden), 'row')} that the sheet hides, read like the others (first on "
+            f"line {hidden[0]})."
         )
     if table.uncomputed:
         said.append(
