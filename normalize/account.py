@@ -93,7 +93,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
             outside_share=_outside(site, aligned, found),
             n_after=sum(1 for label in found.labels if label == "after"),
         ),
-        cautions=cautions_of(savings, price, _circumstances(site, bills, found, work)),
+        cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work)),
         work_start=work.start,
         work_end=work.end,
     )
@@ -175,7 +175,16 @@ def _outside(site: Site, aligned: Aligned, found: Comparison) -> float | None:
     return share_outside(site.year.temp_f, site.year.weight, together)
 
 
-def _circumstances(site: Site, bills: Bills, found: Comparison, work: Work) -> Circumstances:
+def _used_nothing(bills: Bills, found: Comparison) -> bool:
+    after = [
+        float(bills.periods.use[i]) for i, label in enumerate(found.labels) if label == "after"
+    ]
+    return bool(after) and all(use == 0.0 for use in after)
+
+
+def _circumstances(
+    site: Site, plan: AccountPlan, bills: Bills, found: Comparison, work: Work
+) -> Circumstances:
     near = any(
         row.estimated and row.end is not None and abs(row.end - work.start) <= NEAR_WORK_DAYS
         for row in bills.rows
@@ -188,6 +197,11 @@ def _circumstances(site: Site, bills: Bills, found: Comparison, work: Work) -> C
         changes=tuple(c.what for c in site.changes),
         held=found.held,
         stated_f=found.stated_f,
+        works=len(work.windows),
+        between=found.labels.count("between"),
+        water_only=not plan.space_heating,
+        tried_before=found.tried_before,
+        used_nothing=_used_nothing(bills, found),
         bill_cautions=(*bills.cautions, *_flags(bills)),
     )
 

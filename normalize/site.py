@@ -235,7 +235,7 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
     """
     if not site.upgrades:
         raise NoUpgrade(
-            "site.toml names no upgrade",
+            "names no upgrade",
             where="site.toml",
             wanted="an [[upgrade]] with a name and a start",
             next_step='Add [[upgrade]] with name = "…", start = 2023-09-11, end = 2023-09-22.',
@@ -291,12 +291,28 @@ def _biogenic(fuel: str) -> bool:
     return fuel in FUELS and FUELS[fuel].biogenic
 
 
+def _few_years(site: Site) -> str:
+    plan, year = site.weather_plan, site.year
+    if plan is None or year is None or plan.long_term_file is not None or not year.years:
+        return ""
+    if len(year.years) >= plan.long_term_years:
+        return ""
+    return (
+        f"The normal year is the mean of only {len(year.years)} of the {plan.long_term_years} "
+        "years asked for, so it is less normal than it should be: a longer record would help."
+    )
+
+
 def _site_cautions(site: Site, accounts: tuple[AccountResult, ...]) -> tuple[str, ...]:
     from normalize.savings.cautions import site_cautions
     from normalize.weather.methods import mismatch
 
+    thin = _few_years(site)
     differs = mismatch(site.weather, site.year) if site.year is not None else ""
-    return (*site_cautions([(a.account, a.savings) for a in accounts]), *filter(None, [differs]))
+    return (
+        *site_cautions([(a.account, a.savings) for a in accounts]),
+        *filter(None, [thin, differs]),
+    )
 
 
 def _settings(site: Site, confidence: float) -> tuple[tuple[str, str], ...]:

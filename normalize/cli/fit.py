@@ -51,7 +51,7 @@ def command(folder: Path, json_to: str | None) -> int | None:
     Every form that was tried is listed with its numbers; the chosen one is marked, the others
     carry the reason why they were set aside.
     """
-    result = assess_folder(folder, confidence=CONFIDENCE)
+    result = assess_folder(folder, confidence=CONFIDENCE, without_work=True)
     if json_to is not None:
         write_json(to_json(result), json_to, inputs=input_files(result))
     if json_to != STDOUT:

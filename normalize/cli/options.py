@@ -15,7 +15,7 @@ from normalize.errors import UnwritableReport
 if TYPE_CHECKING:
     from collections.abc import Callable
 
-    from normalize.site import SiteResult
+    from normalize.site import Site, SiteResult
 
 FOLDER: Final = click.Path(path_type=Path)
 FILE: Final = click.Path(path_type=Path)
@@ -85,12 +85,16 @@ def write_json(text: str, target: str, *, inputs: tuple[Path, ...] = ()) -> None
         raise UnwritableReport(f"cannot be written ({reason})", where=target) from None
 
 
-def assess_folder(folder: Path, *, confidence: float, sensitivity: bool = False) -> SiteResult:
+def assess_folder(
+    folder: Path, *, confidence: float, sensitivity: bool = False, without_work: bool = False
+) -> SiteResult:
     """Read and assess a site, with a word when the first run takes longer."""
     from normalize.site import assess, read_site
 
     with patience():
         site = read_site(folder)
+        if without_work and not site.upgrades:
+            site = _all_before(site)
         result = assess(site, confidence=confidence)
         if sensitivity:
             from dataclasses import replace
@@ -99,6 +103,17 @@ def assess_folder(folder: Path, *, confidence: float, sensitivity: bool = False)
 
             result = replace(result, moved=how_far(site, result))
         return result
+
+
+def _all_before(site: Site) -> Site:
+    """The site as if work came after its last bill: every bill then stands before it."""
+    from dataclasses import replace
+
+    from normalize.sitefile import Upgrade
+
+    ends = [int(b.periods.end.max()) for b in site.bills if b is not None and b.periods.n]
+    last = max(ends, default=0)
+    return replace(site, upgrades=(Upgrade("no work named", last, last + 1),))
 
 
 def input_files(result: SiteResult) -> tuple[Path, ...]:

@@ -72,8 +72,9 @@ def command(
     comes first, with its range; the statistics follow. Exit code 1 when no account has an answer.
     """
     result = assess_folder(folder, confidence=confidence, sensitivity=sensitivity)
+    from normalize.report.numbers import name
+
     if json_to != STDOUT:
-        from normalize.report.numbers import name
         from normalize.report.text import to_text
 
         text = to_text(
@@ -89,7 +90,7 @@ def command(
         from normalize.report.html import write_html
 
         path = report_to / "report.html"
-        write_html(result, path, show_accounts=show_accounts)
+        write_html(result, path, show_accounts=show_accounts, subject=name(result.site.name))
         say(f"the report is {path}")
     if json_to is not None:
         from normalize.report.json import to_json

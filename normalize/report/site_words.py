@@ -28,7 +28,8 @@ SAFETY: Final = (
 
 def cautions_of(result: SiteResult) -> tuple[str, ...]:
     """The site's cautions, then the usual ones of safety, each once."""
-    every = [n.clean(c) for c in result.cautions] + list(SAFETY)
+    answered = any(a.has_answer for a in result.accounts)
+    every = [n.clean(c) for c in result.cautions] + (list(SAFETY) if answered else [])
     return tuple(dict.fromkeys(every))
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Final
 
@@ -273,6 +274,18 @@ def ledger_table(account: AccountResult, *, show_accounts: bool = False) -> Tabl
     return _table(LEDGER, header, rows, (1,))
 
 
+SIDE_WORDS: Final = {
+    "before": "stand before the work",
+    "after": "after it",
+    "work window": "touch it",
+    "between": "lie between two upgrades",
+    "older": "are older than those used",
+    "later": "are later than those used",
+    "earlier occupant": "belong to an earlier occupant",
+    "set aside": "were set aside",
+}
+
+
 def ledger_summary(account: AccountResult) -> str:
     """The ledger in a sentence."""
     if account.bills is None:
@@ -284,7 +297,23 @@ def ledger_summary(account: AccountResult) -> str:
     periods = account.bills.periods.n
     text = f"{_count(len(account.bills.rows), 'row')} read: {_count(periods, 'usage period')}, "
     text += f"{_count(out, 'row')} left out"
-    return f"{text}, {_count(noted, 'row')} repaired or noted." if noted else f"{text}."
+    text = f"{text}, {_count(noted, 'row')} repaired or noted." if noted else f"{text}."
+    return f"{text} {sides_summary(account)}".rstrip()
+
+
+def sides_summary(account: AccountResult) -> str:
+    """Which part the periods took, and how many days no bill covers."""
+    if not account.periods:
+        return ""
+    counts: dict[str, int] = {}
+    for period in account.periods:
+        counts[period.side] = counts.get(period.side, 0) + 1
+    parts = [f"{counts[side]} {told}" for side, told in SIDE_WORDS.items() if side in counts]
+    gaps = sum(
+        max(after.start - before.end, 0) for before, after in itertools.pairwise(account.periods)
+    )
+    text = f"Of the periods, {', '.join(parts)}."
+    return f"{text} {_count(gaps, 'day')} between them have no bill." if gaps else text
 
 
 def totals_table(result: SiteResult) -> Table:

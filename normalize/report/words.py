@@ -252,7 +252,8 @@ def how_long(days: int) -> str:
 
 def energy_sentence(estimate: Estimate, unit: str, *, per: str = " a year") -> str:
     """The same change in the unit of the bills; empty when there is none to give."""
-    return _also("On the bills", in_units(estimate), unit_form(unit_word(unit)), per)
+    where = "In a normal year" if per == " a year" else "Since the work"
+    return _also(where, in_units(estimate), unit_form(unit_word(unit)), "")
 
 
 def money_sentence(

@@ -5,13 +5,15 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from normalize.fitting.results import Fit
+from normalize.fitting.results import Fit, FormTried
 from normalize.savings.results import Price, Savings
 from normalize.savings.stated import STATED_RANGE_F
 from normalize.savings.worth import AVERAGE
 
 POOR_TAU_F = 8.0  # a profile range wider than this is worth a word
 WARM_F, COOL_F = 68.0, 48.0  # usual balance temperatures lie well inside (common practice)
+FOLLOWS_COLD_R2 = 0.75  # of a heating form: cold inlet water alone explains less (our choice)
+UNEVEN_CV = 0.35  # of the flat form: hot water is steadier than that (our choice)
 BIG_CHANGE = 0.50  # program evaluation reviews changes beyond 50-65 % (memory)
 
 
@@ -33,11 +35,18 @@ class Circumstances:
     held: tuple[bool, bool]
     bill_cautions: tuple[str, ...] = ()
     stated_f: float | None = None
+    works: int = 1  # upgrades that touch the account
+    between: int = 0  # bills between two of them, which took no part
+    water_only: bool = False  # site.toml says that the account heats no rooms
+    tried_before: tuple[FormTried, ...] = ()
+    used_nothing: bool = False  # every bill after the work says zero
 
 
 def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[str, ...]:
     """Cautions of one account, the most important first."""
     out: list[str] = []
+    out += _works(about)
+    out += _water_only(savings, about)
     out += _forms(savings)
     out += _size(savings)
     for which, fit, held in zip(
@@ -76,6 +85,32 @@ def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[s
         out.append(f"Something else changed too: {change}. It is in the number.")
     out += about.bill_cautions
     return tuple(dict.fromkeys(out))
+
+
+def _works(about: Circumstances) -> list[str]:
+    out = []
+    if about.used_nothing:
+        out.append(
+            "Every bill after the work says zero: make sure that the account was not closed, the "
+            "building not empty and the meter not stopped before calling that a saving."
+        )
+    if about.works > 1:
+        left = f"; {about.between} bills between them took no part" if about.between else ""
+        out.append(f"The change is of all {about.works} upgrades together{left}.")
+    return out
+
+
+def _water_only(savings: Savings, about: Circumstances) -> list[str]:
+    """Said to heat only water, but use follows the cold as a heated house's does."""
+    if not about.water_only or savings.before is None:
+        return []
+    heating = next((t.fit for t in about.tried_before if t.form == "heating"), None)
+    if heating is None or heating.r2 < FOLLOWS_COLD_R2 or savings.before.cv_rmse < UNEVEN_CV:
+        return []
+    return [
+        "Use follows the cold far more than hot water does, so this account seems to heat rooms: "
+        "is space_heating = false right? With it, two unlike winters are not set right."
+    ]
 
 
 def _forms(savings: Savings) -> list[str]:
@@ -164,8 +199,9 @@ def site_cautions(saved: Sequence[tuple[str, Savings]]) -> tuple[str, ...]:
             f"{' and '.join(fell)} fell while {' and '.join(rose)} rose: the fuels traded "
             "places, so look at energy, cost and carbon together."
         )
-    out.append(
-        "If the work was done because a bill had been unusually high, use would have come down "
-        "somewhat without it."
-    )
+    if any(s.normalized.available or s.avoided.available for _, s in saved):
+        out.append(
+            "If the work was done because a bill had been unusually high, use would have come "
+            "down somewhat without it."
+        )
     return tuple(out)

@@ -140,7 +140,7 @@ def compare(
     savings = _assemble(
         own, tried, facts, work, year, year_unavailable, confidence,
         _same_form(batch, table, year, fits[0], chosen[0], confidence),
-        Methods.of(held, stated is not None),
+        Methods.of(held, stated is not None), net_metered,
     )  # fmt: skip
     return Comparison(savings, tried[0], tried[1], labels, held, STATED_F if stated else None)
 
@@ -247,12 +247,19 @@ def _same_form(
         )
         held = answers[0, HELD_BEFORE] == 1.0 or answers[0, HELD_AFTER] == 1.0
         method = METHOD_HELD if held else METHOD
-        out.append((f.BY_CODE[code].name, _normalized(answers[0], confidence, method)))
+        out.append(
+            (f.BY_CODE[code].name, _normalized(answers[0], confidence, method, bool(batch.net[0])))
+        )
     return tuple(out)
 
 
 def _estimate(
-    answer: NDArray[np.float64], at: int, over: float | None, confidence: float, method: str
+    answer: NDArray[np.float64],
+    at: int,
+    over: float | None,
+    confidence: float,
+    method: str,
+    net: bool = False,
 ) -> Estimate:
     value, low, high, plain_low, plain_high = (float(x) for x in answer[at : at + 5])
     share = over if over is not None and over > 0.0 else None
@@ -262,7 +269,8 @@ def _estimate(
         high=high,
         fraction=value / share if share else None,
         fraction_low=low / share if share else None,
-        fraction_high=high / share if share else None,
+        # Nobody can use less than nothing: no more than all of it can be saved.
+        fraction_high=(high if net else min(high, share)) / share if share else None,
         plain_low=plain_low,
         plain_high=plain_high,
         confidence=confidence,
@@ -270,8 +278,8 @@ def _estimate(
     )
 
 
-def _normalized(answer: NDArray[np.float64], confidence: float, method: str) -> Estimate:
-    return _estimate(answer, NORMALIZED, float(answer[NAC_BEFORE]), confidence, method)
+def _normalized(answer: NDArray[np.float64], confidence: float, method: str, net: bool) -> Estimate:
+    return _estimate(answer, NORMALIZED, float(answer[NAC_BEFORE]), confidence, method, net)
 
 
 def _assemble(
@@ -284,6 +292,7 @@ def _assemble(
     confidence: float,
     same_form: tuple[tuple[str, Estimate], ...],
     methods: Methods,
+    net: bool,
 ) -> Savings:
     before_no, _ = before_reason(facts[0])
     after_no, known_from = after_reason(facts[1], work)
@@ -304,7 +313,9 @@ def _assemble(
             reason, known_from=work.end + facts[0].typical, confidence=confidence
         )
     else:
-        avoided = _estimate(answer, AVOIDED, float(answer[PREDICTED]), confidence, methods.avoided)
+        avoided = _estimate(
+            answer, AVOIDED, float(answer[PREDICTED]), confidence, methods.avoided, net
+        )
         if days < SHORT_YEAR_DAYS:
             avoided = _so_far(avoided)
     return Savings(
@@ -319,7 +330,7 @@ def _assemble(
                 confidence=confidence,
             )
             if normalized_no
-            else _normalized(answer, confidence, methods.both)
+            else _normalized(answer, confidence, methods.both, net)
         ),
         avoided=avoided,
         before_unavailable=before_no,

@@ -10,7 +10,7 @@ from normalize.savings.results import Price
 
 LAST_DAYS = 731  # prices drift: only the last two years of bills speak of today's
 MIN_BILLS = 6  # a fixed charge and a price from fewer would be guessing
-MIN_SPREAD = 0.15  # of mean use per day: with less, charge and price cannot be told apart
+MAX_PRICE_ERROR = 0.10  # of the price: with more, charge and price cannot be told apart
 FROM_BILLS = "the bills' cost with the fixed charge taken out"
 AVERAGE = "the bills' cost divided by their use, fixed charges included"
 DELIVERED = "the price a unit of the last deliveries"
@@ -55,12 +55,27 @@ def _marginal(
 ) -> float | None:
     if use.shape[0] < MIN_BILLS:
         return None
-    per_day = use / days
-    if per_day.std() < MIN_SPREAD * per_day.mean():
+    # Some charge by the day, some by the bill: whichever explains the costs better.
+    tried = [_charge_and_price(charge, use, cost) for charge in (days, np.ones_like(days))]
+    known = [t for t in tried if t is not None]
+    if not known:
         return None
-    x = np.column_stack([days, use])
-    coef, _, rank, _ = np.linalg.lstsq(x, cost, rcond=None)
-    return float(coef[1]) if rank == 2 else None
+    _, price, error = min(known)
+    return price if error <= MAX_PRICE_ERROR * abs(price) else None
+
+
+def _charge_and_price(
+    charge: NDArray[np.float64], use: NDArray[np.float64], cost: NDArray[np.float64]
+) -> tuple[float, float, float] | None:
+    """(sum of squares, price, its standard error) of cost = f·charge + p·use."""
+    x = np.column_stack([charge, use])
+    coef, _, rank, values = np.linalg.lstsq(x, cost, rcond=None)
+    if rank < 2 or values[1] <= 1e-9 * values[0]:
+        return None
+    left = float(((cost - x @ coef) ** 2).sum())
+    cov = np.linalg.inv(x.T @ x)
+    error = np.sqrt(left / (use.shape[0] - 2) * cov[1, 1])
+    return left, float(coef[1]), float(error)
 
 
 def _sane(price: Price) -> Price:

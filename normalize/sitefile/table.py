@@ -124,7 +124,9 @@ class Table:
         if isinstance(value, bool) or not isinstance(value, int | float):
             raise self.bad(key, shown(value), f"a number, in {unit}, without quotation marks")
         if not low <= value <= high:  # false for NaN and infinities too
-            raise self.bad(key, shown(value), f"a number from {low:g} to {high:g}, in {unit}")
+            raise self.bad(
+                key, shown(value), f"a number from {_plain(low)} to {_plain(high)}, in {unit}"
+            )
         return float(value)
 
     def whole(self, key: str, *, low: int, high: int, unit: str) -> int | None:
@@ -133,7 +135,7 @@ class Table:
         if value is None:
             return None
         if isinstance(value, bool) or not isinstance(value, int) or not low <= value <= high:
-            raise self.bad(key, shown(value), f"a whole number from {low} to {high}, in {unit}")
+            raise self.bad(key, shown(value), f"a whole number from {low:,} to {high:,}, in {unit}")
         return value
 
     def flag(self, key: str, *, default: bool) -> bool:
@@ -230,3 +232,12 @@ def _span(text: str) -> tuple[int, int] | None:
         return _one_day(date.fromisoformat(text)) if len(text) == len("2023-09-11") else None
     except ValueError:
         return None
+
+
+def _plain(number: float) -> str:
+    """A limit as people write it; commas also keep it from looking like an account number.
+
+    >>> _plain(100000.0), _plain(0.5), _plain(1e12)
+    ('100,000', '0.5', '1,000,000,000,000')
+    """
+    return f"{number:,.0f}" if number == int(number) else f"{number:g}"

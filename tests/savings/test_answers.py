@@ -231,3 +231,34 @@ def test_too_few_bills_after_do_not_touch_the_range_before() -> None:
     )  # fmt: skip
     only = measure_savings(alone, STATION, upgrade=(work.start, work.end), long_term=year())
     assert both.nac_before == only.nac_before
+
+
+@pytest.mark.parametrize("spread", [0.02, 0.1, 0.5])
+def test_even_use_still_shows_its_price_when_the_costs_are_exact(spread: float) -> None:
+    """Judged by the price's own standard error, not by how much use varies."""
+    use = 100.0 * (1 + spread * np.sin(np.arange(24)))
+    found = price_of(prices(12.0 + 1.10 * use, use), stated=None, delivered=False)
+    assert found.per_unit == pytest.approx(1.10, rel=1e-6)
+
+
+def test_a_charge_by_the_bill_and_one_by_the_day_are_told_apart() -> None:
+    rng = np.random.default_rng(1)
+    days = rng.integers(25, 40, 24)
+    use = rng.uniform(20, 150, 24)
+    end = np.cumsum(days)
+    for charge in (np.full(24, 12.0), 0.4 * days):
+        p = Periods(
+            (end - days).astype(np.int32), end.astype(np.int32), use, charge + 1.10 * use,
+            np.zeros(24, bool), np.ones(24, np.int32),
+        )  # fmt: skip
+        found = price_of(p, stated=None, delivered=False)
+        assert found.per_unit == pytest.approx(1.10, rel=1e-9)
+
+
+def test_no_more_than_all_can_be_saved() -> None:
+    bills, work = house(24, 14, effect=1.0, noise=0.03)
+    found = measure_savings(bills, STATION, upgrade=(work.start, work.end), long_term=year())
+    assert found.normalized.fraction == pytest.approx(1.0, abs=1e-9)
+    assert found.normalized.fraction_high == pytest.approx(1.0, abs=1e-9)
+    assert found.avoided.fraction_high is not None
+    assert found.avoided.fraction_high <= 1.0
