@@ -5,7 +5,9 @@ from __future__ import annotations
 from datetime import date, timedelta
 
 EPOCH = date(1970, 1, 1)
-FIRST_SANE_DAY = (date(1900, 1, 1) - EPOCH).days  # a bill or a station day before this is a typing error
+FIRST_SANE_DAY = (
+    date(1900, 1, 1) - EPOCH
+).days  # a bill or a station day before this is a typing error
 LAST_SANE_DAY = (date(2100, 1, 1) - EPOCH).days
 
 
