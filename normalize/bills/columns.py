@@ -13,7 +13,7 @@ from dataclasses import dataclass, field, replace
 from normalize.bills.amounts import as_text, is_blank, split_amount
 from normalize.bills.headings import Heading, header_score, squeeze, take_apart
 from normalize.bills.table import HEADER_LINES, LIKELY_HEADER, RawRow, RawTable
-from normalize.bills.vocabulary import ROLES
+from normalize.bills.vocabulary import ESTIMATED_NO, ESTIMATED_YES, ROLES
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
 from normalize.units import FUELS, canonical_unit
 
@@ -117,7 +117,11 @@ def _assign(columns: Columns, body: Sequence[RawRow]) -> Columns:
         columns,
         by_role=by_role,
         notes=tuple(k for k, role in enumerate(role_of) if role == "notes"),
-        accounts=tuple(k for k, role in enumerate(role_of) if role == "account"),
+        accounts=tuple(
+            k
+            for k, role in enumerate(role_of)
+            if role == "account" and by_role.get("estimated") != k
+        ),
         usage=usage,
     )
 
@@ -129,6 +133,8 @@ _READ_DATES = {"register start": "start", "register": "end"}
 def _reading_role(heading: Heading, body: Sequence[RawRow], k: int) -> str:
     """A heading's role; where it speaks of a reading, the cells say if its date or its number."""
     role = heading.role
+    if role in ("fuel", "account") and _holds_marks(body, k):
+        return "estimated"
     about = {"read", "reading", "readings", "register", "index"} & set(heading.words)
     if role not in (*_READINGS, *_READ_DATES) or not about or "date" in heading.words:
         return role
@@ -138,6 +144,15 @@ def _reading_role(heading: Heading, body: Sequence[RawRow], k: int) -> str:
     if 2 * dates > len(filled):
         return _READ_DATES.get(role, role)
     return _READINGS.get(role, role) if _holds_numbers(body, k) and filled else role
+
+
+def _holds_marks(body: Sequence[RawRow], k: int) -> bool:
+    """Whether a column of "types" tells how each bill was read: Actual, Estimated, Cancelled."""
+    cells = [as_text(row.cells[k]).strip().lower() for row in body[:500] if k < len(row.cells)]
+    filled = [c for c in cells if c]
+    marks = [c for c in filled if len(c) > 1 and c in (ESTIMATED_YES | ESTIMATED_NO)]
+    known = [c for c in filled if c in (ESTIMATED_YES | ESTIMATED_NO) or c.startswith("cancel")]
+    return bool(marks) and 10 * len(known) >= 9 * len(filled)
 
 
 def _holds_numbers(body: Sequence[RawRow], k: int) -> bool:

@@ -62,6 +62,13 @@ CORPUS = [
         reading=("numbers have a decimal comma", "dates are day first"),
     ),
     Ugly(
+        "a column of types tells how each bill was read, not whose it is",
+        "Start,End,Therms,Type,Cost\n2023-01-05,2023-02-06,81,Estimated,95.10\n"
+        "2023-02-06,2023-03-07,70.5,Actual,88\n",
+        [("2023-01-05", "2023-03-07", 151.5)],
+        reading=("mark of an estimated reading from column 'Type'",),
+    ),
+    Ugly(
         "tabs, UTF-16 with its mark (a spreadsheet's 'Unicode text')",
         "Start\tEnd\tTherms\n1/5/2023\t2/6/2023\t81\n2/6/2023\t3/17/2023\t70.5\n".encode("utf-16"),
         [("2023-01-05", "2023-02-06", 81.0), ("2023-02-06", "2023-03-17", 70.5)],
