@@ -209,6 +209,58 @@ def _number(data: Bytes, a: int, b: int, point: int) -> tuple[float, int]:
 
 
 @kernel
+def _cell_ends(data: Bytes, j: int, delimiter: int) -> int:
+    """Where a cell ends that can only end at byte j; -1 if it goes on."""
+    if j >= data.shape[0] or data[j] == delimiter or data[j] == 10:
+        return j
+    if data[j] == 13 and (j + 1 >= data.shape[0] or data[j + 1] == 10):
+        return j + 1
+    return -1
+
+
+@kernel
+def _quick_stamp(data: Bytes, j: int, delimiter: int, fields: Int, i: int, seen: Long) -> int:
+    """A stamp of the date seen last and a plain time; where its cell ends, or -1 for neither."""
+    cut = j + seen[1]
+    if cut + 6 > data.shape[0] or not (data[cut] == 32 or data[cut] == 84):
+        return -1
+    for m in range(seen[1]):
+        if data[j + m] != data[seen[0] + m]:
+            return -1
+    a = cut + 1
+    colon = a + 1 if data[a + 1] == 58 else a + 2
+    stop = colon + 3
+    if stop < data.shape[0] and data[stop] == 58:
+        stop += 3
+    end = _cell_ends(data, stop, delimiter)
+    if end < 0 or stop > data.shape[0] or not _clock_time(data, cut, stop, fields, i):
+        return -1
+    k = seen[2]
+    fields[i, 0], fields[i, 1], fields[i, 2] = fields[k, 0], fields[k, 1], fields[k, 2]
+    return end
+
+
+@kernel
+def _quick_number(data: Bytes, j: int, delimiter: int, point: int) -> tuple[float, int]:
+    """A number such as 12 or -0.125 and where its cell ends, or -1 for anything less plain."""
+    sign, mantissa, digits, decimals = 1.0, 0, 0, 0
+    n = data.shape[0]
+    if j < n and data[j] == 45:
+        sign, j = -1.0, j + 1
+    while j < n and 48 <= data[j] <= 57:
+        mantissa = mantissa * 10 + (data[j] - 48)
+        digits, j = digits + 1, j + 1
+    if j < n and data[j] == point and point != delimiter:
+        j += 1
+        while j < n and 48 <= data[j] <= 57:
+            mantissa = mantissa * 10 + (data[j] - 48)
+            digits, decimals, j = digits + 1, decimals + 1, j + 1
+    if digits == 0 or digits > 15:
+        return 0.0, -1
+    return sign * (mantissa / _POWERS[decimals]), _cell_ends(data, j, delimiter)
+
+
+@kernel
 def _word(data: Bytes, a: int, b: int, spans: Long, count: int) -> int:
     """Number of a word among those seen; a new one is remembered.  -1 when there are too many."""
     for k in range(count):
@@ -255,6 +307,23 @@ def read_lines(
         begins, ends = 0, 0
         k, blank, more = 0, True, True
         while more:
+            role = roles[k] if k < columns else 0
+            end = -1
+            if role == _STAMP and seen[2] >= 0:
+                end = _quick_stamp(data, j, delimiter, fields, i, seen)
+                if end >= 0:
+                    acc[0] = 6
+            elif role in (_USE, _COST):
+                number, end = _quick_number(data, j, delimiter, point)
+                if end >= 0:
+                    value[i, slots[k]], number_state[i, slots[k]] = number, 1
+            if end >= 0:
+                blank = False
+                j = end
+                k += 1
+                more = j < n and data[j] != 10
+                j += 1
+                continue
             quoted = j < n and data[j] == 34
             a = j + 1 if quoted else j
             j = a
@@ -273,7 +342,6 @@ def read_lines(
                 blank = False
                 if k >= columns:
                     state[i] = _TOO_WIDE
-            role = roles[k] if k < columns else 0
             if role == _STAMP:
                 begins, ends = a, b
                 _dated(data, a, b, fields, i, acc, seen)

@@ -140,10 +140,10 @@ def _named_date(text: bytes) -> tuple[int, int, int]:
 
 
 def _order(lines: Lines, answers: Answers, where: str) -> tuple[Order, str]:
-    some = lines.fields[:, 0] >= 0
-    a, b = lines.fields[some, 0], lines.fields[some, 1]
-    if a.size == 0 or np.median(a) > 31:
+    a, b = lines.fields[:, 0], lines.fields[:, 1]
+    if 2 * np.count_nonzero(a > 31) >= np.count_nonzero(a >= 0):
         return "year first", ""
+    b = np.where(a >= 0, b, -1)
     if answers.dates is not None:
         return answers.dates, f"dates are {answers.dates}, as you said"
     first, second = np.count_nonzero(a > 12), np.count_nonzero(b > 12)

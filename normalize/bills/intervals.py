@@ -75,7 +75,8 @@ def is_interval_file(file: BillFile, answers: Answers, score: Score) -> CsvHead 
     timed = [row for row in body if _has_time(cell(row, when), cell(row, columns.get("time")))]
     if 2 * len(timed) > len(body) and _within_days(timed, when):
         return head
-    return head if head.lines > MANY_DAYS and _daily(body, when) else None
+    spans = columns.get("start") is not None and columns.get("end") is not None
+    return head if head.lines > MANY_DAYS and not spans and _daily(body, when) else None
 
 
 def _date_column(columns: Columns) -> int | None:

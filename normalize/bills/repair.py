@@ -154,14 +154,14 @@ def _fates(
     """One entry for each row. lines : of the rows that went to the kernel."""
     # A million readings come to ten thousand days, most of them without a word to say.
     plain = ((batch.note == 0) & (batch.fate >= 0)).tolist()
-    fates = batch.fate.tolist()
+    names = [f"period {k}" for k in (batch.fate + 1).tolist()]
     i = 0
     for row in rows:
         if not _usable(row):
             yield LedgerEntry(row.file, row.line, "left out", row.problem or _missing(row))
             continue
         if plain[i]:
-            yield LedgerEntry(row.file, row.line, f"period {fates[i] + 1}", row.note)
+            yield LedgerEntry(row.file, row.line, names[i], row.note)
         else:
             yield _entry(row, batch, i, lines, kind)
         i += 1
