@@ -31,7 +31,8 @@ MAX_NAME: Final = 200  # a longer name is cut; nobody reads it and it can break 
 MAX_TEXT: Final = 2000  # so is a sentence
 
 _DIGITS = re.compile(
-    r"\d{4}-\d{2}-\d{2}(?!\d)"  # a date: kept
+    r"\b(?:US[1CRSW]|CA[01N])\d{8}\b"  # a public weather station's identifier: kept
+    r"|\d{4}-\d{2}-\d{2}(?!\d)"  # a date: kept
     r"|\d{1,3}(?:,\d{3})+(?:\.\d+)?"  # an amount with separators: kept
     r"|\d+\.\d+"  # an amount with decimals: kept
     r"|\d(?:[ \-]?\d)+"
@@ -93,12 +94,16 @@ def mask(text: str) -> str:
     'gas_…5678.csv'
     >>> mask("12 Quince Street, read 2023-09-11, 20230911")
     '12 Quince Street, read 2023-09-11, 20230911'
+    >>> mask("station USW00094765, account ACW00094765")
+    'station USW00094765, account ACW…4765'
     """
     return _DIGITS.sub(_masked, text)
 
 
 def _masked(match: re.Match[str]) -> str:
     text = match.group()
+    if text[0].isalpha():
+        return text
     digits = "".join(c for c in text if c.isdigit())
     least = MIN_MASKED_DIGITS if digits == text else MIN_MASKED_GROUPED
     if "," in text or "." in text or len(digits) < least or _DATES.fullmatch(text):
