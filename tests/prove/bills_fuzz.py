@@ -110,40 +110,11 @@ def fuzz(seconds: float, seed: int) -> tuple[Counter[str], list[str]]:
     return outcomes, faults
 
 
-def guided(arguments: list[str]) -> None:
-    """The same with atheris (coverage-guided), where it is installed: arguments of libFuzzer."""
-    import importlib
-
-    atheris = importlib.import_module("atheris")
-    folder = tempfile.TemporaryDirectory()
-    corpus = Path(folder.name) / "corpus"
-    corpus.mkdir()
-    for k, data in enumerate(seeds()):
-        (corpus / f"{k}").write_bytes(data)
-    file = Path(folder.name) / "bills.csv"
-
-    def one_input(data: bytes) -> None:
-        file.write_bytes(data[1:])
-        options = dict(OPTIONS[data[0] % len(OPTIONS)]) if data else {}
-        try:
-            reconcile(read_bills(file, **options))  # type: ignore[arg-type]
-        except NormalizeError:
-            return
-
-    atheris.instrument_all()
-    atheris.Setup([sys.argv[0], *arguments, str(corpus)], one_input)
-    atheris.Fuzz()
-
-
 if __name__ == "__main__":
-    if sys.argv[1:2] == ["atheris"]:
-        guided(sys.argv[2:])
     given = float(sys.argv[1]) if len(sys.argv) > 1 else 600.0
     start = int(sys.argv[2]) if len(sys.argv) > 2 else 1
     counts, found = fuzz(given, start)
-    print(
-        f"{sum(counts.values()):,} inputs in {given:g} s, seed {start}: "
-        f"{dict(counts.most_common())}"
-    )
+    tried = sum(counts.values())
+    print(f"{tried:,} inputs in {given:g} s, seed {start}: {dict(counts.most_common())}")
     print("\n\n".join(found[:5]))
     sys.exit(bool(found))
