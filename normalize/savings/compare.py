@@ -37,7 +37,7 @@ from normalize.savings.kernel import (
 )
 from normalize.savings.methods import METHOD, METHOD_HELD, Methods
 from normalize.savings.results import Estimate, Savings
-from normalize.savings.sides import Work, codes, label_periods
+from normalize.savings.sides import Moment, Work, codes, label_periods
 from normalize.savings.stated import STATED_F, at_stated, needs_stated
 from normalize.weather.temperature import DailyTemperature
 from normalize.weather.year import LongTermYear
@@ -350,7 +350,7 @@ def measure_savings(
     bills: Bills,
     weather: DailyTemperature,
     *,
-    upgrade: tuple[int, int],
+    upgrade: tuple[Moment, Moment],
     long_term: LongTermYear | None,
     confidence: float = CONFIDENCE,
     forms: Sequence[str] | None = None,
@@ -359,22 +359,17 @@ def measure_savings(
 ) -> Savings:
     """How much an account's use changed after the work.
 
-    upgrade : day numbers ``[start, end)`` of the work window.  long_term : see
+    upgrade : first and last day of the work, as dates or ISO text, both in it; or day numbers
+    ``[start, end)``.  long_term : see
     ``long_term_year``; None leaves only avoided use.  confidence : two-sided, 0.5 to 0.999.
     Returns Savings; a part that cannot be known carries its reason instead of a value.
     Errors: NoUpgrade when the window is empty.  Source: docs/method.md §3-§5.
     """
-    start, end = upgrade
-    if end <= start:
-        raise NoUpgrade(
-            f"the work ends (day {end}) before it starts (day {start})",
-            wanted="the first day of work, and the day after its last",
-        )
     if not 0.5 <= confidence <= 0.999:
         raise NoUpgrade(f"confidence {confidence}", wanted="a share between 0.5 and 0.999")
     return compare(
         align(bills.periods, weather),
-        Work(start, end),
+        Work.of(upgrade),
         long_term,
         confidence=confidence,
         forms=forms,

@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from datetime import date
 
 import numpy as np
 from numpy.typing import NDArray
 
+from normalize.days import day_of, day_of_iso
 from normalize.defaults import WINDOW_DAYS
+from normalize.errors import NoUpgrade
 from normalize.fitting.align import Aligned
 from normalize.fitting.columns import AFTER, BEFORE, UNUSED
 
@@ -23,6 +26,18 @@ REASONS = {
 }
 
 
+Moment = int | date | str
+
+
+def _day(when: date | str) -> int:
+    try:
+        return day_of(when) if isinstance(when, date) else day_of_iso(when)
+    except ValueError:
+        raise NoUpgrade(
+            f"{when!r} is no date", wanted="a day of the work, written 2023-09-11"
+        ) from None
+
+
 @dataclass(frozen=True, slots=True)
 class Work:
     """The time of the work on one account.
@@ -34,6 +49,24 @@ class Work:
     start: int
     end: int
     windows: tuple[tuple[int, int], ...] = ()
+
+    @classmethod
+    def of(cls, upgrade: tuple[Moment, Moment]) -> Work:
+        """The work from first to last day: dates or ISO text, both days in it; or day numbers
+        ``[start, end)``, half-open as everywhere inside.
+
+        >>> Work.of(("2023-09-11", "2023-09-22")) == Work.of((19611, 19623))
+        True
+        """
+        first, last = upgrade
+        start = first if isinstance(first, int) else _day(first)
+        end = last if isinstance(last, int) else _day(last) + 1
+        if end <= start:
+            raise NoUpgrade(
+                f"the work ends ({last}) before it starts ({first})",
+                wanted="the first and the last day of the work",
+            )
+        return cls(start, end)
 
 
 def label_periods(

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from normalize.bills.periods import Bills, Periods
+from normalize.days import date_of
 from normalize.errors import NoUpgrade
 from normalize.fitting.align import align
 from normalize.savings.checks import cv_limit, fractional_uncertainty
@@ -262,3 +263,13 @@ def test_no_more_than_all_can_be_saved() -> None:
     assert found.normalized.fraction_high == pytest.approx(1.0, abs=1e-9)
     assert found.avoided.fraction_high is not None
     assert found.avoided.fraction_high <= 1.0
+
+
+def test_the_work_may_be_given_as_dates_or_day_numbers() -> None:
+    bills, work = house(24, 18)
+    first, last = date_of(work.start), date_of(work.end - 1)
+    numbers = measure_savings(bills, STATION, upgrade=(work.start, work.end), long_term=None)
+    for days in ((first, last), (first.isoformat(), last.isoformat())):
+        assert measure_savings(bills, STATION, upgrade=days, long_term=None) == numbers
+    with pytest.raises(NoUpgrade, match="is no date"):
+        measure_savings(bills, STATION, upgrade=("2023-09-31", "2023-10-02"), long_term=None)
