@@ -19,6 +19,7 @@ if TYPE_CHECKING:
 
     Bytes = NDArray[np.uint8]
     Int = NDArray[np.int32]
+    Small = NDArray[np.int16]
     Long = NDArray[np.int64]
     Float = NDArray[np.float64]
     Byte = NDArray[np.uint8]
@@ -43,8 +44,8 @@ _ACC = 9
 
 
 @kernel
-def _end_number(fields: Int, i: int, acc: Long, value: int, digits: int) -> None:
-    if digits > 8 or acc[0] > 5:
+def _end_number(fields: Small, i: int, acc: Long, value: int, digits: int) -> None:
+    if digits > 8 or acc[0] > 5 or (value > 9999 and not (acc[0] == 0 and digits == 8)):
         acc[6] = 1
         return
     if acc[0] == 0:
@@ -77,7 +78,7 @@ def _mark(c: int, acc: Long) -> None:
 
 
 @kernel
-def _stamp(data: Bytes, a: int, b: int, fields: Int, i: int, acc: Long) -> None:
+def _stamp(data: Bytes, a: int, b: int, fields: Small, i: int, acc: Long) -> None:
     """Numbers of data[a:b] appended to fields[i]."""
     value, digits, fraction = 0, 0, False
     for j in range(a, b):
@@ -105,7 +106,7 @@ def _stamp(data: Bytes, a: int, b: int, fields: Int, i: int, acc: Long) -> None:
 
 
 @kernel
-def _clock_time(data: Bytes, a: int, b: int, fields: Int, i: int) -> bool:
+def _clock_time(data: Bytes, a: int, b: int, fields: Small, i: int) -> bool:
     """A time such as 0:15 or T00:15:00 into fields[i, 3:6]; False for anything less plain."""
     if a < b and (data[a] == 32 or data[a] == 84):
         a += 1
@@ -142,7 +143,7 @@ def _same_bytes(data: Bytes, a: int, b: int, size: int) -> bool:
 
 
 @kernel
-def _dated(data: Bytes, a: int, b: int, fields: Int, i: int, acc: Long, seen: Long) -> None:
+def _dated(data: Bytes, a: int, b: int, fields: Small, i: int, acc: Long, seen: Long) -> None:
     """A stamp; the date is taken from the line that last wrote the same one.
 
     seen : first byte, length and line of that date.
@@ -167,7 +168,7 @@ def _dated(data: Bytes, a: int, b: int, fields: Int, i: int, acc: Long, seen: Lo
 
 
 @kernel
-def _end_stamp(fields: Int, offset: Int, i: int, acc: Long) -> None:
+def _end_stamp(fields: Small, offset: Int, i: int, acc: Long) -> None:
     """The hour of 24, the offset, or fields[i, 0] = -1 for what is no stamp."""
     offset[i] = _NO_OFFSET
     if acc[2] != 0:
@@ -219,7 +220,7 @@ def _cell_ends(data: Bytes, j: int, delimiter: int) -> int:
 
 
 @kernel
-def _quick_stamp(data: Bytes, j: int, delimiter: int, fields: Int, i: int, seen: Long) -> int:
+def _quick_stamp(data: Bytes, j: int, delimiter: int, fields: Small, i: int, seen: Long) -> int:
     """A stamp of the date seen last and a plain time; where its cell ends, or -1 for neither."""
     cut = j + seen[1]
     if cut + 6 > data.shape[0] or not (data[cut] == 32 or data[cut] == 84):
@@ -281,7 +282,7 @@ def _word(data: Bytes, a: int, b: int, spans: Long, count: int) -> int:
 @kernel
 def read_lines(
     data: Bytes, begin: int, delimiter: int, point: int, roles: Long, slots: Long,
-    state: Byte, fields: Int, offset: Int, span: Long,
+    state: Byte, fields: Small, offset: Int, span: Long,
     value: Float, number_state: Byte, number_span: Long,
     words: Int, word_spans: Long, word_count: Long,
 ) -> int:  # fmt: skip
@@ -294,14 +295,18 @@ def read_lines(
     n, columns, i, j = data.shape[0], roles.shape[0], 0, begin
     acc = np.zeros(_ACC, np.int64)
     seen = np.full(3, -1, np.int64)
+    spoilt = True  # the generic reader has left marks in acc
     last = np.full(words.shape[1], -1, np.int64)
     while j < n:
-        for m in range(_ACC):
-            acc[m] = 0
+        if spoilt:
+            for m in range(_ACC):
+                acc[m] = 0
+        acc[0], spoilt = 0, False
         state[i] = 0
         fields[i, 0] = -1
-        value[i, 0] = value[i, 1] = np.nan
-        number_state[i, 0] = number_state[i, 1] = 0
+        for m in range(value.shape[1]):
+            value[i, m] = np.nan
+            number_state[i, m] = 0
         for m in range(words.shape[1]):
             words[i, m] = -1
         begins, ends = 0, 0
@@ -324,6 +329,7 @@ def read_lines(
                 more = j < n and data[j] != 10
                 j += 1
                 continue
+            spoilt = True
             quoted = j < n and data[j] == 34
             a = j + 1 if quoted else j
             j = a
@@ -374,7 +380,10 @@ def read_lines(
             j += 1
         if not blank and state[i] == 0:
             state[i] = _FULL
-        _end_stamp(fields, offset, i, acc)
+        if spoilt or acc[0] != 6:
+            _end_stamp(fields, offset, i, acc)
+        else:
+            offset[i] = _NO_OFFSET
         if fields[i, 0] < 0:
             span[i, 0], span[i, 1] = begins, ends
         i += 1
@@ -383,7 +392,7 @@ def read_lines(
 
 @kernel
 def local_seconds(
-    fields: Int, state: Byte, places: Long, first_of_month: Long, local: Long, known: Byte
+    fields: Small, state: Byte, places: Long, first_of_month: Long, local: Long, known: Byte
 ) -> None:
     """Seconds since 1970 by the file's own clock; known 0 where a line has no such moment.
 
@@ -442,7 +451,7 @@ class Lines:
     """
 
     state: Byte
-    fields: Int
+    fields: Small
     offset: Int
     span: Long
     value: Float
@@ -467,11 +476,11 @@ def take_apart(
     # The kernel fills what it reads; pages of spans that nothing needs are never touched.
     out = Lines(
         np.empty(lines, np.uint8),
-        np.empty((lines, 6), np.int32),
+        np.empty((lines, 6), np.int16),  # every page that is touched costs time
         np.empty(lines, np.int32),
         np.empty((lines, 2), np.int64),
-        np.empty((lines, 2), np.float64),
-        np.empty((lines, 2), np.uint8),
+        np.empty((lines, 1 + (COST in roles)), np.float64),
+        np.empty((lines, 1 + (COST in roles)), np.uint8),
         np.empty((lines, 4), np.int64),
         np.empty((lines, max(kinds, 1)), np.int32),
         (),

@@ -125,9 +125,9 @@ def read_intervals(file: BillFile, head: CsvHead, answers: Answers) -> Understoo
         columns, _unit_rows(big, columns), (), said=answers.unit, fuel=fuel, where=where
     )
     moments = moments_of(big.lines, _stamp_role(columns), big.data, answers, where)
-    use, cost = big.numbers(USE_SLOT), big.numbers(COST_SLOT)
-    if columns.get("cost") is None:
-        cost = np.full(cost.shape, np.nan)
+    use = big.numbers(USE_SLOT)
+    priced = columns.get("cost") is not None
+    cost = big.numbers(COST_SLOT) if priced else np.full(use.shape, np.nan)
     rows, notes = _summed(big, moments, own, use, cost, _estimated(big, columns))
     roles = [role for role in ("start", "end", "read", "time") if columns.get(role) is not None]
     return Understood(
@@ -187,7 +187,7 @@ class _Big:
                 roles[k] = WORD
                 kinds[words.get(k, k)] = len(kinds)
         flat = np.frombuffer(data, np.uint8)
-        count = data.count(b"\n", begin) + 1
+        count = data.count(b"\n", begin) + 1 if head.encoding == "utf-16" else head.lines + 1
         point = "," if decimal == "comma" else "."
         lines = take_apart(flat, begin, head.delimiter, point, roles, count)
         return cls(file.name, data, columns.line + 1, lines, kinds, decimal)

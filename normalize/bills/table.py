@@ -132,7 +132,7 @@ def _bytes_of(file: Path) -> bytes:
     except (OSError, ValueError) as err:  # ValueError: a NUL in the path
         reason = err.strerror if isinstance(err, OSError) and err.strerror else "its name is odd"
         raise UnreadableBills(f"the file cannot be opened ({reason})", where=file.name) from None
-    if not data.strip():
+    if not data or data.isspace():
         raise UnreadableBills("the file is empty", where=file.name, wanted="a table of bills")
     for magic, what, cure in _NOT_TABLES:
         if data.startswith(magic):
