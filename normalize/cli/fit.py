@@ -10,6 +10,7 @@ import click
 from normalize.cli.console import say, show
 from normalize.cli.options import (
     FOLDER,
+    NO_WORK,
     STDOUT,
     assess_folder,
     input_files,
@@ -74,10 +75,10 @@ def to_text(result: SiteResult) -> str:
     blocks = [mask(name(result.site.name))]
     for account in result.accounts:
         blocks.append(_heading(account))
-        if account.unavailable:
+        if account.unavailable and not chosen(account.tried_before):
             blocks.append(paragraph(account.unavailable, indent="  "))
             continue
-        for side, tried, reason in _sides(account):
+        for side, tried, reason in _sides(account, result):
             blocks.append(_side_text(side, tried, reason))
     blocks.append(
         "Use is per day; heating, cooling and line are slopes, per °F and day; * marks the chosen "
@@ -93,8 +94,12 @@ def _heading(account: AccountResult) -> str:
     return ", ".join(dict.fromkeys(word for word in words if word))  # no word twice
 
 
-def _sides(account: AccountResult) -> tuple[tuple[str, tuple[FormTried, ...], str], ...]:
+def _sides(
+    account: AccountResult, result: SiteResult
+) -> tuple[tuple[str, tuple[FormTried, ...], str], ...]:
     savings = account.savings
+    if any(u.name == NO_WORK for u in result.site.upgrades):
+        return (("the last 24 months", account.tried_before, savings.before_unavailable),)
     return (
         ("before the work", account.tried_before, savings.before_unavailable),
         ("after the work", account.tried_after, savings.after_unavailable),

@@ -105,6 +105,9 @@ def assess_folder(
         return result
 
 
+NO_WORK = "no work named"  # stands for the upgrade that a site without one does not have
+
+
 def _all_before(site: Site) -> Site:
     """The site as if work came after its last bill: every bill then stands before it."""
     from dataclasses import replace
@@ -113,7 +116,7 @@ def _all_before(site: Site) -> Site:
 
     ends = [int(b.periods.end.max()) for b in site.bills if b is not None and b.periods.n]
     last = max(ends, default=0)
-    return replace(site, upgrades=(Upgrade("no work named", last, last + 1),))
+    return replace(site, upgrades=(Upgrade(NO_WORK, last, last + 1),))
 
 
 def input_files(result: SiteResult) -> tuple[Path, ...]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import shutil
 import signal
 import subprocess
 import sys
@@ -302,3 +303,16 @@ def test_the_version_is_shown(run: Run) -> None:
     import normalize
 
     assert run("--version").out == f"normalize {normalize.__version__}\n"
+
+
+def test_fit_needs_no_upgrade(run: Run, samples: Path, tmp_path: Path) -> None:
+    """The fits alone are of use before any work is done."""
+    site = tmp_path / "house"
+    shutil.copytree(samples / "quince_street", site)
+    toml = (site / "site.toml").read_text(encoding="utf-8")
+    (site / "site.toml").write_text(toml[: toml.index("[[upgrade]]")], encoding="utf-8")
+    ran = run("fit", site)
+    assert ran.code == 0
+    assert "the last 24 months" in ran.out
+    assert "after the work" not in ran.out
+    assert run("savings", site).code == 1
