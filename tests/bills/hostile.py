@@ -84,7 +84,7 @@ MAKERS: dict[str, Callable[[Path], None]] = {
         p.write_text(HEAD + f"<!--{'x' * 200_000}-->" + BOMB + "<feed>&a9;</feed>") and None
     ),
     "XML nested 100,000 deep": lambda p: p.write_text("<a>" * 100_000) and None,
-    "XML of 300,000 readings without a block": lambda p: (
+    "XML of 300,000 daily readings": lambda p: (
         p.write_text(gas([reading(JAN + DAY * k, DAY, 1) for k in range(300_000)])) and None
     ),
     "XML values nan, inf, 1e308": lambda p: (
@@ -202,4 +202,4 @@ READABLE = {
     "interval file of 2 million broken lines",
     "interval file across all years",
 }
-SLOW = {"one line of 99 MB", "XML of 300,000 readings without a block", "20 million empty lines"}
+SLOW = {"one line of 99 MB", "XML of 300,000 daily readings", "20 million empty lines"}
