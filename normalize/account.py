@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from normalize.days import iso
+from normalize.bills.deliveries import k_factor
 from normalize.errors import NormalizeError
 from normalize.fitting.align import Aligned, align
 from normalize.savings.cautions import Circumstances, cautions_of
@@ -16,7 +16,7 @@ from normalize.savings.offer import forms_offered
 from normalize.savings.results import Estimate, Price, Savings
 from normalize.savings.sides import REASONS, Work
 from normalize.savings.worth import price_of
-from normalize.site import AccountResult, Curve, PeriodRow, Site
+from normalize.site import AccountResult, Curve, KFactorRow, PeriodRow, Site
 from normalize.sitefile import AccountPlan
 from normalize.units import Factor, co2_kg_per_unit, mmbtu_per_unit
 
@@ -25,8 +25,8 @@ if TYPE_CHECKING:
     from normalize.fitting.results import Fit
 
 NEAR_WORK_DAYS = 60
+DEALERS_BASE_F = 65.0  # of the degree-days in a dealer's K factor (common practice, no source)
 CURVE_POINTS = 121
-MAX_FLAGS = 5  # odd bills told one by one among the cautions
 
 
 def unread_account(plan: AccountPlan, problem: str, confidence: float) -> AccountResult:
@@ -64,7 +64,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
         confidence=confidence,
         forms=forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms),
         occupied_since=plan.occupied_since,
-        net_metered=plan.net_metered,
+        net_metered=plan.net_metered and not bills.gross,
         year_unavailable=site.year_unavailable,
         delivered=bills.kind == "delivery",
     )
@@ -94,6 +94,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
             n_after=sum(1 for label in found.labels if label == "after"),
         ),
         cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work)),
+        k_factors=_k_factors(bills, aligned, found),
         work_start=work.start,
         work_end=work.end,
     )
@@ -163,14 +164,7 @@ def _curve(fit: Fit | None, aligned: Aligned) -> Curve | None:
 def _outside(site: Site, aligned: Aligned, found: Comparison) -> float | None:
     if site.year is None:
         return None
-    seen = [
-        aligned.weather.temp_f[
-            int(aligned.start[i]) - aligned.weather.first_day : int(aligned.end[i])
-            - aligned.weather.first_day
-        ]
-        for i, label in enumerate(found.labels)
-        if label == "before"
-    ]
+    seen = [_days_of(aligned, i) for i, label in enumerate(found.labels) if label == "before"]
     together = np.concatenate(seen) if seen else np.empty(0)
     return share_outside(site.year.temp_f, site.year.weight, together)
 
@@ -202,7 +196,7 @@ def _circumstances(
         water_only=not plan.space_heating,
         tried_before=found.tried_before,
         used_nothing=_used_nothing(bills, found),
-        bill_cautions=(*bills.cautions, *_flags(bills)),
+        bill_cautions=bills.cautions,
     )
 
 
@@ -212,17 +206,29 @@ def _unfit(savings: Savings, reason: str, confidence: float) -> Savings:
     return Savings(None, None, none, none, none, none, reason, reason)
 
 
-def _flags(bills: Bills) -> tuple[str, ...]:
-    """What is odd about single periods, in sentences; the ledger has every one."""
-    told = []
-    for flag in bills.flags[:MAX_FLAGS]:
-        i = flag.period - 1
-        start, end = int(bills.periods.start[i]), int(bills.periods.end[i]) - 1
-        told.append(f"The bill of {iso(start)} to {iso(end)}: {flag.note}.")
-    more = len(bills.flags) - MAX_FLAGS
-    if more > 0:
-        told.append(f"{more} more odd bills are listed with the bills.")
-    return tuple(told)
+def _k_factors(bills: Bills, aligned: Aligned, found: Comparison) -> tuple[KFactorRow, ...]:
+    """The dealers' factor of either side, at base 65 °F, for fuel that is delivered."""
+    if bills.kind != "delivery":
+        return ()
+    out = []
+    for side in ("before", "after"):
+        mine = [i for i, label in enumerate(found.labels) if label == side]
+        base = np.concatenate(
+            [_days_of(aligned, i) for i in mine] or [np.empty(0, dtype=np.float64)]
+        )
+        used = sum(float(bills.periods.use[i]) for i in mine)
+        factor = k_factor(used, float(np.maximum(DEALERS_BASE_F - base, 0.0).sum()))
+        if factor is not None:
+            out.append((side, factor.degree_days_per_unit, factor.unit_per_degree_day))
+    return tuple(out)
+
+
+def _days_of(aligned: Aligned, i: int) -> np.ndarray:
+    first = aligned.weather.first_day
+    days: np.ndarray = aligned.weather.temp_f[
+        int(aligned.start[i]) - first : int(aligned.end[i]) - first
+    ]
+    return days
 
 
 def _co2(plan: AccountPlan, bills: Bills) -> Factor | None:

@@ -90,6 +90,10 @@ class Curve:
     use_per_day: NDArray[np.float64]
 
 
+# Side, degree-days (base 65 °F) a unit, units a degree-day: the dealers' K factor both ways.
+KFactorRow = tuple[str, float, float]
+
+
 @dataclass(frozen=True, slots=True)
 class AccountResult:
     """One account, assessed, with all that a report draws.
@@ -116,6 +120,7 @@ class AccountResult:
     mmbtu_per_unit: Factor | None
     checks: tuple[Check, ...]
     cautions: tuple[str, ...]
+    k_factors: tuple[KFactorRow, ...] = ()  # delivered fuel only
     work_start: int | None = None
     work_end: int | None = None
 

@@ -78,3 +78,13 @@ def test_solar_that_hides_use_gives_no_answer_but_its_reason(house: Site) -> Non
     for estimate in (account.savings.normalized, account.savings.avoided):
         assert isinstance(estimate, Estimate)
         assert estimate.unavailable == "panels hide the use"
+
+
+def test_the_dealers_factor_stands_both_ways_round(assessed: tuple[str, SiteResult]) -> None:
+    """Degree-days a gallon and gallons a degree-day are inverses (common practice)."""
+    for account in assessed[1].accounts:
+        delivered = account.bills is not None and account.bills.kind == "delivery"
+        assert len(account.k_factors) == (2 if delivered else 0)
+        for _, per_unit, per_degree_day in account.k_factors:
+            assert per_unit * per_degree_day == pytest.approx(1.0)
+            assert 1.0 < per_unit < 100.0

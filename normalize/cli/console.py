@@ -43,6 +43,11 @@ _PLAIN: Final = {
 }
 
 SLOW_SECONDS: Final = 5.0  # a warm run is done by then
+SOON_SECONDS: Final = 1.0
+PREPARING: Final = (
+    "preparing the calculation for this computer, once: a few minutes. Later runs take seconds."
+)
+STILL_WORKING: Final = "still working."
 _SPACES: Final = frozenset("\n\u00a0\u202f\u2009")
 
 
@@ -126,17 +131,10 @@ def patience() -> Iterator[None]:
     """
     from normalize.jit import kernels_are_ready
 
-    if not kernels_are_ready():
-        say(
-            "preparing the calculation for this computer, once: a few minutes. "
-            "Later runs take seconds."
-        )
-        yield
-        return
+    # Said only once it takes long: a file that cannot be read is told at once, and alone.
+    ready = kernels_are_ready()
     later = threading.Timer(
-        SLOW_SECONDS,
-        say,
-        ["still working. A first run takes a few minutes, as it prepares the calculation, once."],
+        SLOW_SECONDS if ready else SOON_SECONDS, say, [STILL_WORKING if ready else PREPARING]
     )
     later.daemon = True  # never keeps a finished or interrupted command alive
     later.start()

@@ -145,6 +145,14 @@ def _account(account: AccountResult) -> Json:
             "after": [_tried(t) for t in account.tried_after],
         },
         "checks": [_check(c) for c in account.checks],
+        "k_factors": [
+            {"side": side, "degree_days_per_unit": a, "unit_per_degree_day": b}
+            for side, a, b in account.k_factors
+        ],
+        "flags": [
+            {"period": f.period, "what": f.what, "note": f.note}
+            for f in (account.bills.flags if account.bills else ())
+        ],
         "cautions": list(account.cautions),
     }
 

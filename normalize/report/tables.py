@@ -369,6 +369,10 @@ def factors_table(account: AccountResult, currency: str) -> Table:
     for name, factor in factors:
         source = "no factor is known" if factor is None else words.factor_source(factor)
         rows.append((name, n.full(None if factor is None else factor.value), source))
+    many = words.unit_word(account.unit)
+    for side, per_unit, per_degree_day in account.k_factors:
+        source = f"K factor, base 65 °F; the other way round: {n.full(per_degree_day)} {many} each"
+        rows.append((f"degree-days a {unit}, {side} the work", n.full(per_unit), source))
     return _table(FACTORS, ("what", "value", "source"), rows, (1,))
 
 

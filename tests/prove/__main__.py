@@ -37,7 +37,10 @@ def main(names: list[str]) -> int:
     for name in modules:
         begin = time.perf_counter()
         print(f"{name} …", file=sys.stderr, flush=True)
-        parts.append(importlib.import_module(f"tests.prove.{name}").prove())
+        module = importlib.import_module(f"tests.prove.{name}")
+        if not hasattr(module, "prove"):  # run by its own name; writes its own page
+            continue
+        parts.append(module.prove())
         print(f"{name}: {time.perf_counter() - begin:.0f} s", file=sys.stderr, flush=True)
     EVIDENCE.write_text("\n".join(parts), encoding="utf-8")
     return 0
