@@ -6,6 +6,7 @@ Commands are loaded when they are asked for, and load the science when they run,
 
 from __future__ import annotations
 
+import gc
 import importlib
 import os
 import sys
@@ -30,6 +31,7 @@ COMMANDS: Final = {
 DONE: Final = 0
 NEEDS_A_PERSON: Final = 1
 WRONG_USAGE: Final = 2
+COLLECT_SELDOM = (200_000, 50, 100)
 INTERRUPTED: Final = 130  # 128 + SIGINT, what shells expect
 
 
@@ -96,6 +98,9 @@ def cli() -> None:
 
 def main(args: Sequence[str] | None = None) -> int:
     """Run the command line and return its exit code.  Never lets a traceback through."""
+    if args is None:
+        # A process of its own, soon over: the collector need not walk every import's objects.
+        gc.set_threshold(*COLLECT_SELDOM)
     forgiving_streams()
     try:
         # Commands return nothing for "done", or an exit code.
