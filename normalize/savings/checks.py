@@ -66,6 +66,8 @@ def checks_of(savings: Savings, *, outside_share: float | None, n_after: int) ->
     for side, fit in (("before", savings.before), ("after", savings.after)):
         if fit is not None:
             out += _fit_checks(side, fit, savings.reporting_days)
+            out += _slope_checks(side, fit)
+            out += _error_checks(side, fit)
     if savings.before is not None and outside_share is not None:
         out.append(_outside(outside_share))
     out += _saving_checks(savings, n_after)
@@ -75,7 +77,7 @@ def checks_of(savings: Savings, *, outside_share: float | None, n_after: int) ->
 def _fit_checks(side: str, fit: Fit, reporting_days: int) -> list[Check]:
     limit = cv_limit(reporting_days)
     ok_cv = fit.cv_rmse <= limit if math.isfinite(fit.cv_rmse) else None
-    checks = [
+    return [
         Check(
             "CV(RMSE)", side, fit.cv_rmse if math.isfinite(fit.cv_rmse) else None, limit, ok_cv,
             "the bills' scatter about the fit, as a share of mean use",
@@ -103,6 +105,10 @@ def _fit_checks(side: str, fit: Fit, reporting_days: int) -> list[Check]:
             GUIDELINE,
         ),
     ]  # fmt: skip
+
+
+def _slope_checks(side: str, fit: Fit) -> list[Check]:
+    checks = []
     for term, t in list(zip(fit.terms, fit.t, strict=True))[1:]:
         checks.append(
             Check(
@@ -116,6 +122,12 @@ def _fit_checks(side: str, fit: Fit, reporting_days: int) -> list[Check]:
                 IPMVP,
             )
         )
+    return checks
+
+
+def _error_checks(side: str, fit: Fit) -> list[Check]:
+    """How the bills err, and where the balance temperature ended."""
+    checks = []
     if math.isfinite(fit.durbin_watson):
         low, high = DW_RANGE
         checks.append(

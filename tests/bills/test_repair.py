@@ -366,6 +366,8 @@ def check_everything(given_rows: list[BillRow], kind: str, net: bool) -> None:
 @given(histories(), st.sampled_from(["meter", "delivery"]), st.booleans())
 def test_any_mix_of_faults_reconciles(given_rows: list[BillRow], kind: str, net: bool) -> None:
     check_everything(given_rows, kind, net)
+    _, ledger = repair(given_rows, kind=kind, net_metered=net)
+    assert len(ledger) == len(given_rows)
 
 
 @pytest.mark.kernel
