@@ -27,8 +27,3 @@ COOLING_RANGE_F: Final = (50.0, 85.0)
 # When a form is set aside.
 MIN_ABS_T: Final = 2.0  # IPMVP asks |t| > 2 (memory)
 BASE_LOAD_T: Final = -2.0  # a base load is called negative only when two standard errors below 0
-
-# Serial correlation that the interval integrates out (method §5).
-RHO_LOW: Final = -0.4
-RHO_HIGH: Final = 0.9
-RHO_POINTS: Final = 27

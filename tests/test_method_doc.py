@@ -47,10 +47,10 @@ def test_every_default_that_decides_a_number_is_in_the_table() -> None:
 def test_the_grid_of_correlations_is_the_one_described() -> None:
     import numpy as np
 
-    from normalize import defaults
-    from normalize.fitting.correlation import RHO, RHO_ZERO
+    from normalize.fitting import rho
+    from normalize.fitting.rho import RHO, RHO_ZERO
 
-    grid = np.linspace(defaults.RHO_LOW, defaults.RHO_HIGH, defaults.RHO_POINTS)
+    grid = np.linspace(rho.RHO_LOW, rho.RHO_HIGH, rho.RHO_POINTS)
     assert pytest.approx(grid, abs=1e-12) == RHO
     assert RHO[RHO_ZERO] == 0.0
 

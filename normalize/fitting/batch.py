@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from normalize import defaults
+from normalize.fitting.blocks import judge_in_blocks
 from normalize.fitting.columns import AICC, BIC, WIDTH
 from normalize.fitting.forms import BY_CODE, N_FORMS, form_named
 from normalize.fitting.side import choose, fit_side
@@ -49,6 +50,9 @@ class Batch:
     station: NDArray[np.int32]
     wanted: NDArray[np.bool_]  # (accounts, N_FORMS): offered to the choice
     net: NDArray[np.bool_]  # (accounts,)
+    # Other things that use answers to, means over each period from their normal level:
+    drivers: NDArray[np.float64] | None = None  # (rows, K)
+    n_drivers: NDArray[np.int64] | None = None  # (accounts,) of the columns; None: all K
 
 
 def stations(series: Sequence[tuple[int, NDArray[np.float64]]], first: int, last: int) -> Stations:
@@ -138,8 +142,24 @@ def take_side(start, end, use, side, code, temp, first_day, order, equal):
 
 
 @kernel
+def take_drivers(drivers, count, side, code):
+    """(n, count) drivers of one side's periods."""
+    n = 0
+    for p in range(side.shape[0]):
+        n += 1 if side[p] == code else 0
+    out = np.empty((n, count))
+    at = 0
+    for p in range(side.shape[0]):
+        if side[p] == code:
+            for j in range(count):
+                out[at, j] = drivers[p, j]
+            at += 1
+    return out
+
+
+@kernel
 def _fit_batch(
-    start, end, use, side, offsets, station, wanted, net, code,
+    start, end, use, side, offsets, station, drivers, n_drivers, wanted, net, code,
     temp, order, soff, first_day, settings, criterion, equal, allowed,
 ):  # fmt: skip
     accounts = offsets.shape[0] - 1
@@ -148,11 +168,13 @@ def _fit_batch(
     for i in range(accounts):
         a, b = offsets[i], offsets[i + 1]
         g, h = soff[station[i]], soff[station[i] + 1]
-        ts, ps, y, d, w, _, _ = take_side(
+        ts, ps, y, d, w, s, e = take_side(
             start[a:b], end[a:b], use[a:b], side[a:b], code,
             temp[g:h], first_day[station[i]], order[g:h], equal,
         )  # fmt: skip
-        rows = fit_side(ts, ps, y, d, w, np.empty((y.shape[0], 0)), wanted[i], net[i], settings)
+        own = take_drivers(drivers[a:b], n_drivers[i], side[a:b], code)
+        rows = fit_side(ts, ps, y, d, w, own, wanted[i], net[i], settings)
+        judge_in_blocks(rows, ts, ps, y, d, w, own, s, e, wanted[i], net[i], settings)
         fits[i] = rows
         chosen[i] = choose(rows, allowed[i], criterion)
     return fits, chosen
@@ -179,6 +201,7 @@ def fit_batch(
     chosen: NDArray[np.int8]
     fits, chosen = _fit_batch(
         *gate(batch),
+        *driver_gate(batch),
         wanted,
         np.ascontiguousarray(batch.net, dtype=np.bool_),
         code,
@@ -212,6 +235,18 @@ def gate(
         np.ascontiguousarray(batch.side, dtype=np.uint8),
         np.ascontiguousarray(batch.offsets, dtype=np.int64),
         np.ascontiguousarray(batch.station, dtype=np.int32),
+    )
+
+
+def driver_gate(batch: Batch) -> tuple[NDArray[np.float64], NDArray[np.int64]]:
+    """Drivers (rows, K) and how many each account has, coerced as ``gate`` does."""
+    drivers = batch.drivers if batch.drivers is not None else np.empty((len(batch.start), 0))
+    count = batch.n_drivers
+    if count is None:
+        count = np.full(len(batch.offsets) - 1, drivers.shape[1])
+    return (
+        np.ascontiguousarray(drivers, dtype=np.float64),
+        np.ascontiguousarray(count, dtype=np.int64),
     )
 
 

@@ -10,15 +10,14 @@ from __future__ import annotations
 
 import numpy as np
 
-from normalize.defaults import RHO_HIGH, RHO_LOW, RHO_POINTS
 from normalize.fitting.forms import COOLING, HEATING, LINE, TWO_SLOPES
-from normalize.fitting.least_squares import weighted_fit
+from normalize.fitting.least_squares import RANK, weighted_fit
+from normalize.fitting.rho import RHO, RHO_ZERO
 from normalize.fitting.sweep import days_below
 from normalize.jit import kernel
 
-RHO = np.round(np.linspace(RHO_LOW, RHO_HIGH, RHO_POINTS), 10)
-RHO_ZERO = int(np.argmin(np.abs(RHO)))  # index of ρ = 0
 WEAK = 1e-5  # a τ column that keeps less than this of its length cannot be told from the rest
+FLOOR = 1e-300  # bills without any noise: no logarithm of zero
 
 
 @kernel
@@ -75,30 +74,6 @@ def signed_power(rho, steps):
 
 
 @kernel
-def whiten(rows, place, rho):
-    """Rows made independent under AR(1) at ρ; returns them and ½·log of the scalings."""
-    n, k = rows.shape
-    out = np.empty((n, k))
-    left = 1.0 - rho * rho
-    log_scale = 0.5 * np.log(left)
-    first = np.sqrt(left)
-    for j in range(k):
-        out[0, j] = rows[0, j] * first
-    for i in range(1, n):
-        steps = place[i] - place[i - 1]
-        phi = rho
-        scale = 1.0
-        if steps > 1.0:
-            phi = signed_power(rho, steps)
-            ratio = left / (1.0 - phi * phi)
-            scale = np.sqrt(ratio)
-            log_scale += 0.5 * np.log(ratio)
-        for j in range(k):
-            out[i, j] = (rows[i, j] - phi * rows[i - 1, j]) * scale
-    return out, log_scale
-
-
-@kernel
 def well_determined(jac, w, n_tau):
     """Whether the τ columns (the last n_tau) stand clear of all others."""
     n, k = jac.shape
@@ -120,6 +95,120 @@ def well_determined(jac, w, n_tau):
 
 
 @kernel
+def _upright(jac, resid, w):
+    """Rows scaled by √(w/w̄), columns made orthonormal: (rows, R, length of the residual, ok).
+
+    rows (n, k+1): Q with J = QR, and the residual at length 1, so that sums of products are
+    well conditioned whatever the units.
+    """
+    n, k = jac.shape
+    v = np.empty((n, k + 1))
+    r = np.zeros((k, k))
+    mean = w.sum() / n
+    length = 0.0
+    for p in range(n):
+        root = np.sqrt(w[p] / mean)
+        for j in range(k):
+            v[p, j] = jac[p, j] * root
+        v[p, k] = resid[p] * root
+        length += v[p, k] * v[p, k]
+    length = np.sqrt(length)
+    for j in range(k):
+        before = 0.0
+        for p in range(n):
+            before += v[p, j] * v[p, j]
+        for _ in range(2):
+            for i in range(j):
+                dot = 0.0
+                for p in range(n):
+                    dot += v[p, i] * v[p, j]
+                r[i, j] += dot
+                for p in range(n):
+                    v[p, j] -= dot * v[p, i]
+        left = 0.0
+        for p in range(n):
+            left += v[p, j] * v[p, j]
+        if not left > RANK * RANK * before:
+            return v, r, length, False
+        r[j, j] = np.sqrt(left)
+        for p in range(n):
+            v[p, j] /= r[j, j]
+    if length > 0.0:
+        for p in range(n):
+            v[p, k] /= length
+    return v, r, length, True
+
+
+@kernel
+def _products(v, place):
+    """Sums of products from which X'V⁻¹X at any ρ follows: (a, b, c, rows after a gap).
+
+    Without gaps (1−ρ²)·X'V⁻¹X = a − ρ·b + ρ²·c, since each row stands against the one before.
+    """
+    n, k = v.shape
+    a = np.zeros((k, k))
+    b = np.zeros((k, k))
+    c = np.zeros((k, k))
+    gaps = np.empty(n, dtype=np.int64)
+    count = 0
+    for p in range(n):
+        if p > 0 and place[p] - place[p - 1] > 1.0:
+            gaps[count] = p
+            count += 1
+            continue
+        for i in range(k):
+            for j in range(i + 1):
+                a[i, j] += v[p, i] * v[p, j]
+                if p == 0:
+                    c[i, j] -= v[p, i] * v[p, j]
+                else:
+                    b[i, j] += v[p, i] * v[p - 1, j] + v[p - 1, i] * v[p, j]
+                    c[i, j] += v[p - 1, i] * v[p - 1, j]
+    return a, b, c, gaps[:count]
+
+
+@kernel
+def _at_rho(v, place, products, rho, out):
+    """Lower triangle of (1−ρ²)·X'V⁻¹X into ``out``; returns ½·log of the scalings."""
+    a, b, c, gaps = products
+    k = v.shape[1]
+    for i in range(k):
+        for j in range(i + 1):
+            out[i, j] = a[i, j] - rho * b[i, j] + rho * rho * c[i, j]
+    left = 1.0 - rho * rho
+    log_scale = 0.5 * np.log(left)
+    for g in range(gaps.shape[0]):
+        p = gaps[g]
+        phi = signed_power(rho, place[p] - place[p - 1])
+        ratio = left / (1.0 - phi * phi)
+        log_scale += 0.5 * np.log(ratio)
+        for i in range(k):
+            u = v[p, i] - phi * v[p - 1, i]
+            for j in range(i + 1):
+                out[i, j] += ratio * u * (v[p, j] - phi * v[p - 1, j])
+    return log_scale
+
+
+@kernel
+def _cholesky(m, k):
+    """Lower factor of the leading k×k, in place; the rows below follow.  False if singular."""
+    rows = m.shape[0]
+    for j in range(k):
+        total = m[j, j]
+        for i in range(j):
+            total -= m[j, i] * m[j, i]
+        if not total > 0.0:
+            return False
+        m[j, j] = np.sqrt(total)
+        for r in range(j + 1, rows):
+            total = m[r, j]
+            for i in range(j):
+                total -= m[r, i] * m[j, i]
+            m[r, j] = total / m[j, j]
+    return True
+
+
+@kernel
 def through_rho(jac, resid, w, place, targets):
     """At every ρ: (log-likelihood, shift of each target, its scale², innovation variance).
 
@@ -129,59 +218,52 @@ def through_rho(jac, resid, w, place, targets):
     """
     n, k = jac.shape
     m = targets.shape[0]
-    rows = np.empty((n, k + 1))
-    mean = 0.0
-    for p in range(n):
-        mean += w[p]
-    mean /= n
-    for p in range(n):
-        root = np.sqrt(w[p] / mean)
-        for j in range(k):
-            rows[p, j] = jac[p, j] * root
-        rows[p, k] = resid[p] * root
-    one = np.ones(n)
     like = np.full(RHO.shape[0], -np.inf)
     shift = np.zeros((RHO.shape[0], m))
     scale2 = np.zeros((RHO.shape[0], m))
     innovation = np.zeros(RHO.shape[0])
-    floor = 1e-300  # bills without any noise: no logarithm of zero
-    for i in range(RHO.shape[0]):
-        white, log_scale = whiten(rows, place, RHO[i])
-        x = np.ascontiguousarray(white[:, :k])
-        y = np.ascontiguousarray(white[:, k])
-        coef, cov, rss, ok = weighted_fit(x, y, one)
-        if not ok:
-            continue
-        s = max(rss, floor)
-        innovation[i] = s / (n - k)
-        like[i] = log_scale + 0.5 * _log_det(cov) - 0.5 * (n - k) * np.log(s)
-        for t in range(m):
-            for j in range(k):
-                shift[i, t] += targets[t, j] * coef[j]
-                for q in range(k):
-                    scale2[i, t] += targets[t, j] * cov[j, q] * targets[t, q]
-            scale2[i, t] *= innovation[i]
-    return like, shift, scale2, innovation
-
-
-@kernel
-def _log_det(a):
-    """Logarithm of the determinant of a small positive definite matrix (Cholesky)."""
-    k = a.shape[0]
-    c = a.copy()
-    total = 0.0
-    for j in range(k):
-        for i in range(j):
-            c[j, j] -= c[j, i] * c[j, i]
-        if not c[j, j] > 0.0:
-            return -np.inf
-        total += np.log(c[j, j])
-        c[j, j] = np.sqrt(c[j, j])
-        for r in range(j + 1, k):
+    v, r, length, ok = _upright(jac, resid, w)
+    if not ok:
+        return like, shift, scale2, innovation
+    # Gradients in the orthonormal coordinates: u = R⁻ᵀ g.
+    u = np.zeros((m, k))
+    for t in range(m):
+        for j in range(k):
+            total = targets[t, j]
             for i in range(j):
-                c[r, j] -= c[r, i] * c[j, i]
-            c[r, j] /= c[j, j]
-    return total
+                total -= r[i, j] * u[t, i]
+            u[t, j] = total / r[j, j]
+    log_r = 0.0
+    for j in range(k):
+        log_r += np.log(r[j, j])
+    products = _products(v, place)
+    low = np.empty((k + 1, k + 1))
+    z = np.empty(k)
+    for at in range(RHO.shape[0]):
+        log_scale = _at_rho(v, place, products, RHO[at], low)
+        if not _cholesky(low, k):
+            continue
+        rss = low[k, k]
+        half_log = 0.0
+        for j in range(k):
+            rss -= low[k, j] * low[k, j]
+            half_log += np.log(low[j, j])
+        s = max(rss * length * length, FLOOR)
+        innovation[at] = s / (n - k)
+        like[at] = log_scale - half_log - log_r - 0.5 * (n - k) * np.log(s)
+        for t in range(m):
+            square = 0.0
+            dot = 0.0
+            for j in range(k):
+                total = u[t, j]
+                for i in range(j):
+                    total -= low[j, i] * z[i]
+                z[j] = total / low[j, j]
+                square += z[j] * z[j]
+                dot += z[j] * low[k, j]
+            shift[at, t] = dot * length
+            scale2[at, t] = square * innovation[at]
+    return like, shift, scale2, innovation
 
 
 @kernel

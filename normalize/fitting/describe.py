@@ -33,10 +33,12 @@ from normalize.fitting.columns import (
     WORST_T,
     N,
 )
-from normalize.fitting.correlation import RHO, positions, through_rho, weights_of, well_determined
+from normalize.fitting.correlation import through_rho, weights_of, well_determined
 from normalize.fitting.linear import linearise
 from normalize.fitting.profile import profile_gains
 from normalize.fitting.results import Fit, FormTried
+from normalize.fitting.rho import RHO
+from normalize.fitting.spread import rows_of
 from normalize.fitting.student import t_quantile
 from normalize.fitting.sweep import SHIFT_F
 
@@ -66,8 +68,10 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
     form = f.BY_CODE[form_code]
     n = int(row[N])
     jac, resid, held = linearise(row, form_code, side.ts, side.ps, side.y, side.d, side.w, False)
-    place = positions(side.start, side.end)
-    like, _, _, _ = through_rho(jac, resid, side.w, place, np.zeros((1, jac.shape[1])))
+    both = np.column_stack([jac, resid])
+    found, _, weight, place = rows_of(both, side.d, side.w, side.start, side.end)
+    rows, errors = np.ascontiguousarray(found[:, :-1]), np.ascontiguousarray(found[:, -1])
+    like, _, _, _ = through_rho(rows, errors, weight, place, np.zeros((1, jac.shape[1])))
     root = resid * np.sqrt(side.w)
     square = float((root * root).sum())
     mean, rss, tss = float(row[MEAN]), float(row[RSS]), float(row[TSS])
@@ -91,7 +95,7 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
         bias=float((side.w * resid).sum() / (side.w * side.y).sum()) if mean != 0.0 else 0.0,
         terms=form.terms,
         se=se,
-        se_full=None if held else _full_errors(jac, resid, side.w, len(form.terms), row, form_code),
+        se_full=None if held else _full_errors(rows, errors, weight, len(form.terms), form_code),
         t=tuple(
             c / e if e > 0.0 else float("inf")
             for c, e in zip(_coefs(row, form_code), se, strict=True)
@@ -130,7 +134,6 @@ def _full_errors(
     resid: NDArray[np.float64],
     w: NDArray[np.float64],
     terms: int,
-    row: NDArray[np.float64],
     form_code: int,
 ) -> tuple[float, ...] | None:
     """Standard errors of the coefficients with the balance temperatures' own included."""

@@ -1,151 +1,254 @@
 """Quantiles of mixtures of t, and of differences of two t, without random draws.
 
 The difference of two t variables has no closed form and a single Welch t is too narrow, so
-one is integrated against the other by a 32-node Gauss-Legendre rule, mixed over ρ, and the
-quantile found by secants from a single-t guess (docs/method.md §5).
+one is integrated against the other by a Gauss-Legendre rule, mixed over ρ.  The quantile is
+first found for a t with the difference's variance and kurtosis, which is cheap and close, and
+then corrected on the exact mixture (docs/method.md §5).
 """
 
 from __future__ import annotations
 
+from typing import Final
+
 import numpy as np
 
-from normalize.fitting.student import WEIGHTS, t_cdf, t_nodes
+from normalize.fitting.student import (
+    FEW_DF,
+    TABLES_FROM,
+    TABLES_UP_TO,
+    WEIGHTS,
+    WEIGHTS_HALF,
+    make_table,
+    no_tables,
+    t_both,
+    t_from,
+)
 from normalize.jit import kernel
 
-NEGLIGIBLE = 1e-5  # weight of a ρ, as a share of the largest, below which it is left out
-EXACT = 1e-9  # of probability, or of the spread: how exactly a quantile is found
+NEGLIGIBLE: Final = 1e-5  # weight of a ρ, as a share of the largest, below which it is left out
+EXACT: Final = 1e-9  # of probability: how exactly a quantile of single t is found
+EXACT_DIFFERENCE: Final = 1e-6  # and of a difference, whose integral is no better
+NARROW: Final = 1e-12  # a step this small a share of the spread changes nothing
 
 
 @kernel
 def _worth_keeping(weight):
-    """The weights without the implausible ones, adding up to 1 again."""
+    """Positions of the weights that matter, and those weights adding up to 1 again."""
     top = weight.max() * NEGLIGIBLE
-    kept = np.where(weight > top, weight, 0.0)
-    return kept / kept.sum()
+    at = np.empty(weight.shape[0], dtype=np.int64)
+    n = 0
+    total = 0.0
+    for i in range(weight.shape[0]):
+        if weight[i] > top:
+            at[n] = i
+            total += weight[i]
+            n += 1
+    kept = np.empty(n)
+    for i in range(n):
+        kept[i] = weight[at[i]] / total
+    return at[:n], kept
 
 
 @kernel
-def _mixed_cdf(x, weight, centre, scale, df, centre2, scale2, df2, nodes, two):
-    """P(X ≤ x), X = t of df, or the difference of t of df and t of df2 (two)."""
+def _cdf(x, scale, df, values):
+    """(P(scale·T ≤ x), density)."""
+    if not scale > 0.0:
+        if x == 0.0:
+            return 0.5, 0.0
+        return (1.0 if x > 0.0 else 0.0), 0.0
+    p, density = t_both(values, x / scale, df)
+    return p, density / scale
+
+
+@kernel
+def _mixed(x, weight, centre, scale, df, values):
+    """(P(X ≤ x), density) of a mixture of single t, each with its own df."""
+    total = 0.0
+    slope = 0.0
+    for i in range(weight.shape[0]):
+        p, density = _cdf(x - centre[i], scale[i], df[i], values)
+        total += weight[i] * p
+        slope += weight[i] * density
+    return total, slope
+
+
+@kernel
+def _quantile(u, weight, centre, scale, df, values):
+    """(quantile u, spread, density there) of a mixture of single t: Newton in a bracket."""
+    lo = np.inf
+    hi = -np.inf
+    mean = 0.0
+    for i in range(weight.shape[0]):
+        lo = min(lo, centre[i] - 3.0 * scale[i])
+        hi = max(hi, centre[i] + 3.0 * scale[i])
+        mean += weight[i] * centre[i]
+    spread = hi - lo
+    if not spread > 0.0:
+        return lo, 0.0, 0.0
+    variance = 0.0
+    for i in range(weight.shape[0]):
+        variance += weight[i] * (scale[i] * scale[i] + (centre[i] - mean) ** 2)
+    # Where a normal curve of that spread has its quantile, roughly (Tukey's lambda).
+    x = mean + np.sqrt(variance) * 5.0633 * (u**0.135 - (1.0 - u) ** 0.135)
+    lo = -np.inf
+    hi = np.inf
+    density = 0.0
+    for _ in range(100):
+        p, density = _mixed(x, weight, centre, scale, df, values)
+        f = p - u
+        if abs(f) <= EXACT:
+            break
+        if f > 0.0:
+            hi = x
+        else:
+            lo = x
+        step = -f / density if density > 0.0 else (-spread if f > 0.0 else spread)
+        ahead = x + min(max(step, -spread), spread)
+        if ahead <= lo or ahead >= hi:
+            ahead = 0.5 * (lo + hi)
+        # The second: a spread smaller than the rounding of x, as of bills without noise.
+        if abs(ahead - x) <= NARROW * spread or not np.isfinite(ahead):
+            break
+        x = ahead
+    return x, spread, density
+
+
+@kernel
+def _difference(x, weight, centre, wide, df, narrow, nodes, rule, values):
+    """P(X ≤ x) of a mixture of differences: the wider t's curve averaged over the narrower.
+
+    nodes (2, m) : quantiles of the narrower one's t at the rule's nodes, for either case.
+    """
     total = 0.0
     for i in range(weight.shape[0]):
-        if weight[i] == 0.0:
-            continue
-        if not two:
-            total += weight[i] * _step_cdf(x - centre[i], scale[i], df)
-            continue
-        wide = scale[i]
-        narrow = scale2[i]
-        wide_df = df
-        # The narrower one is integrated over, so that the wider one's curve is smooth there.
-        if narrow > wide:
-            wide, narrow = narrow, wide
-            wide_df = df2
-        side = 1 if scale2[i] > scale[i] else 0
         inner = 0.0
-        at = x - (centre[i] - centre2[i])
-        for q in range(WEIGHTS.shape[0]):
-            inner += WEIGHTS[q] * _step_cdf(at + narrow * nodes[side, q], wide, wide_df)
+        at = x - centre[i]
+        which = 0 if narrow[i] >= 0.0 else 1
+        step = abs(narrow[i])
+        if TABLES_FROM <= df[i] <= TABLES_UP_TO and wide[i] > 0.0:
+            table = values[df[i]]
+            step /= wide[i]
+            at /= wide[i]
+            for q in range(rule.shape[0]):
+                inner += rule[q] * t_from(table, at + step * nodes[which, q], df[i])
+        else:
+            for q in range(rule.shape[0]):
+                inner += rule[q] * _cdf(at + step * nodes[which, q], wide[i], df[i], values)[0]
         total += weight[i] * inner
     return total
 
 
 @kernel
-def _step_cdf(x, scale, df):
-    if scale > 0.0:
-        return t_cdf(x / scale, df)
-    if x == 0.0:
-        return 0.5
-    return 1.0 if x > 0.0 else 0.0
-
-
-@kernel
-def _one_t_cdf(x, weight, centre, scale, df):
-    """The mixture with each component a single t: cheap, and close enough to start from."""
-    total = 0.0
-    for i in range(weight.shape[0]):
-        if weight[i] > 0.0:
-            total += weight[i] * _step_cdf(x - centre[i], scale[i], df)
-    return total
-
-
-@kernel
-def _first_guess(u, weight, centre, scale, df):
-    """Quantile u of the mixture of single t, by bisection to a thousandth of the spread."""
-    lo = np.inf
-    hi = -np.inf
-    for i in range(weight.shape[0]):
-        if weight[i] > 0.0:
-            lo = min(lo, centre[i] - 3.0 * scale[i])
-            hi = max(hi, centre[i] + 3.0 * scale[i])
-    spread = hi - lo
-    if not spread > 0.0:
-        return lo, 0.0
-    for _ in range(60):
-        if _one_t_cdf(lo, weight, centre, scale, df) <= u:
-            break
-        lo -= spread
-    for _ in range(60):
-        if _one_t_cdf(hi, weight, centre, scale, df) >= u:
-            break
-        hi += spread
-    for _ in range(12):
-        x = 0.5 * (lo + hi)
-        if _one_t_cdf(x, weight, centre, scale, df) > u:
-            hi = x
-        else:
-            lo = x
-    return 0.5 * (lo + hi), spread
-
-
-@kernel
-def _find(u, weight, centre, scale, df, centre2, scale2, df2, nodes, two):
-    """The quantile u: a first guess from single t, then secants on the exact mixture."""
-    joint = np.sqrt(scale * scale + scale2 * scale2) if two else scale
-    middle = centre - centre2 if two else centre
-    x0, spread = _first_guess(u, weight, middle, joint, min(df, df2))
+def _corrected(u, guess, weight, centre, wide, df, narrow, nodes, rule, values):
+    """The quantile u of the mixture of differences, from a close guess."""
+    x0, spread, density = guess
     if not spread > 0.0:
         return x0
-    f0 = _mixed_cdf(x0, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
-    # A step along the density of the guess, then secants.
-    delta = 1e-3 * spread
-    density = _one_t_cdf(x0 + delta, weight, middle, joint, min(df, df2))
-    density = (density - _one_t_cdf(x0 - delta, weight, middle, joint, min(df, df2))) / (2 * delta)
-    x1 = x0 - f0 / density if density > 0.0 else x0 + delta
-    x1 = min(max(x1, x0 - spread), x0 + spread)
+    f0 = _difference(x0, weight, centre, wide, df, narrow, nodes, rule, values) - u
+    if abs(f0) <= EXACT_DIFFERENCE:
+        return x0
+    step = -f0 / density if density > 0.0 else 1e-3 * spread
+    x1 = x0 + min(max(step, -spread), spread)
     for _ in range(50):
-        f1 = _mixed_cdf(x1, weight, centre, scale, df, centre2, scale2, df2, nodes, two) - u
-        if abs(f1) <= EXACT or f1 == f0:
+        f1 = _difference(x1, weight, centre, wide, df, narrow, nodes, rule, values) - u
+        if f1 == f0:
             break
         step = -f1 * (x1 - x0) / (f1 - f0)
-        step = min(max(step, -spread), spread)
-        x0 = x1
-        f0 = f1
-        x1 = x1 + step
-        if abs(step) <= EXACT * spread:
+        x0, f0 = x1, f1
+        x1 += min(max(step, -spread), spread)
+        if abs(f1) <= EXACT_DIFFERENCE or abs(step) <= NARROW * spread:
             break
     return x1
 
 
 @kernel
-def mixture_range(weight, centre, scale, df, confidence):
-    """Two-sided range of a mixture over ρ of t with df: (low, high)."""
-    none = np.zeros((2, WEIGHTS.shape[0]))
+def _alike(scale, df, scale2, df2):
+    """(scale, df) of the t with the variance and kurtosis of a difference of two."""
+    if df <= 4 or df2 <= 4:
+        return np.sqrt(scale * scale + scale2 * scale2), min(df, df2)
+    v1 = scale * scale * df / (df - 2.0)
+    v2 = scale2 * scale2 * df2 / (df2 - 2.0)
+    v = v1 + v2
+    if not v > 0.0:
+        return 0.0, min(df, df2)
+    kurtosis = (v1 * v1 * 6.0 / (df - 4.0) + v2 * v2 * 6.0 / (df2 - 4.0)) / (v * v)
+    joint = int(min(4.0 + 6.0 / kurtosis, 1e6) + 0.5)
+    return np.sqrt(v * (joint - 2.0) / joint), joint
+
+
+@kernel
+def mixture_range_with(weight, centre, scale, df, confidence, tables):
+    """Two-sided range of a mixture over ρ of t with df: (low, high).  tables : student.py."""
     tail = 0.5 * (1.0 - confidence)
-    kept = _worth_keeping(weight)
-    low = _find(tail, kept, centre, scale, df, centre, scale, df, none, False)
-    high = _find(1.0 - tail, kept, centre, scale, df, centre, scale, df, none, False)
+    at, kept = _worth_keeping(weight)
+    make_table(tables, df)
+    dfs = np.full(at.shape[0], df)
+    low, _, _ = _quantile(tail, kept, centre[at], scale[at], dfs, tables[0])
+    high, _, _ = _quantile(1.0 - tail, kept, centre[at], scale[at], dfs, tables[0])
     return low, high
 
 
 @kernel
-def difference_range(weight, centre, scale, df, centre2, scale2, df2, confidence):
+def _nodes_of(df, df2, tables):
+    """(2, m) nodes for the second one narrower, and for the first; and the rule's weights."""
+    short = df >= FEW_DF and df2 >= FEW_DF
+    rule = WEIGHTS_HALF if short else WEIGHTS
+    out = np.empty((2, rule.shape[0]))
+    for which, own in ((0, df2), (1, df)):
+        if short:
+            out[which] = tables[2][own]
+        else:
+            out[which] = tables[1][own]
+    return out, rule
+
+
+@kernel
+def difference_range_with(
+    weight, centre, scale, df, centre2, scale2, df2, confidence, tables
+):  # fmt: skip
     """Two-sided range of the difference of two t, mixed over a shared ρ: (low, high)."""
-    nodes = np.empty((2, WEIGHTS.shape[0]))
-    nodes[0] = t_nodes(df2)
-    nodes[1] = t_nodes(df)
     tail = 0.5 * (1.0 - confidence)
-    kept = _worth_keeping(weight)
-    low = _find(tail, kept, centre, scale, df, centre2, scale2, df2, nodes, True)
-    high = _find(1.0 - tail, kept, centre, scale, df, centre2, scale2, df2, nodes, True)
-    return low, high
+    at, kept = _worth_keeping(weight)
+    n = at.shape[0]
+    # Above the largest table a t is its normal limit's near neighbour: that table serves.
+    df, df2 = min(df, TABLES_UP_TO), min(df2, TABLES_UP_TO)
+    make_table(tables, df)
+    make_table(tables, df2)
+    values = tables[0]
+    middle = centre[at] - centre2[at]
+    joint = np.empty(n)
+    joint_df = np.empty(n, dtype=np.int64)
+    wide = np.empty(n)
+    narrow = np.empty(n)
+    wide_df = np.empty(n, dtype=np.int64)
+    for i in range(n):
+        a, b = scale[at[i]], scale2[at[i]]
+        joint[i], joint_df[i] = _alike(a, df, b, df2)
+        make_table(tables, joint_df[i])
+        # The narrower one is integrated over, so that the wider one's curve is smooth there;
+        # its sign tells which of the two it is.
+        wide[i], narrow[i], wide_df[i] = (b, -a, df2) if b > a else (a, b, df)
+    low = _quantile(tail, kept, middle, joint, joint_df, values)
+    high = _quantile(1.0 - tail, kept, middle, joint, joint_df, values)
+    if df == TABLES_UP_TO and df2 == TABLES_UP_TO:
+        # Both are nearly normal: a t with the same variance and kurtosis is exact enough.
+        return low[0], high[0]
+    nodes, rule = _nodes_of(df, df2, tables)
+    return (
+        _corrected(tail, low, kept, middle, wide, wide_df, narrow, nodes, rule, values),
+        _corrected(1.0 - tail, high, kept, middle, wide, wide_df, narrow, nodes, rule, values),
+    )
+
+
+@kernel
+def mixture_range(weight, centre, scale, df, confidence):
+    """``mixture_range_with`` for a single range."""
+    return mixture_range_with(weight, centre, scale, df, confidence, no_tables())
+
+
+@kernel
+def difference_range(weight, centre, scale, df, centre2, scale2, df2, confidence):
+    """``difference_range_with`` for a single range."""
+    return difference_range_with(
+        weight, centre, scale, df, centre2, scale2, df2, confidence, no_tables()
+    )

@@ -18,7 +18,7 @@ from normalize.defaults import (
 from normalize.errors import NoUpgrade
 from normalize.fitting import forms as f
 from normalize.fitting.align import Aligned, align
-from normalize.fitting.batch import Batch, Stations, gate, settings
+from normalize.fitting.batch import Batch, Stations, driver_gate, gate, settings
 from normalize.fitting.columns import AFTER, BASE, BEFORE, BIC, UNUSED
 from normalize.fitting.describe import as_tried
 from normalize.fitting.fit import CHOICE, also_tried, batch_of_one, chosen_of, side_data
@@ -82,7 +82,8 @@ def run_batch(
     chosen: NDArray[np.int8]
     answers: NDArray[np.float64]
     fits, chosen, answers = compare_batch(
-        *gate(batch), offered, wanted, np.ascontiguousarray(batch.net, dtype=np.bool_), force,
+        *gate(batch), *driver_gate(batch), offered, wanted,
+        np.ascontiguousarray(batch.net, dtype=np.bool_), force,
         table.temp, table.order, table.offsets, table.first_day,
         np.concatenate(temp).astype(np.float64), _offsets(temp),
         np.concatenate(days).astype(np.float64), np.concatenate(degrees).astype(np.float64),

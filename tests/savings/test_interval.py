@@ -13,7 +13,8 @@ import pytest
 import statsmodels.api as sm
 from scipy import stats
 
-from normalize.fitting.correlation import RHO, RHO_ZERO, positions, through_rho
+from normalize.fitting.correlation import positions, through_rho
+from normalize.fitting.rho import RHO, RHO_ZERO
 from normalize.savings.kernel import NORMALIZED
 from tests.savings.homes import simulate
 
