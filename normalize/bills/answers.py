@@ -14,6 +14,7 @@ from normalize.bills.dates import ORDERS, Order
 from normalize.bills.periods import BillRow
 from normalize.bills.repair import Kind
 from normalize.bills.sum_rows import SumTo
+from normalize.defaults import MIN_DAYS_A_SIDE
 from normalize.errors import BillError
 from normalize.units import canonical_fuel, canonical_unit
 
@@ -21,6 +22,12 @@ ReadDay = int  # 1 to 31
 NO_COLUMN = "none"  # generation_column of a file whose usage is gross already
 CALENDAR = "calendar"  # read_day for bills of whole calendar months
 TankPercent = Literal["before", "after"]
+
+ONE_BILL = "one bill alone cannot show how use answers to the weather"
+ENOUGH_BILLS = (
+    f"At least {MIN_DAYS_A_SIDE} days of bills on each side of the work are needed, with a winter "
+    "and a summer among them, better a whole year: ask the supplier for the account's history."
+)
 
 CHOICES: dict[str, tuple[str, ...]] = {
     "dates": ORDERS,
@@ -69,7 +76,7 @@ class Understood:
     """A file, read: one account's rows before repair, and how they were understood.
 
     sent : energy sent to the grid was found.  generation : it was added back, so that use is
-    gross.  currency : where the file says it.
+    gross.  currency : where the file says it.  settled : what its lines proved, as answers.
     """
 
     fuel: str
@@ -81,6 +88,7 @@ class Understood:
     sent: bool = False
     generation: bool = False
     currency: str | None = None
+    settled: dict[str, str] = field(default_factory=dict)
 
 
 def answers_of(name: str, given: dict[str, object]) -> Answers:

@@ -26,6 +26,7 @@ from normalize.bills.columns import (
 )
 from normalize.bills.dates import read_written
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
+from normalize.bills.groups import cell, masked
 from normalize.bills.headings import squeeze
 from normalize.bills.interval_kernel import (
     BLANK,
@@ -42,7 +43,6 @@ from normalize.bills.interval_kernel import (
 from normalize.bills.interval_times import Moments, moments_of
 from normalize.bills.local_days import DAY
 from normalize.bills.records import is_estimated
-from normalize.bills.select import cell, masked
 from normalize.bills.sum_rows import day_rows, several
 from normalize.bills.table import BillFile, CsvHead, RawRow, RawTable, Score, csv_head
 from normalize.errors import AmbiguousBills, NoBills, NormalizeError, UnreadableBills

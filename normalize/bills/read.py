@@ -10,11 +10,11 @@ import os
 from collections.abc import Sequence
 from dataclasses import replace
 
-from normalize.bills.answers import Answers, Understood, answers_of
+from normalize.bills.answers import ENOUGH_BILLS, ONE_BILL, Answers, Understood, answers_of
 from normalize.bills.deliveries import fills_sentence
 from normalize.bills.flag_words import flag_cautions, flags_of
 from normalize.bills.headings import header_score, squeeze
-from normalize.bills.periods import Bills
+from normalize.bills.periods import Bills, Periods
 from normalize.bills.repair import reconcile, repair
 from normalize.bills.solar import solar_signature
 from normalize.bills.sum_rows import months_of
@@ -127,12 +127,18 @@ def _repaired(
         account=account, fuel=found.fuel, unit=found.unit, rows=found.rows, periods=periods,
         ledger=ledger, source=((file.name, file.sha256),), reading=found.reading,
         kind=found.kind, currency=found.currency or currency, flags=flags,
-        cautions=(*found.cautions, *flag_cautions(flags)),
+        cautions=(*found.cautions, *flag_cautions(flags), *_lone(periods)),
         unfit=solar_signature(found, periods, net_metered=net_metered), gross=found.generation,
     )  # fmt: skip
     if periods.n == 0:
         raise _no_bills(bills, file.name)
     return bills
+
+
+def _lone(periods: Periods) -> tuple[str, ...]:
+    if periods.n != 1:
+        return ()
+    return (f"{ONE_BILL[0].upper()}{ONE_BILL[1:]}. {ENOUGH_BILLS}",)
 
 
 def _no_bills(bills: Bills, where: str) -> NoBills:

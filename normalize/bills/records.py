@@ -32,9 +32,9 @@ from normalize.bills.dates import (
     read_written,
     settle,
 )
+from normalize.bills.groups import cell
 from normalize.bills.headings import Heading
 from normalize.bills.layouts import Record
-from normalize.bills.select import cell
 from normalize.bills.table import Cell, RawRow, RawTable
 from normalize.bills.vocabulary import (
     CELSIUS,
