@@ -24,6 +24,7 @@ from normalize.fitting.describe import as_tried
 from normalize.fitting.fit import CHOICE, also_tried, batch_of_one, chosen_of, side_data
 from normalize.fitting.results import FormTried
 from normalize.savings.enough import SideFacts, after_reason, before_reason
+from normalize.savings.estimates import estimate_at, normalized_of
 from normalize.savings.kernel import (
     ACTUAL,
     AVOIDED,
@@ -31,7 +32,6 @@ from normalize.savings.kernel import (
     HELD_BEFORE,
     NAC_AFTER,
     NAC_BEFORE,
-    NORMALIZED,
     PREDICTED,
     compare_batch,
 )
@@ -248,38 +248,12 @@ def _same_form(
         held = answers[0, HELD_BEFORE] == 1.0 or answers[0, HELD_AFTER] == 1.0
         method = METHOD_HELD if held else METHOD
         out.append(
-            (f.BY_CODE[code].name, _normalized(answers[0], confidence, method, bool(batch.net[0])))
+            (
+                f.BY_CODE[code].name,
+                normalized_of(answers[0], confidence, method, bool(batch.net[0])),
+            )
         )
     return tuple(out)
-
-
-def _estimate(
-    answer: NDArray[np.float64],
-    at: int,
-    over: float | None,
-    confidence: float,
-    method: str,
-    net: bool = False,
-) -> Estimate:
-    value, low, high, plain_low, plain_high = (float(x) for x in answer[at : at + 5])
-    share = over if over is not None and over > 0.0 else None
-    return Estimate(
-        value=value,
-        low=low,
-        high=high,
-        fraction=value / share if share else None,
-        fraction_low=low / share if share else None,
-        # Nobody can use less than nothing: no more than all of it can be saved.
-        fraction_high=(high if net else min(high, share)) / share if share else None,
-        plain_low=plain_low,
-        plain_high=plain_high,
-        confidence=confidence,
-        method=method,
-    )
-
-
-def _normalized(answer: NDArray[np.float64], confidence: float, method: str, net: bool) -> Estimate:
-    return _estimate(answer, NORMALIZED, float(answer[NAC_BEFORE]), confidence, method, net)
 
 
 def _assemble(
@@ -301,7 +275,7 @@ def _assemble(
     def side(at: int, reason: str, when: int | None, method: str) -> Estimate:
         if reason:
             return Estimate.none(reason, known_from=when, confidence=confidence)
-        return _estimate(answer, at, None, confidence, method)
+        return estimate_at(answer, at, None, confidence, method)
 
     normalized_no = before_no or no_year or after_no
     days = facts[1].days
@@ -313,7 +287,7 @@ def _assemble(
             reason, known_from=work.end + facts[0].typical, confidence=confidence
         )
     else:
-        avoided = _estimate(
+        avoided = estimate_at(
             answer, AVOIDED, float(answer[PREDICTED]), confidence, methods.avoided, net
         )
         if days < SHORT_YEAR_DAYS:
@@ -330,7 +304,7 @@ def _assemble(
                 confidence=confidence,
             )
             if normalized_no
-            else _normalized(answer, confidence, methods.both, net)
+            else normalized_of(answer, confidence, methods.both, net)
         ),
         avoided=avoided,
         before_unavailable=before_no,
