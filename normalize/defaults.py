@@ -24,6 +24,9 @@ SHORT_YEAR_DAYS: Final = 360  # fewer reporting days than this: avoided use "so 
 HEATING_RANGE_F: Final = (40.0, 80.0)
 COOLING_RANGE_F: Final = (50.0, 85.0)
 
+# What an engineering expectation takes where the site file does not say.
+HEATING_SETPOINT_F: Final = 68.0  # °F indoors in the heating season (common practice)
+
 # When a form is set aside.
 MIN_ABS_T: Final = 2.0  # IPMVP asks |t| > 2 (memory)
 BASE_LOAD_T: Final = -2.0  # a base load is called negative only when two standard errors below 0
