@@ -6,6 +6,7 @@ shape of what tables, interval files and ESPI XML come to before repair.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Literal, cast
 
@@ -82,7 +83,7 @@ class Understood:
     fuel: str
     unit: str
     kind: Kind
-    rows: tuple[BillRow, ...]
+    rows: Sequence[BillRow]
     reading: tuple[str, ...]
     cautions: tuple[str, ...] = ()
     sent: bool = False

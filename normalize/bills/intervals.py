@@ -8,6 +8,7 @@ questions are those of every table (columns.py, select.py).
 
 from __future__ import annotations
 
+import csv
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
@@ -25,21 +26,23 @@ from normalize.bills.columns import (
     find_columns,
 )
 from normalize.bills.dates import read_written
+from normalize.bills.day_rows import DayRows
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
 from normalize.bills.groups import cell, masked
 from normalize.bills.headings import squeeze
 from normalize.bills.interval_kernel import (
     BLANK,
-    COST,
     FULL,
     SKIP,
     STAMP,
     TIME,
+    TOO_WIDE,
     USE,
     WORD,
     Lines,
     take_apart,
 )
+from normalize.bills.interval_sums import count_lines, keep_lines
 from normalize.bills.interval_times import Moments, moments_of
 from normalize.bills.local_days import DAY
 from normalize.bills.records import is_estimated
@@ -50,11 +53,9 @@ from normalize.errors import AmbiguousBills, NoBills, NormalizeError, Unreadable
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from normalize.bills.periods import BillRow
-
 MANY_DAYS = 5_000  # daily lines: more than that are read here, for speed
 MAX_LINES = 4_000_000  # a century of quarter hours
-USE_SLOT, COST_SLOT = 0, 1
+MOST_USE = 1e12  # of any unit in one interval
 SAMPLE = 400  # lines looked at to tell what kind of file it is
 
 
@@ -125,9 +126,9 @@ def read_intervals(file: BillFile, head: CsvHead, answers: Answers) -> Understoo
         columns, _unit_rows(big, columns), (), said=answers.unit, fuel=fuel, where=where
     )
     moments = moments_of(big.lines, _stamp_role(columns), big.data, answers, where)
-    use = big.numbers(USE_SLOT)
-    priced = columns.get("cost") is not None
-    cost = big.numbers(COST_SLOT) if priced else np.full(use.shape, np.nan)
+    big.look_again()
+    use = big.number("usage")
+    cost = big.number("cost") if "cost" in big.numbers else np.full(1, np.nan)
     rows, notes = _summed(big, moments, own, use, cost, _estimated(big, columns))
     roles = [role for role in ("start", "end", "read", "time") if columns.get(role) is not None]
     return Understood(
@@ -155,13 +156,20 @@ def _decimal(
 
 @dataclass(frozen=True, slots=True)
 class _Big:
-    """The file taken apart. data : its bytes, recoded if need be.  first : line of lines[0]."""
+    """The file taken apart. data : its bytes, recoded if need be.  first : line of lines[0].
+
+    roles : of the kernel, one for each column.  numbers, kinds : role, or column of an account,
+    to its place among the numbers and the words.
+    """
 
     name: str
     data: bytes
     first: int
     lines: Lines
-    kinds: dict[str | int, int]  # role, or column of an account → place among the words
+    delimiter: str
+    roles: tuple[int, ...]
+    numbers: dict[str, int]
+    kinds: dict[str | int, int]
     decimal: Decimal
 
     @classmethod
@@ -170,27 +178,20 @@ class _Big:
         data = file.data
         if head.encoding == "utf-16":
             data = data.decode("utf-16", errors="replace").encode()
-        if head.lines > MAX_LINES:
-            raise UnreadableBills(f"the file holds more than {MAX_LINES:,} lines", where=file.name)
         begin = 0
         for _ in range(columns.line):
             begin = data.find(b"\n", begin) + 1
-        roles = [SKIP] * len(columns.headings)
-        for role, use in (("usage", USE), ("cost", COST), ("time", TIME)):
-            if (k := columns.get(role)) is not None:
-                roles[k] = use
-        roles[columns.by_role[_stamp_role(columns)]] = STAMP
-        kinds: dict[str | int, int] = {}
-        words = {k: role for role in ("unit", "estimated") if (k := columns.get(role)) is not None}
-        for k in range(len(roles)):
-            if (k in words or k in columns.accounts) and roles[k] == SKIP:
-                roles[k] = WORD
-                kinds[words.get(k, k)] = len(kinds)
         flat = np.frombuffer(data, np.uint8)
-        count = data.count(b"\n", begin) + 1 if head.encoding == "utf-16" else head.lines + 1
+        count = count_lines(flat, begin) + 1
+        if count > MAX_LINES:
+            raise UnreadableBills(f"the file holds more than {MAX_LINES:,} lines", where=file.name)
+        roles, numbers, kinds = _roles(columns)
         point = "," if decimal == "comma" else "."
         lines = take_apart(flat, begin, head.delimiter, point, roles, count)
-        return cls(file.name, data, columns.line + 1, lines, kinds, decimal)
+        return cls(
+            file.name, data, columns.line + 1, lines, head.delimiter, tuple(roles), numbers,
+            kinds, decimal,
+        )  # fmt: skip
 
     def text(self, a: int, b: int) -> str:
         """Some bytes as text."""
@@ -201,16 +202,43 @@ class _Big:
         place = self.kinds.get(kind)
         if place is None:
             return []
-        return [self.text(int(a), int(b)) for a, b in self.lines.vocabulary[place]]
+        return [self.text(int(a), int(b)) for a, b in self.lines.words[place]]
 
-    def numbers(self, slot: int) -> NDArray[np.float64]:
-        """A column of numbers; what the kernel could not read is read as in any table."""
-        value = self.lines.value[:, slot]
-        for i in np.flatnonzero(self.lines.number_state[:, slot] == 2).tolist():
-            a, b = self.lines.number_span[i, 2 * slot : 2 * slot + 2]
-            number = number_of(self.text(int(a), int(b)), self.decimal)
-            value[i] = np.nan if number is None else number
-        return value
+    def number(self, role: str) -> NDArray[np.float64]:
+        """A column of numbers, NaN for none."""
+        return self.lines.value[:, self.numbers[role]]
+
+    def look_again(self) -> None:
+        """What the kernel could not read as a number is read as in any table, in place."""
+        columns = [k for k, role in enumerate(self.roles) if role == USE]
+        for i, begin in self.lines.odd.tolist():
+            end = self.data.find(b"\n", begin)
+            line = self.text(begin, end if end >= 0 else len(self.data))
+            cells = next(csv.reader([line], delimiter=self.delimiter), [])
+            for slot, k in enumerate(columns):
+                number = number_of(cells[k], self.decimal) if k < len(cells) else None
+                self.lines.value[i, slot] = np.nan if number is None else number
+
+
+def _roles(columns: Columns) -> tuple[list[int], dict[str, int], dict[str | int, int]]:
+    """What each column is for; places of roles among numbers and among words."""
+    roles = [SKIP] * len(columns.headings)
+    for role, use in (("usage", USE), ("cost", USE), ("time", TIME)):
+        if (k := columns.get(role)) is not None:
+            roles[k] = use
+    roles[columns.by_role[_stamp_role(columns)]] = STAMP
+    words = {k: role for role in ("unit", "estimated") if (k := columns.get(role)) is not None}
+    kinds: dict[str | int, int] = {}
+    for k in range(len(roles)):
+        if (k in words or k in columns.accounts) and roles[k] == SKIP:
+            roles[k] = WORD
+            kinds[words.get(k, k)] = len(kinds)
+    order = [k for k, role in enumerate(roles) if role == USE]
+    numbers: dict[str, int] = {}
+    for each in ("usage", "cost"):
+        if (k := columns.by_role.get(each, -1)) >= 0:
+            numbers[each] = order.index(k)
+    return roles, numbers, kinds
 
 
 def _of_account(
@@ -241,7 +269,7 @@ def _of_account(
         if not hits:
             raise UnreadableBills("no line belongs to what rows names", where=where,
                                   wanted="one of " + ", ".join(shown[:12]))  # fmt: skip
-        kept = own & np.isin(big.lines.words[:, big.kinds[k]], hits)
+        kept = own & np.isin(big.lines.word[:, big.kinds[k]], hits)
         other = int(own.sum() - kept.sum())
         return kept, (f"{several(other, 'line')} of other accounts or meters",)
     return own, ()
@@ -261,18 +289,20 @@ def _estimated(big: _Big, columns: Columns) -> NDArray[np.int64]:
     k = columns.get("estimated")
     marks = [int(bool(is_estimated(w, columns.headings[k or 0]))) for w in big.words("estimated")]
     if k is None or not any(marks):
-        return np.zeros(big.lines.state.shape, np.int64)
-    number = big.lines.words[:, big.kinds["estimated"]]
+        return np.zeros(1, np.int64)
+    number = big.lines.word[:, big.kinds["estimated"]]
     return np.where(number >= 0, np.array([*marks, 0])[number], 0)
 
 
-def _once(moments: Moments, use: NDArray[np.float64], keep: NDArray[np.bool_]) -> int:
+def _once(moments: Moments, use: NDArray[np.float64], keep: NDArray[np.uint8]) -> int:
     """Drop from ``keep`` lines that repeat another to the letter; returns how many.
 
     On a day of 25 hours an hour is there twice by right, so only what goes beyond is dropped.
     """
+    if moments.rising:
+        return 0
     some = np.flatnonzero(keep)
-    if np.all(np.diff(moments.local[some]) > 0):
+    if some.size == 0 or np.all(np.diff(moments.local[some]) > 0):
         return 0
     order = some[np.lexsort((use[some], moments.offset[some], moments.local[some]))]
     a, b = order[:-1], order[1:]
@@ -282,26 +312,27 @@ def _once(moments: Moments, use: NDArray[np.float64], keep: NDArray[np.bool_]) -
     days = moments.local[order] // DAY - int(moments.local[order[0]]) // DAY
     covered = np.bincount(days)[days] * moments.step
     same &= covered != DAY + 3600
-    keep[order[same]] = False
+    keep[order[same]] = 0
     return int(same.sum())
 
 
 def _summed(
     big: _Big, moments: Moments, own: NDArray[np.bool_], use: NDArray[np.float64],
     cost: NDArray[np.float64], guessed: NDArray[np.int64],
-) -> tuple[tuple[BillRow, ...], list[str]]:  # fmt: skip
-    keep = own & moments.known & (np.abs(use) < 1e12)
-    unread = np.flatnonzero(((big.lines.state != BLANK) & own & ~keep) | (big.lines.state == 2))
-    repeated = _once(moments, use, keep)
-    if not np.any(keep):
+) -> tuple[DayRows, list[str]]:  # fmt: skip
+    state, keep = big.lines.state, np.empty(use.shape, np.uint8)
+    use = np.ascontiguousarray(use)
+    kept = keep_lines(state, moments.known, own.view(np.uint8), use, MOST_USE, keep)
+    if kept == 0:
         raise NoBills("no line has both a time and a number", where=big.name)
-    line = np.flatnonzero(keep) + big.first
-    local = moments.local
-    if line.size < keep.size:
-        local, use, cost, guessed = local[keep], use[keep], cost[keep], guessed[keep]
+    unread = np.empty(0, np.intp)
+    if kept < keep.size:
+        passed = own & (keep == 0) & (state != BLANK)
+        unread = np.flatnonzero(passed | (state == TOO_WIDE))
+    repeated = _once(moments, use, keep)
     rows, notes = day_rows(
-        big.name, local, np.full(line.size, moments.step, np.int64), use, cost, line, guessed,
-        clock=moments.clock, length=moments.lengths(keep),
+        big.name, moments.local, np.full(1, moments.step), use, cost, np.full(1, big.first),
+        guessed, keep=keep, offset=moments.offset if moments.zoned else None, clock=moments.clock,
     )  # fmt: skip
     if unread.size:
         notes.append(

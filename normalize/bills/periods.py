@@ -6,6 +6,7 @@ reading dated *d* is the meter as it stood at the start of day *d*.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
@@ -102,6 +103,7 @@ class Bills:
     """One account's bills: rows, periods and the ledger that connects them.
 
     fuel, unit : canonical names from ``normalize.units``.
+    rows, ledger : tuples; of interval files, sequences whose items are made when looked at.
     source : file names with their SHA-256, for the report's list of inputs.
     reading : how the file was understood, as short sentences ("usage from column 'kWh'").
     kind : "meter" for read meters, "delivery" for dealer deliveries.
@@ -114,9 +116,9 @@ class Bills:
     account: str
     fuel: str
     unit: str
-    rows: tuple[BillRow, ...]
+    rows: Sequence[BillRow]
     periods: Periods
-    ledger: tuple[LedgerEntry, ...]
+    ledger: Sequence[LedgerEntry]
     source: tuple[tuple[str, str], ...] = ()
     reading: tuple[str, ...] = ()
     kind: str = "meter"

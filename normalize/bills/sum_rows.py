@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
+from normalize.bills.day_rows import DayRows
 from normalize.bills.local_days import DAY, Clock, spoken, sum_days
 from normalize.bills.periods import BillRow
 from normalize.days import date_of, day_of
@@ -20,7 +21,9 @@ from normalize.days import date_of, day_of
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    Int = NDArray[np.int32]
     Long = NDArray[np.int64]
+    Byte = NDArray[np.uint8]
     Float = NDArray[np.float64]
 
 SumTo = Literal["day", "month"]
@@ -29,21 +32,23 @@ SHORT_READING = 20 * 3600  # seconds: anything shorter is summed to days (a day 
 
 def day_rows(
     name: str, local: Long, seconds: Long, use: Float, cost: Float, line: Long, estimated: Long,
-    *, clock: Clock | None = None, length: Long | None = None,
-) -> tuple[tuple[BillRow, ...], list[str]]:  # fmt: skip
-    """One BillRow for each local day, and sentences; a day with readings missing has a problem."""
-    s = sum_days(local, seconds, use, cost, line, estimated, length=length, clock=clock)
-    costs = [None if c != c else c for c in s.cost.tolist()]
-    columns = (s.line, s.day, s.use, s.missing, s.twice)
-    rows = tuple(
-        BillRow(name, n, day, day + 1, u, cost, False, None, _problem(gone, more))
-        for (n, day, u, gone, more), cost in zip(
-            zip(*(c.tolist() for c in columns), strict=True), costs, strict=True
-        )
-    )
+    *, keep: Byte | None = None, offset: Int | None = None, clock: Clock | None = None,
+    room: int | None = None,
+) -> tuple[DayRows, list[str]]:  # fmt: skip
+    """One row for each local day, and sentences; a day with readings missing has a problem.
+
+    Arguments as of sum_days.
+    """
+    s = sum_days(
+        local, seconds, use, cost, line, estimated,
+        keep=keep, offset=offset, clock=clock, room=room,
+    )  # fmt: skip
     step = int(np.median(seconds)) if seconds.size else 0
-    total = f"{several(s.day.size, 'local day')}"
-    notes = [f"{several(use.size, 'reading')} of {spoken(step)}, summed to {total}"]
+    readings = int(s.count.sum())
+    notes = [
+        f"{several(readings, 'reading')} of {spoken(step)}, summed to "
+        f"{several(s.day.size, 'local day')}"
+    ]
     if (bad := int(np.count_nonzero(s.missing))) > 0:
         gone = several(round(float(s.missing.sum()) / max(step, 1)), "reading")
         notes.append(f"left out: {several(bad, 'day')} from which {gone} are missing")
@@ -51,18 +56,12 @@ def day_rows(
         notes.append(f"left out: {several(doubled, 'day')} with readings twice")
     if (guessed := int(s.estimated.sum())) > 0:
         notes.append(f"estimates were used as they are: {several(guessed, 'reading')}")
-    return rows, notes
+    return DayRows(name, s), notes
 
 
 def several(count: int, word: str) -> str:
     """A count with its noun: "1 day", "1,234 days"."""
     return f"{count:,} {word}" + ("" if count == 1 else "s")
-
-
-def _problem(missing: int, twice: int) -> str:
-    if missing:
-        return f"readings of {spoken(missing)} are missing on this day"
-    return f"readings of {spoken(twice)} are there twice on this day" if twice else ""
 
 
 def month_edge(year: int, month: int, read_day: int) -> int:
