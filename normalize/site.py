@@ -26,6 +26,12 @@ if TYPE_CHECKING:
 
     from normalize.bills.periods import Bills
     from normalize.fitting.results import FormTried
+    from normalize.savings.evidence import SideEvidence
+    from normalize.savings.expectation import Expectation
+    from normalize.savings.heat_loss import HeatLoss
+    from normalize.savings.influence import Without
+    from normalize.savings.parts import Parts
+    from normalize.savings.placebo import Placebo
     from normalize.savings.results import Check, Price, Savings, Total
     from normalize.sensitivity import Moved
     from normalize.units import Factor
@@ -53,6 +59,7 @@ class Site:
     floor_area_ft2: float | None = None
     currency: str = "USD"
     inputs: tuple[tuple[str, str], ...] = ()  # (file, SHA-256) of every input
+    heating_setpoint_f: float | None = None  # mean indoor temperature, where site.toml says it
     weather_plan: WeatherPlan | None = None  # other stations and years that site.toml offers
 
 
@@ -123,6 +130,12 @@ class AccountResult:
     k_factors: tuple[KFactorRow, ...] = ()  # delivered fuel only
     work_start: int | None = None
     work_end: int | None = None
+    parts: Parts | None = None  # of the normalized savings; None when bills could not be read
+    heat_loss: HeatLoss | None = None  # None where the account shows no heating slope
+    expectation: Expectation | None = None  # None where no components are described
+    evidence: tuple[SideEvidence, ...] = ()  # of the sides that have a fit
+    without: tuple[Without, ...] = ()  # the answer without each bill in use
+    placebo: Placebo | None = None  # invented work dates before the work, or why there are none
 
     @property
     def has_answer(self) -> bool:
@@ -174,6 +187,7 @@ def read_site(folder: str | os.PathLike[str]) -> Site:
         currency=plan.currency,
         inputs=tuple(dict.fromkeys(inputs)),
         weather_plan=plan.weather,
+        heating_setpoint_f=plan.heating_setpoint_f,
     )
 
 

@@ -14,6 +14,14 @@ from typing import Final
 from normalize.days import iso
 from normalize.errors import MissingFile, SiteError, UnknownKey
 from normalize.fitting.forms import FORMS
+from normalize.savings.components import Component
+from normalize.sitefile.components import (
+    EFFICIENCY_UNIT,
+    HIGHEST_EFFICIENCY,
+    LOWEST_EFFICIENCY,
+    MOST_COMPONENTS,
+    read_component,
+)
 from normalize.sitefile.table import Table, line_numbers, nearest, shown
 from normalize.sitefile.values import AccountPlan, Change, SiteFile, Upgrade, WeatherPlan
 from normalize.units import canonical_fuel, canonical_unit
@@ -27,7 +35,7 @@ LARGEST_FLOOR_FT2: Final = 1e8  # the largest buildings are near 2e7 ft²
 HIGHEST_COST: Final = 1e12
 
 TABLES: Final = ("site", "weather", "account", "upgrade", "change")
-SITE_KEYS: Final = ("name", "floor_area_ft2", "currency")
+SITE_KEYS: Final = ("name", "floor_area_ft2", "currency", "heating_setpoint_f")
 ACCOUNT_KEYS: Final = (
     "name",
     "fuel",
@@ -39,8 +47,10 @@ ACCOUNT_KEYS: Final = (
     "space_heating",
     "net_metered",
     "forms",
+    "efficiency",
+    "heating_share",
 )
-UPGRADE_KEYS: Final = ("name", "start", "end", "cost", "accounts")
+UPGRADE_KEYS: Final = ("name", "start", "end", "cost", "accounts", "component")
 CHANGE_KEYS: Final = ("what", "since", "until")
 WEATHER_KEYS: Final = (
     "observed",
@@ -131,7 +141,7 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
     site.check_keys(SITE_KEYS)
     accounts = tuple(_account(t, folder) for t in _several(values, "account", lines))
     _check_accounts(accounts)
-    upgrades = tuple(_upgrade(t, accounts) for t in _several(values, "upgrade", lines))
+    upgrades = _upgrades(_several(values, "upgrade", lines), accounts)
     return SiteFile(
         name=site.text("name") or folder.resolve().name or "site",
         folder=folder,
@@ -142,6 +152,7 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
         upgrades=upgrades,
         changes=tuple(_change(t) for t in _several(values, "change", lines)),
         sha256=hashlib.sha256(data).hexdigest(),
+        heating_setpoint_f=site.number("heating_setpoint_f", low=40.0, high=90.0, unit="°F"),
     )
 
 
@@ -335,6 +346,12 @@ def _account(table: Table, folder: Path) -> AccountPlan:
         space_heating=table.flag("space_heating", default=True),
         net_metered=table.flag("net_metered", default=False),
         forms=_forms(table),
+        efficiency=table.number(
+            "efficiency", low=LOWEST_EFFICIENCY, high=HIGHEST_EFFICIENCY, unit=EFFICIENCY_UNIT
+        ),
+        heating_share=table.number(
+            "heating_share", low=0.01, high=1.0, unit="share of the house's heat"
+        ),
         reader=_reader(table, BILL_READER_KEYS),
     )
 
@@ -376,7 +393,28 @@ def _check_accounts(accounts: tuple[AccountPlan, ...]) -> None:
         seen.add(account.name)
 
 
-def _upgrade(table: Table, accounts: tuple[AccountPlan, ...]) -> Upgrade:
+def _upgrades(tables: list[Table], accounts: tuple[AccountPlan, ...]) -> tuple[Upgrade, ...]:
+    upgrades: list[Upgrade] = []
+    components = 0  # so far in the file: lines are counted through all upgrades
+    for table in tables:
+        upgrades.append(_upgrade(table, accounts, components))
+        components += len(upgrades[-1].components)
+    return tuple(upgrades)
+
+
+def _components(upgrade: Table, before: int) -> tuple[Component, ...]:
+    if isinstance(upgrade.values.get("component"), dict):
+        raise upgrade.bad("component", "one table", "[[upgrade.component]] with two brackets")
+    tables = _several(upgrade.values, "component", upgrade.lines)
+    if len(tables) > MOST_COMPONENTS:
+        raise upgrade.bad("component", f"a list of {len(tables)}", f"at most {MOST_COMPONENTS}")
+    return tuple(
+        read_component(replace(t, label="[[upgrade.component]]", index=before + i))
+        for i, t in enumerate(tables)
+    )
+
+
+def _upgrade(table: Table, accounts: tuple[AccountPlan, ...], components: int) -> Upgrade:
     table.check_keys(UPGRADE_KEYS)
     start = table.days("start")
     if start is None:
@@ -405,6 +443,7 @@ def _upgrade(table: Table, accounts: tuple[AccountPlan, ...]) -> Upgrade:
         end=end[1],
         cost=table.number("cost", low=0.0, high=HIGHEST_COST, unit="the site's currency"),
         accounts=touched,
+        components=_components(table, components),
     )
 
 

@@ -8,6 +8,8 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from pathlib import Path
 
+    from normalize.savings.components import Component
+
 
 @dataclass(frozen=True, slots=True)
 class Upgrade:
@@ -21,6 +23,7 @@ class Upgrade:
     end: int
     cost: float | None = None
     accounts: tuple[str, ...] = ()  # the accounts it touches; empty means all
+    components: tuple[Component, ...] = ()  # what it consists of, for an engineer's expectation
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +44,8 @@ class AccountPlan:
     price : of the last unit, in the site's currency.  co2_kg_per_unit : kg of CO₂.
     occupied_since : day number; bills before it belong to an earlier occupant.
     forms : the forms to try; None for those that suit the fuel.
+    efficiency : of the heating before the work, heat out per heat in over a season.
+    heating_share : share of the house's heat that this account carries.
     reader : answers to the bill reader's questions, its keywords.
     """
 
@@ -55,6 +60,8 @@ class AccountPlan:
     net_metered: bool = False
     forms: tuple[str, ...] | None = None
     reader: dict[str, object] = field(default_factory=dict)
+    efficiency: float | None = None
+    heating_share: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,7 +90,11 @@ class WeatherPlan:
 
 @dataclass(frozen=True, slots=True)
 class SiteFile:
-    """site.toml, read and checked. sha256 : of the file's bytes."""
+    """site.toml, read and checked.
+
+    sha256 : of the file's bytes.  heating_setpoint_f : mean indoor temperature in the heating
+    season, °F.
+    """
 
     name: str
     folder: Path
@@ -94,3 +105,4 @@ class SiteFile:
     upgrades: tuple[Upgrade, ...]
     changes: tuple[Change, ...]
     sha256: str
+    heating_setpoint_f: float | None = None
