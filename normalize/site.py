@@ -155,7 +155,7 @@ class SiteResult:
     cautions: tuple[str, ...]
     settings: tuple[tuple[str, str], ...]  # the defaults that mattered, name and value
     versions: tuple[tuple[str, str], ...]  # normalize, python, numpy, numba
-    moved: tuple[Moved, ...] = ()  # the answer with other stations and years, where asked for
+    moved: tuple[Moved, ...] = ()  # the answer with one choice changed at a time
 
 
 def read_site(folder: str | os.PathLike[str]) -> Site:
@@ -252,6 +252,8 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
     confidence : two-sided, 0.5 to 0.999.  Errors: NoUpgrade when site.toml names no work.
     An account without an answer carries its reason and ends nothing.
     """
+    from normalize.sensitivity import how_firm
+
     if not site.upgrades:
         raise NoUpgrade(
             "names no upgrade",
@@ -273,6 +275,7 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
         cautions=_site_cautions(site, accounts),
         settings=_settings(site, confidence),
         versions=_versions(),
+        moved=how_firm(site, accounts, confidence),
     )
 
 

@@ -395,31 +395,6 @@ def same_form_table(account: AccountResult) -> Table:
     return _table(caption, ("form on both sides", "value", "low", "high", "note"), rows, (1, 2, 3))
 
 
-def moved_table(result: SiteResult) -> Table:
-    """How far the answer moves with other stations and other normal years."""
-    rows = []
-    for m in result.moved:
-        e = m.normalized
-        known = e is not None and e.available
-        why = m.unavailable if e is None else (e.unavailable or "")
-        rows.append(
-            (
-                n.name(m.account),
-                n.clean(m.name),
-                m.changes,
-                n.plain(e.value, 1) if e is not None and known else n.UNKNOWN,
-                n.plain(e.low, 1) if e is not None and known else n.UNKNOWN,
-                n.plain(e.high, 1) if e is not None and known else n.UNKNOWN,
-                n.clean(why),
-            )
-        )
-    head = ("account", "weather", "what differs", "change", "low", "high", "note")
-    return _table(
-        "The change in a normal year with other weather, in each account's unit", head, rows,
-        (3, 4, 5),
-    )  # fmt: skip
-
-
 def inputs_table(result: SiteResult, *, show_accounts: bool = False) -> Table:
     """Every input file with its fingerprint."""
     hide = _shown(show_accounts)

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
 from normalize.report import numbers as n
-from normalize.report import site_words, tables, words
+from normalize.report import site_words, spread, tables, words
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -38,8 +38,8 @@ def to_text(
     sheet = _Sheet(max(width, MIN_WIDTH), ascii, show_accounts)
     lines = [
         *_answer(result, sheet, subject),
-        *_moved(result, sheet),
         *_cautions(result, sheet),
+        *_firm(result, sheet, statistics=statistics),
     ]
     if statistics:
         for account in result.accounts:
@@ -219,15 +219,23 @@ def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterat
         yield from sheet.item(f"and {len(noted) - MOST_LEDGER_LINES} more, in the report")
 
 
-def _moved(result: SiteResult, sheet: _Sheet) -> Iterator[str]:
-    """How far the answer moves with other weather, where that was asked for."""
-    if not result.moved:
+def _firm(result: SiteResult, sheet: _Sheet, *, statistics: bool) -> Iterator[str]:
+    """How firm each answer is: a sentence, and behind it the answer under every change."""
+    told = [(a, spread.sentences(a, result)) for a in result.accounts]
+    if not any(sentences for _, sentences in told):
         return
-    yield from ["", *sheet.heading("How far the answer moves", "-")]
-    yield from sheet.table(tables.moved_table(result), keep=range(6))
-    for row in tables.moved_table(result).rows:
-        if row[-1]:
-            yield from sheet.item(f"{row[0]}, {row[1]}: {row[-1]}")
+    yield from ["", "How firm the answer is"]
+    for account, sentences in told:
+        for sentence in sentences:
+            yield from sheet.item(f"{n.name(account.account)}: {sentence}")
+        table = spread.table_of(account, result) if statistics else None
+        if sentences and table is not None:
+            yield ""
+            yield from sheet.table(table, keep=range(5))
+            for row in table.rows:
+                if row[-1]:
+                    yield from sheet.item(f"{row[0]}: {row[-1]}")
+            yield ""
 
 
 def _site_statistics(result: SiteResult, sheet: _Sheet) -> Iterator[str]:

@@ -62,7 +62,7 @@ def run_batch(
     *,
     confidence: float,
     tried: NDArray[np.bool_] | None = None,
-    forced: tuple[int, int] = (-1, -1),
+    forced: tuple[int, int] | NDArray[np.int8] = (-1, -1),
     weights: str = "days",
     criterion: int = BIC,
     settings_: NDArray[np.float64] | None = None,
@@ -70,6 +70,8 @@ def run_batch(
 ) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.float64]]:
     """The compiled comparison over a ragged batch; years are those of the stations, in order.
 
+    forced : the forms to use whatever the choice says, (before, after), −1 for the choice's
+    own; or one such row an account.
     Returns fits (accounts, 2, forms, columns), chosen (accounts, 2), answers (accounts, …).
     """
     offered = np.ascontiguousarray(batch.wanted, dtype=np.bool_)
@@ -77,7 +79,8 @@ def run_batch(
     temp = [y.temp_f if y else np.empty(0) for y in years]
     days = [y.cum_days if y else np.zeros(1) for y in years]
     degrees = [y.cum_degrees if y else np.zeros(1) for y in years]
-    force = np.tile(np.array(forced, dtype=np.int8), (offered.shape[0], 1))
+    pairs = np.broadcast_to(np.asarray(forced, dtype=np.int8), (offered.shape[0], 2))
+    force = np.ascontiguousarray(pairs)
     fits: NDArray[np.float64]
     chosen: NDArray[np.int8]
     answers: NDArray[np.float64]
