@@ -227,9 +227,8 @@ def _named_meter(usable: list[Series], rows: str, name: str) -> list[Series]:
     kept = [s for s in usable if str(s.point) == wanted]
     if kept:
         return kept
-    points = sorted({s.point for s in usable})
-    raise UnreadableBills(f"there is no meter {rows[:20]!r}", where=name,
-                          wanted=f"one of {', '.join(map(str, points[:MOST_CHOICES]))}")  # fmt: skip
+    known = ", ".join(map(str, sorted({s.point for s in usable})[:MOST_CHOICES]))
+    raise UnreadableBills(f"there is no meter {rows[:20]!r}", where=name, wanted=f"one of {known}")
 
 
 def _choose(usable: list[Series], name: str, notes: list[str]) -> tuple[list[Series], list[Series]]:
@@ -293,7 +292,7 @@ def _covered(series: Series) -> float:
 
 def _rows(
     table: Numbers, clock: Clock, said: Answers, name: str
-) -> tuple[tuple[BillRow, ...], list[str]]:
+) -> tuple[Sequence[BillRow], list[str]]:
     local = clock.local(table.start)
     if np.median(table.seconds) < SHORT_READING:
         if table.several:

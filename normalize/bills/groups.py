@@ -7,6 +7,7 @@ whose it is belongs to an account only where the file holds no other that it cou
 
 from __future__ import annotations
 
+import re
 from collections import defaultdict
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
@@ -17,18 +18,24 @@ from normalize.bills.columns import Columns, fuel_of_unit
 from normalize.bills.dates import ORDERS, read_written, settle
 from normalize.bills.headings import squeeze
 from normalize.bills.table import Cell, RawRow
+from normalize.bills.vocabulary import TOTALS
 from normalize.errors import BillError, UnknownUnit
 from normalize.units import canonical_fuel, canonical_unit
 
 SURE_METER_LINES = 2  # of each meter, before a replacement is believed (our own, no source)
 MOST_REPLACED = 4  # meters in a row that are believed to be one account's (our own, no source)
 SHOWN_END = 4  # of an account number: its last characters
+MOST_LABEL = 60
+FEW_DIGITS = 2  # "Unit 12" is a name, not a number
+_OWN_NAME = re.compile(r"(?:meter|account) \d{1,6}")
 MOST_SHOWN = 5  # of them, to tell two numbers apart; then places in the file do
 NO_NUMBER = "the line does not say whose it is, and the file holds several accounts"
 REPLACED = "the meter was replaced: one follows the other, without overlap"
 _SERVICE_WORDS = {
     "usage", "use", "service", "consumption", "delivery", "meter", "account", "billing",
 }  # fmt: skip
+
+_TOTALS = {squeeze(word) for word in TOTALS}
 
 Key = tuple[str, ...]
 
@@ -72,11 +79,14 @@ def plain(value: Cell) -> str:
 def masked(value: Cell) -> str:
     """An account or meter for a message: its last four characters.
 
-    >>> masked("0012345678")
-    '…5678'
+    >>> masked("0012345678"), masked("Unit 12"), masked("Greenhouse")
+    ('…5678', 'Unit 12', 'Greenhouse')
     """
-    text = plain(value)
-    if any(c.isdigit() for c in text) and len(text) > SHOWN_END:
+    text = re.sub(r"^\.{3}", "…", plain(value))  # cells are normalised: … becomes ...
+    if (text.startswith("…") or _OWN_NAME.fullmatch(text)) and len(text) <= MOST_LABEL:
+        return text  # this program's own name for it
+    digits = sum(c.isdigit() for c in text)
+    if digits and len(text) > (SHOWN_END if digits > FEW_DIGITS else 20):
         return "…" + text[-SHOWN_END:]
     return text if len(text) <= 20 else "…" + text[-SHOWN_END:]
 
@@ -102,7 +112,7 @@ def group_lines(columns: Columns, body: Sequence[RawRow], *, fuel: str | None) -
     whole: dict[Key, list[tuple[RawRow, str]]] = {}
     partial: list[tuple[Key, tuple[RawRow, str]]] = []
     for row, named in own:
-        parts = [squeeze(plain(cell(row, k))) for k in telling]
+        parts = [_name(cell(row, k)) for k in telling]
         key = (*parts, named) if several_fuels else tuple(parts)
         if all(key):
             whole.setdefault(key, []).append((row, named))
@@ -116,7 +126,7 @@ def group_lines(columns: Columns, body: Sequence[RawRow], *, fuel: str | None) -
     groups = [
         Group(
             _names(columns, lines),
-            next((f for _, f in lines if f), ""),
+            fuel or next((f for _, f in lines if f), ""),
             tuple(row for row, _ in lines),
             (notes[key],) if key in notes else (),
         )
@@ -167,7 +177,7 @@ def _tells(own: Sequence[tuple[RawRow, str]], k: int) -> bool:
     """Whether a column tells accounts apart: two values or more that are no dates."""
     values: dict[str, Cell] = {}
     for row, _ in own:
-        text = squeeze(plain(cell(row, k)))
+        text = _name(cell(row, k))
         if text and text not in values:
             values[text] = cell(row, k)
     # A "Meter" column of dates is no column of meters.
@@ -244,7 +254,13 @@ def _succeed(when: int | None, meters: Sequence[Sequence[tuple[RawRow, str]]]) -
 
 def _names(columns: Columns, lines: Sequence[tuple[RawRow, str]]) -> tuple[str, ...]:
     names = (plain(cell(row, k)) for k in columns.accounts for row, _ in lines)
-    return tuple(dict.fromkeys(name for name in names if squeeze(name)))
+    return tuple(dict.fromkeys(name for name in names if _name(name)))
+
+
+def _name(value: Cell) -> str:
+    """An account's name for comparing; "" where there is none, or the word "Total"."""
+    text = squeeze(plain(value))
+    return "" if text in _TOTALS else text
 
 
 def named(groups: Iterable[Group], rows: str) -> list[Group]:
@@ -327,12 +343,18 @@ def answers_that_choose(groups: Sequence[Group]) -> list[dict[str, str]]:
         if group.fuel and of_fuel[group.fuel] == 1:
             chosen.append(fuel)
             continue
-        own = [name for name in group.names if owners[squeeze(name)] == {n}]
-        shown = [(name, end) for name in (*own, *group.names) if (end := _shortest(name, ends))]
-        if shown and shown[0][0] in own:
-            chosen.append({"rows": shown[0][1]})
-        elif shown and fuel:
-            chosen.append({"rows": shown[0][1], **fuel})
+        ends_of = {name: _shortest(name, ends) for name in group.names}
+        shown = {name: end for name, end in ends_of.items() if end is not None}
+        own = [name for name in shown if owners[squeeze(name)] == {n}]
+        of_own_fuel = [
+            name
+            for name in shown
+            if {m for m in owners[squeeze(name)] if groups[m].fuel == group.fuel} == {n}
+        ]
+        if own:
+            chosen.append({"rows": shown[own[0]]})
+        elif of_own_fuel:
+            chosen.append({"rows": shown[of_own_fuel[0]], **fuel})
         else:  # places are counted within a fuel, for with a fuel only its accounts are looked at
             chosen.append({"rows": f"account {places[group.fuel]}", **fuel})
     return chosen

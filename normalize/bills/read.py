@@ -9,17 +9,38 @@ from __future__ import annotations
 import os
 from collections.abc import Sequence
 from dataclasses import replace
+from itertools import pairwise
+from typing import TYPE_CHECKING
 
+from normalize.bills.amounts import as_text
 from normalize.bills.answers import ENOUGH_BILLS, ONE_BILL, Answers, Understood, answers_of
+from normalize.bills.columns import find_columns
+from normalize.bills.dates import read_written, settle
 from normalize.bills.deliveries import fills_sentence
+from normalize.bills.espi_xml import looks_like_xml
 from normalize.bills.flag_words import flag_cautions, flags_of
+from normalize.bills.groups import cell
 from normalize.bills.headings import header_score, squeeze
 from normalize.bills.periods import Bills, Periods
 from normalize.bills.repair import reconcile, repair
 from normalize.bills.solar import solar_signature
 from normalize.bills.sum_rows import months_of
-from normalize.bills.table import BillFile, Cell, open_file, read_table
-from normalize.errors import NoBills, UnreadableBills
+from normalize.bills.table import (
+    BillFile,
+    Cell,
+    RawRow,
+    RawTable,
+    Score,
+    open_file,
+    read_table,
+)
+from normalize.errors import NoBills, NormalizeError, UnreadableBills
+
+if TYPE_CHECKING:
+    from normalize.bills.table import CsvHead
+
+PACED_ACCOUNTS = 200  # looked at to tell bills from days
+DAYS_APART = 5  # so much or less is the pace of days, not of bills (our own, no source)
 
 
 def read_bills(
@@ -72,35 +93,89 @@ def read_bills(
     given = dict(locals())
     file = open_file(path)
     answers = answers_of(file.name, given)
-    found = _understand(file, answers, sheet)
-    if answers.sum_to == "month":
-        found = _months(found, answers)
-    bills = _repaired(file, found, account, net_metered=net_metered, currency=currency)
-    reconcile(bills)
-    return bills
+    found = understand_file(file, answers, sheet)
+    return bills_of(file, found, answers, account, net_metered=net_metered, currency=currency)
 
 
-def _understand(file: BillFile, answers: Answers, sheet: str | None) -> Understood:
-    """The rows of a file, by the reader that it is for."""
-    from normalize.bills.espi_xml import looks_like_xml
-
+def understand_file(file: BillFile, answers: Answers, sheet: str | None) -> Understood:
+    """The rows of one account of a file, by the reader that it is for."""
     if looks_like_xml(file.data):
         from normalize.bills.espi import read_espi
 
         return read_espi(file.data, file.name, answers)
+    head = interval_head(file, answers)
+    if head is not None:
+        from normalize.bills.intervals import read_intervals
+
+        return read_intervals(file, head, answers)
+    from normalize.bills.table_bills import understand_table
+
+    return understand_table(read_table(file, score=table_score(answers), sheet=sheet), answers)
+
+
+def table_score(answers: Answers) -> Score:
+    """How much a line looks like the header of a table, the named columns counted in."""
     names = frozenset(squeeze(v) for v in answers.named.values())
 
     def score(cells: Sequence[Cell]) -> float:
         return header_score(cells, names)
 
-    from normalize.bills.intervals import is_interval_file, read_intervals
+    return score
 
+
+def interval_head(file: BillFile, answers: Answers) -> CsvHead | None:
+    """The head of an interval file; None for a table of bills.
+
+    The monthly bills of thousands of accounts, in order of their dates, look like days.
+    """
+    from normalize.bills.intervals import is_interval_file
+
+    score = table_score(answers)
     head = is_interval_file(file, answers, score)
-    if head is not None:
-        return read_intervals(file, head, answers)
-    from normalize.bills.table_bills import understand_table
+    if head is None:
+        return None
+    columns, body = find_columns(RawTable(file.name, "", head.rows, head.delimiter), answers.named)
+    when = next((k for r in ("read", "end", "start") if (k := columns.get(r)) is not None), None)
+    timed = columns.get("time") is not None
+    timed = timed or any(":" in as_text(cell(r, when)) for r in body[:9])
+    if timed or not columns.accounts or when is None:
+        return head
+    try:
+        rows = read_table(file, score=score).rows
+    except NormalizeError:
+        return head
+    return None if _paces_of_bills(rows, columns.accounts[0], when) else head
 
-    return understand_table(read_table(file, score=score, sheet=sheet), answers)
+
+def _paces_of_bills(rows: Sequence[RawRow], k: int, when: int) -> bool:
+    """Whether most of the first accounts' lines lie more than some days apart."""
+    days: dict[str, list[int]] = {}
+    for row in rows:
+        name = squeeze(as_text(cell(row, k)))
+        if name in days or len(days) < PACED_ACCOUNTS:
+            written = read_written(cell(row, when))
+            day = settle(written, "month first")[0] or settle(written, "day first")[0]
+            if name and day is not None:
+                days.setdefault(name, []).append(day)
+    steps = [abs(b - a) for each in days.values() for a, b in pairwise(sorted(set(each)))]
+    return bool(steps) and sorted(steps)[len(steps) // 2] > DAYS_APART
+
+
+def bills_of(
+    file: BillFile,
+    found: Understood,
+    answers: Answers,
+    account: str,
+    *,
+    net_metered: bool,
+    currency: str,
+) -> Bills:
+    """Rows of one account, repaired and reconciled.  Raises NoBills."""
+    if answers.sum_to == "month":
+        found = _months(found, answers)
+    bills = _repaired(file, found, account, net_metered=net_metered, currency=currency)
+    reconcile(bills)
+    return bills
 
 
 def _months(found: Understood, answers: Answers) -> Understood:

@@ -167,6 +167,31 @@ def decide_order(
     )
 
 
+@dataclass(frozen=True, slots=True)
+class Proven:
+    """What all lines of a file prove, whoever they belong to; None where they prove nothing."""
+
+    dates: Order | None = None
+    decimal: Decimal | None = None
+
+
+def settled_by_all(table: RawTable, columns: Columns, body: Sequence[RawRow]) -> Proven:
+    """The order of dates and the decimal mark, from every line of a file of several accounts."""
+    dates = [
+        read_written(text, epoch_1904=table.epoch_1904)
+        for role in ("start", "end", "read", "delivery", "bill date", "range")
+        if (k := columns.get(role)) is not None
+        for row in body
+        for text in (split_range(cell(row, k)) or (cell(row, k),))
+    ]
+    order = order_by_values(dates)
+    used = [columns.get(role) for role in ("usage", "cost", "temperature", "days")]
+    try:
+        return Proven(order, how_numbers_are_written(table, body, used, None).decimal)
+    except AmbiguousBills:
+        return Proven(order)
+
+
 def put_dates(
     record: Record, written: tuple[Written, Written], order: Order, *, both: bool
 ) -> None:

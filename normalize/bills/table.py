@@ -23,7 +23,8 @@ Cell = str | int | float | date | None
 Score = Callable[[Sequence[Cell]], float]
 
 MAX_BYTES = 100_000_000  # of a bill file; a lifetime of monthly bills is some kilobytes
-MAX_ROWS = 200_000
+MAX_ROWS = 1_000_000  # three years of monthly bills of 25,000 accounts
+MAX_CELLS = 20_000_000  # in all: some GB of memory at the worst
 MAX_COLUMNS = 500
 MAX_LINE = 100_000  # characters of one line
 MAX_CELL = 5_000  # characters of one cell
@@ -106,6 +107,19 @@ def read_table(file: BillFile, *, score: Score, sheet: str | None = None) -> Raw
     if not rows:
         raise UnreadableBills("the file holds no lines", where=file.name, wanted="a table of bills")
     return RawTable(file.name, digest, rows, delimiter)
+
+
+def read_tables(file: BillFile, *, score: Score, sheet: str | None = None) -> list[RawTable]:
+    """A CSV as one table; of a workbook every sheet that looks like bills.
+
+    Raises UnreadableBills.
+    """
+    if sheet is not None or not file.data.startswith(b"PK"):
+        return [read_table(file, score=score, sheet=sheet)]
+    from normalize.bills.workbook import likely_sheets
+
+    names = likely_sheets(file.data, name=file.name, score=score)
+    return [read_table(file, score=score, sheet=name) for name in names]
 
 
 def _bytes_of(file: Path) -> bytes:
@@ -244,7 +258,7 @@ def _delimiter_of(text: str, score: Score) -> str:
 
 def _csv_rows(text: str, delimiter: str, name: str) -> Iterator[RawRow]:
     reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
-    before = 0
+    before = held = 0
     try:
         for count, cells in enumerate(reader):
             line, before = before + 1, reader.line_num
@@ -252,6 +266,9 @@ def _csv_rows(text: str, delimiter: str, name: str) -> Iterator[RawRow]:
                 raise _too_big(name, f"more than {MAX_ROWS:,} lines")
             if len(cells) > MAX_COLUMNS:
                 raise _too_big(name, f"a line ({line}) of more than {MAX_COLUMNS} columns")
+            held += len(cells)
+            if held > MAX_CELLS:
+                raise _too_big(name, f"more than {MAX_CELLS:,} cells")
             if any(len(cell) > MAX_CELL for cell in cells):
                 raise _too_big(name, f"a cell (line {line}) of more than {MAX_CELL:,} characters")
             if any(cell.strip() for cell in cells):
@@ -276,11 +293,13 @@ def choose_sheet(
     """The one sheet that looks like bills; asks when several do. found : (sheet, score)."""
     likely = [sheet for sheet, value in found if value >= good_enough]
     if len(likely) > 1:
-        names = ", ".join(repr(s[:40]) for s in likely[:8])
+        lines = " or ".join(f'sheet = "{s[:40]}"' for s in likely[:12])
+        more = " or …" if len(likely) > 12 else ""
         raise AmbiguousBills(
-            f"{len(likely)} sheets look like bills ({names})",
+            f"{len(likely)} sheets look like bills",
             where=name,
-            next_step=f'Name one: sheet = "{likely[0][:40]}" under [[account]] in site.toml, '
-            "or --sheet.",
+            wanted="to know which is meant, for they are never added up",
+            next_step=f"Put {lines}{more} under [[account]] in site.toml, or use --sheet; "
+            "normalize bills shows all of them.",
         )
     return likely[0] if likely else max(found, key=lambda pair: pair[1])[0]

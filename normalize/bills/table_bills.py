@@ -8,7 +8,7 @@ module: columns (roles) → select (lines of the account) → records (dates, nu
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 from normalize.bills import records as rec
@@ -40,6 +40,7 @@ from normalize.bills.layouts import (
     from_start_days,
     settle_ends,
 )
+from normalize.bills.records import Proven, settled_by_all
 from normalize.bills.registers import Register, difference
 from normalize.bills.repair import Kind
 from normalize.bills.select import select_rows, without_remarks
@@ -47,6 +48,9 @@ from normalize.bills.sum_rows import several
 from normalize.bills.table import RawRow, RawTable
 from normalize.days import date_of
 from normalize.errors import AmbiguousBills, NoBills
+
+AS_YOU_SAID = ", as you said"
+BY_VALUES = "some of the file can only be read so"
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,13 +89,38 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
         head.columns, head.body, rows=answers.rows, fuel=answers.fuel, unit=answers.unit,
         where=head.where,
     )  # fmt: skip
-    return understand_lines(head, body, notes, answers)
+    proven = Proven()
+    if len(body) < len(head.body):  # the other accounts' lines are written in the same way
+        proven = settled_by_all(table, head.columns, head.body)
+    return understand_lines(head, body, notes, answers, proven)
 
 
 def understand_lines(
+    head: Head,
+    body: Sequence[RawRow],
+    other_notes: tuple[str, ...],
+    answers: Answers,
+    proven: Proven,
+) -> Understood:
+    """Rows of one account from its lines.
+
+    other_notes : sentences on how they were chosen.  proven : by all lines of the file.
+    """
+    dates, decimal = answers.dates or proven.dates, answers.decimal or proven.decimal
+    found = _understood(head, body, other_notes, replace(answers, dates=dates, decimal=decimal))
+    words = {}  # nothing is put into the user's mouth that the file as a whole has shown
+    if answers.dates is None:
+        words[f"dates are {dates}{AS_YOU_SAID}"] = f"dates are {dates}: {BY_VALUES}"
+    if answers.decimal is None:
+        comma = "numbers have a decimal comma" if decimal == "comma" else ""
+        words[f"decimal {decimal}{AS_YOU_SAID}"] = comma
+    reading = tuple(s for text in found.reading if (s := words.get(text, text)))
+    return replace(found, reading=reading)
+
+
+def _understood(
     head: Head, body: Sequence[RawRow], other_notes: tuple[str, ...], answers: Answers
 ) -> Understood:
-    """Rows of one account from its lines.  other_notes : sentences on how they were chosen."""
     if not body:
         raise NoBills(
             "there is a header but no bill beneath it", where=head.where,

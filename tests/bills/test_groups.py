@@ -55,7 +55,7 @@ def test_each_choice_of_the_question_answers_it(tmp_path: Path) -> None:
     choices = [c for c in choices if c]
     assert len(choices) == 6
     found = [(read_bills(file, **c).periods.use.tolist(), read_bills(file, **c).fuel)
-             for c in choices]  # type: ignore[arg-type]  # fmt: skip
+             for c in choices]  # fmt: skip
     assert [u for u, _ in found] == [[10.0] * 2, [10.0] * 2, [20.0] * 2, [20.0] * 2,
                                      [30.0] * 2, [30.0] * 2]  # fmt: skip
     assert [f for _, f in found] == ["electricity", "natural gas"] * 3
