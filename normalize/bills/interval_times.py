@@ -18,6 +18,7 @@ from normalize.bills.interval_cells import BAD_TIME, BARE_HOUR, NO_OFFSET
 from normalize.bills.interval_kernel import Lines
 from normalize.bills.interval_sums import NO_DAY, count_steps, local_seconds
 from normalize.bills.local_days import DAY, Clock, clock_of, spoken
+from normalize.bills.wide_head import WideHead
 from normalize.errors import AmbiguousBills, UnreadableBills
 
 if TYPE_CHECKING:
@@ -81,6 +82,26 @@ def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: st
         local = clock.local(local - np.where(offset == NO_OFFSET, 0, offset))
         rising = bool(np.all(np.diff(local) > 0))
     return Moments(local, offset, known, step, clock, rising, zoned, tuple(notes), tuple(cautions))
+
+
+def wide_moments(
+    lines: Lines, wide: WideHead, data: bytes, answers: Answers, where: str
+) -> Moments:
+    """Moments of a wide file's readings, line by line. Raises as moments_of does."""
+    days, note = _days(lines, data, answers, where)
+    day = np.where(lines.date >= 0, days[np.maximum(lines.date, 0)], NO_DAY)
+    if not np.any(day != NO_DAY):
+        raise UnreadableBills("no line begins with a date", where=where)
+    # The hour that comes twice when clocks go back is, nearly everywhere, the one from 1 to 2.
+    more = {k: 3600 + n * wide.step for n, k in enumerate(wide.extra)}
+    starts = np.array([(wide.starts | more)[k] for k in wide.columns], np.int64)
+    known = np.repeat((day != NO_DAY).astype(np.uint8), starts.size)
+    local = (np.where(day == NO_DAY, 0, day)[:, None] * DAY + starts).reshape(-1)
+    clock = clock_of(answers.time_zone, where=where) if answers.time_zone is not None else None
+    rising = not wide.extra and bool(np.all(np.diff(day[day != NO_DAY]) > 0))
+    notes = (f"a column for each {spoken(wide.step)}", *([note] if note else []))
+    offset = np.full(local.shape, NO_OFFSET, np.int32)
+    return Moments(local, offset, known, wide.step, clock, rising, False, notes, ())
 
 
 def _offsets(offset: Int, known: Byte) -> tuple[Int, bool]:
