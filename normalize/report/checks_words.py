@@ -1,14 +1,17 @@
-"""Checks for the terminal: what was missed in full, the rest in a line each."""
+"""Checks in words, for the terminal shortened; and what each bill weighs, as a table."""
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
 from normalize.report import numbers as n
+from normalize.savings.influence import LOOK_COOK, STRONG_COOK
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from normalize.savings.evidence import SideEvidence
+    from normalize.savings.influence import BillWeight
     from normalize.savings.results import Check
 
 OUTCOMES = {True: "met", False: "not met", None: "for information"}
@@ -64,3 +67,26 @@ def _named(check: Check) -> str:
     limit = f" (limit {number(check.limit)})" if check.limit is not None else ""
     side = f", {n.clean(check.side)}" if check.meets is False and check.side else ""
     return f"{n.clean(check.name)}{side} {number(check.value)}{limit}"
+
+
+def weight_rows(evidence: Sequence[SideEvidence]) -> tuple[tuple[str, ...], ...]:
+    """One row a bill: what it weighs in its side's fit, and whether that is worth a look."""
+    rows = []
+    for side in evidence:
+        for w, (start, end) in zip(side.weights, side.spans, strict=True):
+            rows.append(
+                (
+                    f"{w.number}", n.short_date(start), n.short_date(end), side.side,
+                    n.plain(w.leverage, 2), n.plain(w.cook, 3), n.plain(w.dffits, 2),
+                    _look(w, len(side.weights)),
+                )
+            )  # fmt: skip
+    return tuple(rows)
+
+
+def _look(weight: BillWeight, n_bills: int) -> str:
+    if weight.cook > STRONG_COOK:
+        return f"over {STRONG_COOK:g}: moves the fit a lot; look at it, it stays in"
+    if weight.cook > LOOK_COOK / n_bills:
+        return f"over {LOOK_COOK:g}/n: worth a look; it stays in"
+    return ""

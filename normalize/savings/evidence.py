@@ -72,7 +72,8 @@ def _side(
     days, owner = days_of(aligned, mine)
     lengths = aligned.days[mine].astype(np.float64)
     per_day = aligned.use[mine] / lengths
-    jac = jacobian_of(fit, days, owner, lengths, with_tau=not held)
+    # A balance temperature on the edge of its range is not free to follow a bill.
+    jac = jacobian_of(fit, days, owner, lengths, with_tau=not (held or fit.on_bound))
     fitted = np.bincount(owner, fit.predict(days), lengths.shape[0]) / lengths
     resid = per_day - fitted
     means = aligned.mean_temp_f[mine]
