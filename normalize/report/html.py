@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any, Final, NamedTuple
 
 from normalize.errors import UnwritableReport
 from normalize.fitting.forms import FORMS
-from normalize.report import look, placebo_words, site_words, spread, svg, tables, words
+from normalize.report import look, parts, placebo_words, site_words, spread, svg, tables, words
 from normalize.report import numbers as n
 from normalize.report.figure_placebo import placebo_figure
 from normalize.report.figure_spread import spread_figure
@@ -144,6 +144,7 @@ def _account(
         else [],
         **_firm(account, result, number, say, classes),
         **_placebo(account, number, say, classes),
+        **_close(account, say),
         **_behind(account, result, say),
     }
 
@@ -175,6 +176,24 @@ def _placebo(
         "placebo": [say(s) for s in placebo_words.sentences(account)],
         "placebo_figure": _shown(placebo_figure(account, f"a{number}-placebo"), classes),
         "placebo_table": _hidden(table, say) if table is not None else None,
+    }
+
+
+def _close(account: AccountResult, say: Callable[[str], str]) -> dict[str, Any]:
+    """What the change is made of, the heat loss, and what the work should have saved."""
+    told = parts.close_reading(account)
+
+    def hidden(table: Table | None) -> Table | None:
+        return None if table is None else _hidden(table, say)
+
+    return {
+        "parts": [say(s) for s in told.parts],
+        "heat_loss": [say(s) for s in told.heat_loss],
+        "expectation": [say(s) for s in told.expectation],
+        "expectation_cautions": [say(s) for s in told.cautions],
+        "parts_table": hidden(told.parts_table),
+        "heat_loss_table": hidden(told.heat_loss_table),
+        "expectation_table": hidden(told.expectation_table),
     }
 
 
@@ -218,6 +237,7 @@ def _figures(
         "years": _shown(drawn.years, classes),
         "time": _shown(drawn.time, classes),
         "residuals": _shown(drawn.residuals, classes),
+        "parts": _shown(drawn.parts, classes),
     }
 
 
@@ -266,7 +286,11 @@ def _equations(result: SiteResult) -> list[str]:
 
 
 def _checks_summary(account: AccountResult) -> str:
-    missed = [f"{c.name} {c.side}".strip() for c in account.checks if c.meets is False]
+    missed = [
+        c.name if c.side == "both" else f"{c.name} {c.side}".strip()
+        for c in account.checks
+        if c.meets is False
+    ]
     met = sum(c.meets is True for c in account.checks)
     if not missed:
         return f"Checks: {met} met, none missed"

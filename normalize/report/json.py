@@ -11,6 +11,7 @@ import math
 from typing import TYPE_CHECKING, Any, Final
 
 from normalize.days import iso
+from normalize.report.parts_json import close_reading
 
 if TYPE_CHECKING:
     from normalize.fitting.results import Fit, FormTried
@@ -168,6 +169,7 @@ def _account(account: AccountResult) -> Json:
             {"period": f.period, "what": f.what, "note": f.note}
             for f in (account.bills.flags if account.bills else ())
         ],
+        **close_reading(account, _estimate),
         "cautions": list(account.cautions),
     }
 

@@ -7,8 +7,8 @@ import unicodedata
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
+from normalize.report import checks_words, parts, placebo_words, site_words, spread, tables, words
 from normalize.report import numbers as n
-from normalize.report import site_words, spread, tables, words
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -192,22 +192,42 @@ def _statistics(account: AccountResult, result: SiteResult, sheet: _Sheet) -> It
     yield from _behind(account, result, sheet)
 
 
+def _close(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
+    """What the change is made of, the heat loss, and what the work should have saved."""
+    told = parts.close_reading(account)
+    if told.parts_table is not None:
+        yield from ["", *sheet.table(told.parts_table)]
+    elif told.parts or told.heat_loss:
+        yield ""
+    for sentence in (*told.parts, *told.heat_loss):
+        yield from sheet.wrap(sentence)
+    if told.expectation:
+        yield from ["", "What the work should have saved"]
+        for sentence in told.expectation:
+            yield from sheet.wrap(sentence)
+        if told.expectation_table is not None:
+            yield from ["", *sheet.table(told.expectation_table)]
+        for caution in told.cautions:
+            yield from sheet.item(caution)
+
+
 def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterator[str]:
     """Statistics, checks, factors and the ledger of one account."""
     save = account.savings
+    yield from _close(account, sheet)
     if save.before is not None or save.after is not None:
         yield from ["", *sheet.table(tables.statistics_table(account))]
     if save.same_form:
         yield from ["", *sheet.table(tables.same_form_table(account))]
     if account.checks:
         yield from ["", "Checks"]
-        for name, side, value, limit, outcome, means, source in tables.checks_table(
-            account.checks
-        ).rows:
-            where = f", {side}" if side else ""
-            against = f" (limit {limit})" if limit != n.UNKNOWN else ""
-            means = means if means.endswith(".") else f"{means}."
-            yield from sheet.item(f"{name}{where}: {value}{against}, {outcome}. {means} [{source}]")
+        for line in checks_words.lines(account.checks):
+            yield from sheet.item(line)
+    invented = placebo_words.sentences(account)
+    if invented:
+        yield from ["", "Invented work dates"]
+        for sentence in invented:
+            yield from sheet.wrap(sentence)
     yield from ["", "Price and factors"]
     for what, value, source in tables.factors_table(account, result.site.currency).rows:
         yield from sheet.item(f"{what}: {value} ({source})")
@@ -231,7 +251,7 @@ def _firm(result: SiteResult, sheet: _Sheet, *, statistics: bool) -> Iterator[st
         table = spread.table_of(account, result) if statistics else None
         if sentences and table is not None:
             yield ""
-            yield from sheet.table(table, keep=range(5))
+            yield from sheet.table(table, keep=range(4))
             for row in table.rows:
                 if row[-1]:
                     yield from sheet.item(f"{row[0]}: {row[-1]}")

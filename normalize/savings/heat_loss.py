@@ -99,12 +99,13 @@ HYPOTHESIS: Final = "That is a hypothesis, not a finding: other causes leave the
 _USUAL: Final[dict[tuple[str, str], str]] = {
     ("reduction", "reduction"): "A lower heating slope and a lower balance temperature is what "
     "insulation and air sealing usually do.",
-    ("reduction", "cannot tell"): "A lower heating slope, with a balance temperature that could "
-    "not be told from no change, is what more efficient equipment usually does; insulation lowers "
-    "both, and the bills may be too few to show the second.",
-    ("cannot tell", "reduction"): "A lower balance temperature, with a heating slope that could "
-    "not be told from no change, is what a lower thermostat setting or more heat from people, sun "
-    "and appliances usually does; insulation lowers both.",
+    ("reduction", "cannot tell"): "A lower heating slope is what insulation and air sealing, or "
+    "more efficient equipment, usually leaves. The first two lower the balance temperature too, "
+    "equipment leaves it alone; here it could not be told from no change, so the bills do not "
+    "choose.",
+    ("cannot tell", "reduction"): "A lower balance temperature is what a lower thermostat setting, "
+    "more heat from people, sun and appliances, or insulation usually leaves. Insulation lowers "
+    "the heating slope too; here it could not be told from no change, so the bills do not choose.",
     ("reduction", "increase"): "A lower heating slope with a higher balance temperature is an "
     "unusual pair: the two err against each other, so read neither alone.",
     ("increase", "reduction"): "A higher heating slope with a lower balance temperature is an "

@@ -300,6 +300,7 @@ def test_readings_are_hypotheses() -> None:
     assert both.endswith(HYPOTHESIS)
     alone = reading_of(parts_with((1.0, 9.0), (-1.0, 5.0)))
     assert "more efficient equipment" in alone
+    assert "the bills do not choose" in alone
     neither = reading_of(parts_with((-1.0, 9.0), (-1.0, 5.0)))
     assert neither.endswith("the bills do not say which of the two changed.")
     assert reading_of(Parts()) == ""
