@@ -17,10 +17,11 @@ from normalize.savings.components import Equipment
 from normalize.savings.expectation import House, expectation_of
 from normalize.savings.heat_loss import heat_loss_of
 from normalize.savings.offer import forms_offered
-from normalize.savings.parts import Parts, parts_of
+from normalize.savings.parts import parts_of
 from normalize.savings.results import Estimate, Price, Savings
 from normalize.savings.scrutiny import Scrutiny, scrutinise
 from normalize.savings.sides import REASONS, Work
+from normalize.savings.taken_apart import Parts
 from normalize.savings.worth import price_of
 from normalize.site import AccountResult, Curve, KFactorRow, PeriodRow, Site
 from normalize.sitefile import AccountPlan
@@ -59,8 +60,13 @@ def unread_account(plan: AccountPlan, problem: str, confidence: float) -> Accoun
     )
 
 
-def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: float) -> AccountResult:
-    """One account before and after the upgrades that touch it."""
+def assess_account(
+    site: Site, plan: AccountPlan, bills: Bills, confidence: float, *, closely: bool = True
+) -> AccountResult:
+    """One account before and after the upgrades that touch it.
+
+    closely : with the evidence behind its checks; without, only the answer is of use.
+    """
     aligned = align(bills.periods, site.weather)
     work = work_on(site, plan.name)
     forms = forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms)
@@ -78,7 +84,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
     )
     savings = _unfit(found.savings, bills.unfit, confidence) if bills.unfit else found.savings
     close = Scrutiny()
-    if not bills.unfit:
+    if closely and not bills.unfit:
         asked = Asked(aligned, site.year, forms, confidence, net, found.stated_f is not None)
         close = scrutinise(asked, found, work_start=work.start, delivered=bills.kind == "delivery")
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")

@@ -122,6 +122,7 @@ def _variations(
         work_on(site, plan.name),
         save,
         occupied_since=plan.occupied_since,
+        without=account.without,
     )
 
 
@@ -152,7 +153,8 @@ def _other_weather(site: Site, result: SiteResult) -> list[Moved]:
                 out.append(Moved(name, other.name, other.changes, None, None, other.unavailable))
                 continue
             there = replace(site, weather=other.weather, year=other.year)
-            again = _as_chosen(there, assess_account(there, account, bills, result.confidence))
+            moved = assess_account(there, account, bills, result.confidence, closely=False)
+            again = _as_chosen(there, moved)
             out.append(replace(again, name=other.name, changes=other.changes))
     return out
 

@@ -1,7 +1,7 @@
 """The answer with one thing changed: how much of it hangs on choices that could be others.
 
 Forms, their average, weights, criterion, each bill, the stretch of bills: each asked of the
-same compiled comparison, a batch a kind (docs/method.md §13).
+same compiled comparison, a batch a kind (docs/method.md §7).
 """
 
 from __future__ import annotations
@@ -23,7 +23,7 @@ from normalize.fitting.columns import BASE, BIC, STATUS
 from normalize.fitting.fit import also_tried, batch_of_one
 from normalize.savings.again import Answers, Asked, ask_again
 from normalize.savings.compare import run_batch
-from normalize.savings.influence import without_each
+from normalize.savings.influence import Without, without_each
 from normalize.savings.kernel import NAC_BEFORE, PREDICTED
 from normalize.savings.results import Estimate, Savings
 from normalize.savings.sides import Work, codes, label_periods
@@ -75,19 +75,21 @@ def variations(
     chosen: Savings,
     *,
     occupied_since: int | None = None,
+    without: Sequence[Without] | None = None,
 ) -> tuple[Variation, ...]:
     """Every variation of one account's comparison that its bills allow, one change at a time.
 
     labels : (periods,) as ``Comparison.labels``.  chosen : the answer itself; a part of it
     that is unavailable stays so.  Where the balance temperature was stated there is only one
-    form, and forms, weights and criterion are not varied.
+    form, and forms, weights and criterion are not varied.  without : the answers without each
+    bill, where they are there already.
     """
     side = codes(tuple(labels))
     out: list[Variation] = []
     if not asked.stated:
         out += _forms(asked, side)
         out += _weights_and_criterion(asked, side)
-    out += _one_bill(asked, labels)
+    out += _one_bill(without or without_each(asked, labels))
     out += _windows(asked, tuple(labels), work, occupied_since)
     return tuple(_kept(v, chosen) for v in out)
 
@@ -306,13 +308,13 @@ def _of(found: Answers, row: int, kind: str, name: str) -> Variation:
     )  # fmt: skip
 
 
-def _one_bill(asked: Asked, labels: Sequence[str]) -> list[Variation]:
+def _one_bill(without: Sequence[Without]) -> list[Variation]:
     return [
         Variation(
             ONE_BILL, f"without bill {w.number}", w.normalized, w.avoided,
             w.form_before, w.form_after, "", w.number, w.side, w.start, w.end,
         )
-        for w in without_each(asked, labels)
+        for w in without
     ]  # fmt: skip
 
 
