@@ -30,9 +30,9 @@ if TYPE_CHECKING:
     from normalize.savings.expectation import Expectation
     from normalize.savings.heat_loss import HeatLoss
     from normalize.savings.influence import Without
-    from normalize.savings.parts import Parts
     from normalize.savings.placebo import Placebo
     from normalize.savings.results import Check, Price, Savings, Total
+    from normalize.savings.taken_apart import Parts
     from normalize.sensitivity import Moved
     from normalize.units import Factor
     from normalize.weather.temperature import DailyTemperature

@@ -152,7 +152,7 @@ def _joints(axes: Axes, bars: list[_Bar]) -> None:
 
 
 def _words(bar: _Bar) -> str:
-    from normalize.savings.parts import Part
+    from normalize.savings.taken_apart import Part
 
     return parts.part_words(Part(bar.name, bar.estimate), digits=3)
 

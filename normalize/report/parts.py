@@ -6,13 +6,13 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 from normalize.report import numbers as n
 from normalize.report import tables, words
-from normalize.savings.parts import ERR_TOGETHER
+from normalize.savings.taken_apart import ERR_TOGETHER
 
 if TYPE_CHECKING:
     from normalize.savings.expectation import Expectation
     from normalize.savings.heat_loss import HeatLoss
-    from normalize.savings.parts import Part
     from normalize.savings.results import Estimate
+    from normalize.savings.taken_apart import Part
     from normalize.site import AccountResult
 
 HEAT_LOSS: Final = "Btu/h·°F"
@@ -71,7 +71,7 @@ def parts_sentences(account: AccountResult) -> tuple[str, ...]:
 def part_words(part: Part, digits: int = 2) -> str:
     """One part with its range, without its unit.
 
-    >>> from normalize.savings.parts import Part
+    >>> from normalize.savings.taken_apart import Part
     >>> from normalize.savings.results import Estimate
     >>> part_words(Part("base load", Estimate(57.0, 2.2, 107.0)))
     '57 less (2.2 to 110)'

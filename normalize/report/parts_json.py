@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING, Any
 
-from normalize.savings.parts import ERR_TOGETHER
+from normalize.savings.taken_apart import ERR_TOGETHER
 
 if TYPE_CHECKING:
     from collections.abc import Callable

@@ -12,8 +12,8 @@ from typing import TYPE_CHECKING, Final
 from normalize.savings.expectation import heat_loss_rate
 
 if TYPE_CHECKING:
-    from normalize.savings.parts import Parts
     from normalize.savings.results import Estimate
+    from normalize.savings.taken_apart import Parts
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,7 +8,6 @@ slope and balance temperature strongly, so each has its own, wider range (docs/m
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
@@ -34,6 +33,7 @@ from normalize.savings.parts_kernel import (
 )
 from normalize.savings.results import Estimate
 from normalize.savings.sides import codes
+from normalize.savings.taken_apart import Part, Parts
 from normalize.weather.year import LongTermYear
 
 # Names of a form's parts, in the order of its parameters.
@@ -66,46 +66,7 @@ METHOD: Final = (
     "each part as a straight line about both fits, balance temperatures included; serial "
     "correlation of the bills integrated over (restricted likelihood, Student t)"
 )
-ERR_TOGETHER: Final = (
-    "Slope and balance temperature err together, strongly: where the bills put one too high they "
-    "put the other too low. So each part is less sure than the whole, its range is its own and "
-    "wider, and the ranges do not add up as the parts do."
-)
-
 Arrays = tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.int8]]
-
-
-@dataclass(frozen=True, slots=True)
-class Part:
-    """One parameter's part of the normalized savings, in the account's unit a year.
-
-    estimate : positive is a reduction; fractions are of NAC before.
-    """
-
-    name: str
-    estimate: Estimate
-
-
-@dataclass(frozen=True, slots=True)
-class Parts:
-    """The parts of the normalized savings, or the reason why there are none.
-
-    slope_before, slope_after, slope_change : the heating slope with its range, and before −
-    after (positive is a fall), per °F·day; None where a side has none.
-    """
-
-    parts: tuple[Part, ...] = ()
-    unavailable: str | None = None
-    slope_before: Estimate | None = None
-    slope_after: Estimate | None = None
-    slope_change: Estimate | None = None
-
-    @property
-    def total(self) -> float | None:
-        """What the parts add up to: the normalized savings, but for rounding."""
-        if not self.parts:
-            return None
-        return sum(p.estimate.value or 0.0 for p in self.parts)
 
 
 def run_parts(

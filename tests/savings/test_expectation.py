@@ -30,8 +30,8 @@ from normalize.savings.expectation import (
     heat_loss_rate,
 )
 from normalize.savings.heat_loss import HYPOTHESIS, heat_loss_of, reading_of
-from normalize.savings.parts import Part, Parts
 from normalize.savings.results import Estimate
+from normalize.savings.taken_apart import Part, Parts
 from normalize.units import FUELS
 from normalize.weather.year import LongTermYear, year_from_sample
 from tests.fitting.accounts import weather
