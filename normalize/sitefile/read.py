@@ -22,7 +22,8 @@ from normalize.sitefile.components import (
     MOST_COMPONENTS,
     read_component,
 )
-from normalize.sitefile.table import Table, line_numbers, nearest, shown
+from normalize.sitefile.drivers import read_day_types, read_drivers
+from normalize.sitefile.table import Table, line_numbers, must_exist, nearest, shown
 from normalize.sitefile.values import AccountPlan, Change, SiteFile, Upgrade, WeatherPlan
 from normalize.units import canonical_fuel, canonical_unit
 
@@ -34,7 +35,7 @@ HIGHEST_CO2: Final = 100_000.0  # kg a unit
 LARGEST_FLOOR_FT2: Final = 1e8  # the largest buildings are near 2e7 ft²
 HIGHEST_COST: Final = 1e12
 
-TABLES: Final = ("site", "weather", "account", "upgrade", "change")
+TABLES: Final = ("site", "weather", "account", "upgrade", "change", "driver", "day_types")
 SITE_KEYS: Final = ("name", "floor_area_ft2", "currency", "heating_setpoint_f")
 ACCOUNT_KEYS: Final = (
     "name",
@@ -134,7 +135,7 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
                 f"the table or key {shown(key)} is not known",
                 where=SITE_FILE,
                 next_step=f"{hint}site.toml may have [site], [weather], [[account]], [[upgrade]], "
-                "[[change]].",
+                "[[change]], [[driver]], [day_types].",
             )
     lines = line_numbers(text)
     site = _single(values, "site", lines)
@@ -142,6 +143,7 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
     accounts = tuple(_account(t, folder) for t in _several(values, "account", lines))
     _check_accounts(accounts)
     upgrades = _upgrades(_several(values, "upgrade", lines), accounts)
+    day_types = read_day_types(_single(values, "day_types", lines), folder, accounts)
     return SiteFile(
         name=site.text("name") or folder.resolve().name or "site",
         folder=folder,
@@ -153,6 +155,8 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
         changes=tuple(_change(t) for t in _several(values, "change", lines)),
         sha256=hashlib.sha256(data).hexdigest(),
         heating_setpoint_f=site.number("heating_setpoint_f", low=40.0, high=90.0, unit="°F"),
+        drivers=read_drivers(_several(values, "driver", lines), folder, accounts, day_types),
+        day_types=day_types,
     )
 
 
@@ -261,12 +265,12 @@ def _weather(table: Table, folder: Path) -> WeatherPlan:
             "each bill carries its mean temperature.",
         )
     if observed is not None:
-        _must_exist(observed, table.where("observed"))
+        must_exist(observed, table.where("observed"))
     file, years = _long_term(table, folder)
     reader = _reader(table, WEATHER_READER_KEYS)
     neighbour = table.path("neighbour", folder)
     if neighbour is not None:
-        _must_exist(neighbour, table.where("neighbour"))
+        must_exist(neighbour, table.where("neighbour"))
         reader["neighbour"] = neighbour
     return WeatherPlan(
         observed=observed,
@@ -288,7 +292,7 @@ def _files(table: Table, key: str, folder: Path) -> tuple[Path, ...]:
     files = []
     for name in names:
         path = replace(one, values={key: name}).required_path(key, folder)
-        _must_exist(path, table.where(key))
+        must_exist(path, table.where(key))
         files.append(path)
     return tuple(files)
 
@@ -314,20 +318,8 @@ def _long_term(weather: Table, folder: Path) -> tuple[Path | None, int]:
             wanted="one of the two",
         )
     if file is not None:
-        _must_exist(file, weather.where("long_term"))
+        must_exist(file, weather.where("long_term"))
     return file, years or 10
-
-
-def _must_exist(path: Path, where: str) -> None:
-    if path.is_file():
-        return
-    here = sorted(p.name for p in path.parent.iterdir()) if path.parent.is_dir() else []
-    guess = nearest(path.name, here)
-    raise MissingFile(
-        f"there is no file {shown(path.name)} in the folder",
-        where=where,
-        next_step=f"Did you mean {guess!r}?" if guess else "Put it there, or correct its name.",
-    )
 
 
 def _account(table: Table, folder: Path) -> AccountPlan:

@@ -89,6 +89,40 @@ class WeatherPlan:
 
 
 @dataclass(frozen=True, slots=True)
+class DriverPlan:
+    """Something beside the weather that drives use: occupied units, production, school days.
+
+    file : with a value a day, a month or a stretch of days; None for a column of the bill file.
+    accounts : that it applies to; empty means all.  normal : its level on a day of a normal
+    year.  normal_per_year : its sum over a normal year.  reader : how its values are read.
+    """
+
+    name: str
+    file: Path | None = None
+    accounts: tuple[str, ...] = ()
+    normal: float | None = None
+    normal_per_year: float | None = None
+    reader: dict[str, str] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
+class DayTypesPlan:
+    """Kinds of days that may use more or less than others.
+
+    weekend : days of the week, Monday is 0.  holidays : day numbers, or holidays_file.
+    school_terms : day numbers ``[start, end)``.  accounts : empty means all.
+    """
+
+    weekend: tuple[int, ...]
+    holidays: tuple[int, ...] = ()
+    holidays_file: Path | None = None
+    school_terms: tuple[tuple[int, int], ...] = ()
+    accounts: tuple[str, ...] = ()
+    holidays_per_year: float | None = None
+    school_days_per_year: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class SiteFile:
     """site.toml, read and checked.
 
@@ -106,3 +140,5 @@ class SiteFile:
     changes: tuple[Change, ...]
     sha256: str
     heating_setpoint_f: float | None = None
+    drivers: tuple[DriverPlan, ...] = ()
+    day_types: DayTypesPlan | None = None
