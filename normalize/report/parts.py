@@ -84,15 +84,21 @@ def part_words(part: Part, digits: int = 2) -> str:
         return "not known"
     if verdict == "cannot tell":
         return f"{_signed(spread.low, digits)} to {_signed(spread.high, digits)}"
-    near, far = (n.significant(x, digits) for x in sorted((abs(spread.low), abs(spread.high))))
+    near, far = (_short(x, digits) for x in sorted((abs(spread.low), abs(spread.high))))
     return f"{_signed(spread.value, digits)} ({near} to {far})"
 
 
 def _signed(value: float | None, digits: int = 2) -> str:
     if value is None:
         return n.UNKNOWN
-    rounded = n.significant(abs(value), digits).removesuffix(".0")
-    return f"{rounded} {'less' if value >= 0.0 else 'more'}"
+    return f"{_short(abs(value), digits)} {'less' if value >= 0.0 else 'more'}"
+
+
+def _short(value: float, digits: int = 2) -> str:
+    """Significant digits without zeros that follow the point."""
+    text = n.significant(value, digits)
+    whole, point, decimals = text.partition(".")
+    return whole if point and not decimals.strip("0") else text
 
 
 def parts_table(account: AccountResult) -> tables.Table:
@@ -149,7 +155,7 @@ def _changed(e: Estimate, unit: str) -> str:
             "Its change could not be told from none: it is somewhere between "
             f"{_signed(low)} and {_signed(high)}, {unit}"
         )
-    near, far = (n.significant(x) for x in sorted((abs(low or 0.0), abs(high or 0.0))))
+    near, far = (_short(x) for x in sorted((abs(low or 0.0), abs(high or 0.0))))
     verb = "fell" if (spread.value or 0.0) > 0.0 else "rose"
     return f"It {verb} by {n.significant(abs(spread.value or 0.0))} ({near} to {far}) {unit}"
 
