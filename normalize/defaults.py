@@ -31,6 +31,11 @@ HEATING_SETPOINT_F: Final = 68.0  # °F indoors in the heating season (common pr
 MIN_ABS_T: Final = 2.0  # IPMVP asks |t| > 2 (memory)
 BASE_LOAD_T: Final = -2.0  # a base load is called negative only when two standard errors below 0
 
+# When a driver of use beside the weather is refused (method §3.1).
+MAX_SHARED_VARIATION: Final = 0.90  # of its variation with weather and other drivers: a variance
+#                        inflation of 10 (Marquardt 1970, Technometrics 12:591-612, memory)
+MIN_DAY_TYPE_SPREAD: Final = 0.05  # of a bill's days: months all have nearly the same weekends
+
 # Serial correlation that the interval integrates out (method §5).
 RHO_LOW: Final = -0.4
 RHO_HIGH: Final = 0.9
