@@ -15,6 +15,7 @@ from normalize.savings.checks import checks_of
 from normalize.savings.compare import Comparison, compare
 from normalize.savings.components import Equipment
 from normalize.savings.expectation import House, expectation_of
+from normalize.savings.guesses import SideOfWork, guess_caution, sway_of
 from normalize.savings.heat_loss import heat_loss_of
 from normalize.savings.offer import forms_offered
 from normalize.savings.parts import parts_of
@@ -65,7 +66,8 @@ def assess_account(
 ) -> AccountResult:
     """One account before and after the upgrades that touch it.
 
-    closely : with the evidence behind its checks; without, only the answer is of use.
+    closely : with the evidence behind its checks, the parts and the expectation; without, only
+    the answer is of use.
     """
     aligned = align(bills.periods, site.weather)
     work = work_on(site, plan.name)
@@ -88,6 +90,7 @@ def assess_account(
         asked = Asked(aligned, site.year, forms, confidence, net, found.stated_f is not None)
         close = scrutinise(asked, found, work_start=work.start, delivered=bills.kind == "delivery")
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
+    rows = period_rows(bills, aligned, found)
     unavailable = ""
     if not savings.normalized.available and not savings.avoided.available:
         unavailable = savings.normalized.unavailable or ""
@@ -97,7 +100,7 @@ def assess_account(
         unit=bills.unit,
         bills=bills,
         unavailable=unavailable,
-        periods=period_rows(bills, aligned, found),
+        periods=rows,
         tried_before=found.tried_before,
         tried_after=found.tried_after,
         savings=savings,
@@ -113,14 +116,16 @@ def assess_account(
             without=close.without,
             placebo=close.placebo,
         ),
-        cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work)),
+        cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work, rows)),
         k_factors=_k_factors(bills, aligned, found),
         work_start=work.start,
         work_end=work.end,
         evidence=close.evidence,
         without=close.without,
         placebo=close.placebo,
-        **_read_closely(site, plan, bills, aligned, found, savings, confidence),
+        **(
+            _read_closely(site, plan, bills, aligned, found, savings, confidence) if closely else {}
+        ),
     )
 
 
@@ -256,7 +261,12 @@ def _used_nothing(bills: Bills, found: Comparison) -> bool:
 
 
 def _circumstances(
-    site: Site, plan: AccountPlan, bills: Bills, found: Comparison, work: Work
+    site: Site,
+    plan: AccountPlan,
+    bills: Bills,
+    found: Comparison,
+    work: Work,
+    rows: tuple[PeriodRow, ...],
 ) -> Circumstances:
     near = any(
         row.estimated and row.end is not None and abs(row.end - work.start) <= NEAR_WORK_DAYS
@@ -275,8 +285,26 @@ def _circumstances(
         water_only=not plan.space_heating,
         tried_before=found.tried_before,
         used_nothing=_used_nothing(bills, found),
-        bill_cautions=bills.cautions,
+        bill_cautions=(*_guesses(bills, found, rows), *bills.cautions),
     )
+
+
+def _guesses(bills: Bills, found: Comparison, rows: tuple[PeriodRow, ...]) -> tuple[str, ...]:
+    """A caution where metered bills sway about their fits as guessed readings do."""
+    if bills.kind == "delivery":
+        return ()  # fills that are not quite full sway alike, and are told of elsewhere
+    sides = []
+    for label, fit in (("before", found.savings.before), ("after", found.savings.after)):
+        mine = [r for r in rows if r.side == label and not np.isnan(r.fitted_per_day)]
+        if fit is None or not mine:
+            continue
+        start, end = (np.array([getattr(r, name) for r in mine]) for name in ("start", "end"))
+        use, fitted = (np.array([getattr(r, name) for r in mine])
+                       for name in ("use_per_day", "fitted_per_day"))  # fmt: skip
+        taus = (fit.balance_heating_f, fit.balance_cooling_f)
+        k = len(fit.terms) + sum(1 for tau in taus if tau is not None)
+        sides.append(SideOfWork(start, end, use, fitted, k))
+    return guess_caution(sway_of(sides))
 
 
 def _unfit(savings: Savings, reason: str, confidence: float) -> Savings:
