@@ -236,9 +236,8 @@ def _influence(e: SideEvidence) -> list[Check]:
     look = [w for w in known if w.cook > LOOK_COOK / n]
     place = {w.number: s for w, s in zip(e.weights, e.spans, strict=True)}
     first, last = place[top.number]
-    several = (
-        f"; {len(look)} of {n} {_are(len(look))} over 4/n, which is worth a look" if look else ""
-    )
+    are = "is" if len(look) == 1 else "are"
+    several = f"; {len(look)} of {n} {are} over 4/n, which is worth a look" if look else ""
     return [
         Check(
             "influence of single bills", e.side, top.cook, STRONG_COOK, top.cook <= STRONG_COOK,
