@@ -25,6 +25,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from normalize.bills.periods import Bills
+    from normalize.fitting.drivers import DailyAmounts
     from normalize.fitting.results import FormTried
     from normalize.savings.evidence import SideEvidence
     from normalize.savings.expectation import Expectation
@@ -61,6 +62,7 @@ class Site:
     inputs: tuple[tuple[str, str], ...] = ()  # (file, SHA-256) of every input
     heating_setpoint_f: float | None = None  # mean indoor temperature, where site.toml says it
     weather_plan: WeatherPlan | None = None  # other stations and years that site.toml offers
+    drivers: tuple[tuple[DailyAmounts, ...], ...] = ()  # of each account, in their order
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,13 +167,17 @@ def read_site(folder: str | os.PathLike[str]) -> Site:
     nothing; site.toml and the weather must be readable.
     Errors: SiteError, WeatherError and their kinds.
     """
+    from normalize.site_drivers import read_site_drivers
+
     plan = read_site_file(folder)
     bills, problems = _read_bills(plan)
+    drivers, driver_files = read_site_drivers(plan, bills)
     weather = _weather(plan, bills)
     year, why_not = _year(plan, weather)
     inputs = [("site.toml", plan.sha256), *weather.source]
     inputs += year.source if year is not None else ()
     inputs += [pair for b in bills if b is not None for pair in b.source]
+    inputs += driver_files
     return Site(
         name=plan.name,
         folder=plan.folder,
@@ -188,6 +194,7 @@ def read_site(folder: str | os.PathLike[str]) -> Site:
         inputs=tuple(dict.fromkeys(inputs)),
         weather_plan=plan.weather,
         heating_setpoint_f=plan.heating_setpoint_f,
+        drivers=drivers,
     )
 
 
