@@ -271,7 +271,7 @@ def _years_on_sheets(parts: Sequence[_Part], results: Sequence[_Result]) -> list
 def _taken_apart(file: BillFile, said: Answers, sheet: str | None) -> _Found:
     if looks_like_xml(file.data):
         return _meters(file, said)
-    if interval_head(file, said) is not None:
+    if interval_head(file, said, sheet) is not None:
         whole = _Part(Group((), "", ()), "", 0, lambda a: understand_file(file, a, sheet))
         return _Found([whole])
     found = _Found()

@@ -91,7 +91,10 @@ class Taken:
         for i, begin in self.lines.odd.tolist():
             end = self.data.find(b"\n", begin)
             line = self.text(begin, end if end >= 0 else len(self.data))
-            cells = next(csv.reader([line], delimiter=self.delimiter), [])
+            try:
+                cells = next(csv.reader([line], delimiter=self.delimiter), [])
+            except csv.Error:  # a stray carriage return or NUL: no number there
+                cells = []
             for slot, k in enumerate(columns):
                 number = number_of(cells[k], self.decimal) if k < len(cells) else None
                 self.lines.value[i, slot] = np.nan if number is None else number

@@ -19,6 +19,7 @@ from normalize.bills.dates import read_written
 from normalize.bills.groups import cell
 from normalize.bills.table import (
     HEADER_LINES,
+    MAX_ROWS,
     BillFile,
     Cell,
     CsvHead,
@@ -50,13 +51,20 @@ class IntervalHead(CsvHead):
     sheet: str = ""
 
 
-def is_interval_file(file: BillFile, answers: Answers, score: Score) -> IntervalHead | None:
-    """The file's head if its lines are intervals within days (or very many days), else None."""
+def is_interval_file(
+    file: BillFile, answers: Answers, score: Score, sheet: str | None = None
+) -> IntervalHead | None:
+    """The file's head if its lines are intervals within days (or very many days), else None.
+
+    sheet : of a workbook; where none is named, the one that looks most like a table.
+    """
 
     def wide_too(cells: Sequence[Cell]) -> float:
         wide = wide_head((RawRow(1, tuple(cells)),))
         return WIDE_SCORE if wide is not None else score(cells)
 
+    if file.data.startswith(b"PK"):
+        return _first_look(file, answers, wide_too, sheet)
     head = csv_head(file, wide_too)
     if head is None:
         return None
@@ -65,15 +73,30 @@ def is_interval_file(file: BillFile, answers: Answers, score: Score) -> Interval
     return None if found is None else replace(found, lines=head.lines, encoding=head.encoding)
 
 
-def sheet_of_intervals(table: RawTable, answers: Answers) -> IntervalHead | None:
-    """The same for a sheet of a workbook; None also for any other table."""
-    if table.delimiter:
-        return None
-    rows = tuple(_sheet_rows(table))
-    head = _of_rows(replace(table, rows=rows[: HEADER_LINES + SAMPLE]), answers, len(rows))
-    if head is None:
-        return None
-    return replace(head, delimiter="\t", encoding="utf-8", data=_as_lines(rows), sheet=table.sheet)
+def _first_look(
+    file: BillFile, answers: Answers, score: Score, sheet: str | None
+) -> IntervalHead | None:
+    """The head of a workbook's sheet, by its first rows."""
+    try:
+        table = _sheet(file, score, sheet, HEADER_LINES + SAMPLE)
+    except NormalizeError:
+        return None  # the reader of tables says what is the matter
+    head = _of_rows(replace(table, rows=tuple(_sheet_rows(table))), answers, len(table.rows))
+    return head and replace(head, delimiter="\t", encoding="utf-8", sheet=table.sheet)
+
+
+def whole_sheet(file: BillFile, head: IntervalHead) -> IntervalHead:
+    """The head with all of its sheet as text.  Raises UnreadableBills."""
+    table = _sheet(file, lambda _: 0.0, head.sheet, MAX_ROWS)
+    return replace(head, data=_as_lines(tuple(_sheet_rows(table))))
+
+
+def _sheet(file: BillFile, score: Score, sheet: str | None, most: int) -> RawTable:
+    from normalize.bills.workbook import read_workbook
+
+    return read_workbook(
+        file.data, name=file.name, sha256=file.sha256, score=score, sheet=sheet, most=most
+    )
 
 
 def _of_rows(table: RawTable, answers: Answers, lines: int) -> IntervalHead | None:

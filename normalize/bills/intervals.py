@@ -29,9 +29,7 @@ from normalize.bills.fuel_and_unit import fuel_of, unit_of
 from normalize.bills.groups import cell, masked
 from normalize.bills.headings import squeeze
 from normalize.bills.interval_file import Taken, stamp_role
-from normalize.bills.interval_head import (
-    IntervalHead,
-)
+from normalize.bills.interval_head import IntervalHead, whole_sheet
 from normalize.bills.interval_kernel import BLANK, FULL, TOO_WIDE
 from normalize.bills.interval_sums import keep_lines
 from normalize.bills.interval_times import Moments, moments_of, wide_moments
@@ -76,6 +74,8 @@ def read_intervals(file: BillFile, head: IntervalHead, answers: Answers) -> Unde
     """Local days of one account.  Raises as read_bills does."""
     table = RawTable(file.name, file.sha256, head.rows, head.delimiter)
     columns, body = find_columns(table, answers.named)
+    if head.sheet:
+        head = whole_sheet(file, head)
     where = f"{file.name}:{columns.line}"
     columns, usage_notes = choose_usage(
         columns, fuel=answers.fuel, unit=answers.unit, where=file.name

@@ -37,7 +37,7 @@ from normalize.bills.table import (
 from normalize.errors import NoBills, NormalizeError, UnreadableBills
 
 if TYPE_CHECKING:
-    from normalize.bills.table import CsvHead
+    from normalize.bills.interval_head import IntervalHead
 
 PACED_ACCOUNTS = 200  # looked at to tell bills from days
 DAYS_APART = 5  # so much or less is the pace of days, not of bills (our own, no source)
@@ -103,7 +103,7 @@ def understand_file(file: BillFile, answers: Answers, sheet: str | None) -> Unde
         from normalize.bills.espi import read_espi
 
         return read_espi(file.data, file.name, answers)
-    head = interval_head(file, answers)
+    head = interval_head(file, answers, sheet)
     if head is not None:
         from normalize.bills.intervals import read_intervals
 
@@ -123,20 +123,22 @@ def table_score(answers: Answers) -> Score:
     return score
 
 
-def interval_head(file: BillFile, answers: Answers) -> CsvHead | None:
+def interval_head(
+    file: BillFile, answers: Answers, sheet: str | None = None
+) -> IntervalHead | None:
     """The head of an interval file; None for a table of bills.
 
     The monthly bills of thousands of accounts, in order of their dates, look like days.
     """
-    from normalize.bills.intervals import is_interval_file
+    from normalize.bills.interval_head import is_interval_file
 
     score = table_score(answers)
-    head = is_interval_file(file, answers, score)
+    head = is_interval_file(file, answers, score, sheet)
     if head is None:
         return None
     columns, body = find_columns(RawTable(file.name, "", head.rows, head.delimiter), answers.named)
     when = next((k for r in ("read", "end", "start") if (k := columns.get(r)) is not None), None)
-    timed = columns.get("time") is not None
+    timed = bool(head.wide or head.sheet) or columns.get("time") is not None
     timed = timed or any(":" in as_text(cell(r, when)) for r in body[:9])
     if timed or not columns.accounts or when is None:
         return head

@@ -29,6 +29,7 @@ MAX_COLUMNS = 500
 MAX_LINE = 100_000  # characters of one line
 MAX_CELL = 5_000  # characters of one cell
 LIKELY_HEADER = 10.0  # score of a line with a date and an amount heading (our own, no source)
+COUNTED_BYTES = 1_000_000  # in which lines are counted, to tell a long file from a short one
 HEADER_LINES = 60  # a header is looked for in this many rows from the top
 
 _UTF16 = (b"\xff\xfe", b"\xfe\xff")
@@ -158,7 +159,7 @@ def _bytes_of(file: Path) -> bytes:
 
 @dataclass(frozen=True, slots=True)
 class CsvHead:
-    """The first lines of a CSV, split. lines : of the whole file.  encoding : to read it with."""
+    """The first lines of a CSV, split. lines : of its first megabyte.  encoding : to read by."""
 
     rows: tuple[RawRow, ...]
     delimiter: str
@@ -171,7 +172,7 @@ def csv_head(file: BillFile, score: Score) -> CsvHead | None:
     data = file.data
     if data.startswith(b"PK") or (b"\0" in data[:4000] and not data.startswith(_UTF16)):
         return None
-    lines = data.count(b"\n")
+    lines = data.count(b"\n", 0, COUNTED_BYTES)
     sample = data[: 32 * 1024]
     if lines < 2 or b"\n" not in sample:
         return None

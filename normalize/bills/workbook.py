@@ -40,9 +40,12 @@ MAX_RATIO = 100  # unpacked over packed, of a part of more than a megabyte
 
 
 def read_workbook(
-    data: bytes, *, name: str, sha256: str, score: Score, sheet: str | None
+    data: bytes, *, name: str, sha256: str, score: Score, sheet: str | None, most: int = MAX_ROWS
 ) -> RawTable:
-    """Values of one sheet.  Raises UnreadableBills; AmbiguousBills if several look like bills."""
+    """Values of one sheet.  Raises UnreadableBills; AmbiguousBills if several look like bills.
+
+    most : rows from the top; fewer than MAX_ROWS for a first look.
+    """
     _check_zip(data, name)
     import openpyxl
     from openpyxl.utils.datetime import CALENDAR_MAC_1904
@@ -54,7 +57,7 @@ def read_workbook(
                 io.BytesIO(data), read_only=True, data_only=True, keep_links=False
             )
             chosen = _pick(book, name, score, sheet)
-            rows = tuple(_rows(book[chosen], name, MAX_ROWS))
+            rows = tuple(_rows(book[chosen], name, most))
             hidden, uncomputed = _unseen(data, getattr(book[chosen], "_worksheet_path", ""))
             epoch_1904 = book.epoch == CALENDAR_MAC_1904
             book.close()
