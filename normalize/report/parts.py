@@ -6,7 +6,6 @@ from typing import TYPE_CHECKING, Final, NamedTuple
 
 from normalize.report import numbers as n
 from normalize.report import tables, words
-from normalize.savings.taken_apart import ERR_TOGETHER
 
 if TYPE_CHECKING:
     from normalize.savings.expectation import Expectation
@@ -65,7 +64,7 @@ def parts_sentences(account: AccountResult) -> tuple[str, ...]:
     told = "; ".join(f"{part.name} {part_words(part)}" for part in found.parts)
     first = f"In {unit} of a normal year the change is made up of: {told}."
     reading = account.heat_loss.reading if account.heat_loss is not None else ""
-    return tuple(s for s in (first, reading, ERR_TOGETHER) if s)
+    return tuple(s for s in (first, reading, found.caution, found.rough) if s)
 
 
 def part_words(part: Part, digits: int = 2) -> str:
@@ -109,7 +108,7 @@ def parts_table(account: AccountResult) -> tables.Table:
     rows.append(("all together", *_five(account.savings.normalized, 2)))
     unit = words.unit_word(account.unit)
     head = ("part", "value", "low", "high", "plain low", "plain high")
-    caption = f"{PARTS_CAPTION}. {words.upper(unit)} in a normal year; less is positive."
+    caption = f"{PARTS_CAPTION}. Values in {unit} of a normal year; less is positive."
     return tables.Table(caption, head, tuple(rows), frozenset(range(1, 6)))
 
 
@@ -128,15 +127,18 @@ def heat_loss_sentences(heat: HeatLoss) -> tuple[str, ...]:
     before, after, change = heat.before, heat.after, heat.change
     if before is None:
         return ()
-    text = f"The heating slope before the work amounts to {_around(before)} {HEAT_LOSS} of fuel"
+    text = f"The heating slope before the work amounts to {_around(before)} {HEAT_LOSS}"
     if after is not None:
         text += f", after it to {_around(after)}"
-    told = [f"{text}: the heat-loss rate of the house divided by the heating efficiency."]
+    told = [
+        f"{text}: the rate at which this account's fuel makes up for heat lost, its heating "
+        "efficiency not taken out."
+    ]
     if change is not None:
         told.append(f"{_changed(change, HEAT_LOSS)}.")
     if heat.ua_before is not None and heat.efficiency is not None:
         ua = (
-            f"With the stated efficiency of {heat.efficiency:.2f} the house itself lost "
+            f"With the stated efficiency of {heat.efficiency:.2f} the heat lost was "
             f"{_around(heat.ua_before)} {HEAT_LOSS}"
         )
         if heat.ua_after is not None:
@@ -216,8 +218,7 @@ def expectation_table(account: AccountResult, wanted: Expectation) -> tables.Tab
     unit = words.unit_word(account.unit)
     rows = [
         (
-            "as the bills before the work show it",
-            "",
+            "as the bills show it",
             n.UNKNOWN,
             n.plain(wanted.ua_before, 1),
             n.plain(wanted.balance_before_f, 2),
@@ -225,8 +226,7 @@ def expectation_table(account: AccountResult, wanted: Expectation) -> tables.Tab
     ]
     rows += [
         (
-            n.name(s.name),
-            s.kind if s.kind != s.name else "",
+            n.name(s.name) if s.kind == s.name else f"{n.name(s.name)} ({s.kind})",
             n.plain(s.saved, 2),
             n.plain(s.ua, 1),
             n.plain(s.balance_f, 2),
@@ -234,14 +234,13 @@ def expectation_table(account: AccountResult, wanted: Expectation) -> tables.Tab
         for s in wanted.steps
     ]
     total = n.plain(wanted.saved, 2)
-    rows.append(("all together", "", total, n.plain(wanted.ua_after, 1),
+    rows.append(("all together", total, n.plain(wanted.ua_after, 1),
                  n.plain(wanted.balance_after_f, 2)))  # fmt: skip
-    rows.append(("the same with the balance temperature held, to compare", "",
-                 n.plain(wanted.balance_held, 2), "", ""))  # fmt: skip
-    head = ("component", "kind", f"{unit} saved", f"heat loss, {HEAT_LOSS}", "balance, °F")
+    rows.append(("the same, balance held", n.plain(wanted.balance_held, 2), "", ""))
+    head = ("component", f"{unit} saved", f"heat loss, {HEAT_LOSS}", "balance, °F")
     caption = (
         f"What the described work should have saved in a normal year, each component on what those "
         f"above it left; indoors {n.plain(wanted.setpoint_f, 1)} °F, efficiency before "
         f"{n.plain(wanted.efficiency, 2)}"
     )
-    return tables.Table(caption, head, tuple(rows), frozenset({2, 3, 4}))
+    return tables.Table(caption, head, tuple(rows), frozenset({1, 2, 3}))

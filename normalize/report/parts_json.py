@@ -5,8 +5,6 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING, Any
 
-from normalize.savings.taken_apart import ERR_TOGETHER
-
 if TYPE_CHECKING:
     from collections.abc import Callable
 
@@ -30,7 +28,8 @@ def close_reading(account: AccountResult, estimate: Callable[[Estimate], Json]) 
         else {
             "parts": [{"part": p.name, **estimate(p.estimate)} for p in found.parts],
             "unavailable": found.unavailable,
-            "caution": ERR_TOGETHER if len(found.parts) > 1 else "",
+            "caution": found.caution,
+            "rough": found.rough,
         },
         "heat_loss": None if account.heat_loss is None else _heat_loss(account.heat_loss),
         "expectation": None if account.expectation is None else _expectation(account.expectation),

@@ -98,11 +98,11 @@ HYPOTHESIS: Final = "That is a hypothesis, not a finding: other causes leave the
 # (slope, balance temperature) → what usually leaves such signs (common practice, no source).
 _USUAL: Final[dict[tuple[str, str], str]] = {
     ("reduction", "reduction"): "A lower heating slope and a lower balance temperature is what "
-    "insulation and air sealing usually do.",
-    ("reduction", "cannot tell"): "A lower heating slope is what insulation and air sealing, or "
-    "more efficient equipment, usually leaves. The first two lower the balance temperature too, "
-    "equipment leaves it alone; here it could not be told from no change, so the bills do not "
-    "choose.",
+    "insulation and air sealing usually do, and what another heater that took over can leave.",
+    ("reduction", "cannot tell"): "A lower heating slope is what insulation and air sealing, "
+    "more efficient equipment, or another heater that took over usually leaves. The first two "
+    "lower the balance temperature too; here it could not be told from no change, so the bills do "
+    "not choose.",
     ("cannot tell", "reduction"): "A lower balance temperature is what a lower thermostat setting, "
     "more heat from people, sun and appliances, or insulation usually leaves. Insulation lowers "
     "the heating slope too; here it could not be told from no change, so the bills do not choose.",
@@ -111,9 +111,10 @@ _USUAL: Final[dict[tuple[str, str], str]] = {
     ("increase", "reduction"): "A higher heating slope with a lower balance temperature is an "
     "unusual pair: the two err against each other, so read neither alone.",
     ("increase", "increase"): "A higher heating slope and a higher balance temperature is what "
-    "lost insulation or more outdoor air usually does.",
+    "lost insulation, more outdoor air, or heating that moved to this account usually leaves.",
     ("increase", "cannot tell"): "A higher heating slope, with a balance temperature that could "
-    "not be told from no change, is what less efficient equipment or more outdoor air does.",
+    "not be told from no change, is what less efficient equipment, more outdoor air, or heating "
+    "that moved to this account usually leaves.",
     ("cannot tell", "increase"): "A higher balance temperature, with a heating slope that could "
     "not be told from no change, is what a higher thermostat setting or less heat from people, sun "
     "and appliances usually does.",

@@ -19,6 +19,7 @@ from normalize.fitting.columns import BASE, SLOPE_C, SLOPE_H, SLOPE_LINE, TAU_C,
 from normalize.fitting.fit import batch_of_one
 from normalize.fitting.forms import N_FORMS, form_named
 from normalize.fitting.results import Fit
+from normalize.savings.cautions import POOR_TAU_F
 from normalize.savings.compare import Comparison
 from normalize.savings.estimates import estimate_at
 from normalize.savings.parts_kernel import (
@@ -31,7 +32,7 @@ from normalize.savings.parts_kernel import (
     SLOPE_CHANGE,
     parts_batch,
 )
-from normalize.savings.results import Estimate
+from normalize.savings.results import Estimate, Savings
 from normalize.savings.sides import codes
 from normalize.savings.taken_apart import Part, Parts
 from normalize.weather.year import LongTermYear
@@ -164,9 +165,32 @@ def _assembled(
     return Parts(
         parts=told,
         unavailable=reason,
+        rough=_rough(savings) if told else "",
         slope_before=slope(SLOPE_BEFORE),
         slope_after=slope(SLOPE_AFTER),
         slope_change=slope(SLOPE_CHANGE),
+    )
+
+
+def _rough(savings: Savings) -> str:
+    """Which balance temperatures the bills place only roughly."""
+    told = []
+    for side, fit in (("before", savings.before), ("after", savings.after)):
+        if fit is None:
+            continue
+        for kind, span in (
+            ("heating", fit.balance_heating_range_f),
+            ("cooling", fit.balance_cooling_range_f),
+        ):
+            if span is not None and span[1] - span[0] > POOR_TAU_F:
+                told.append(
+                    f"for {kind} {side} the work between {span[0]:.0f} and {span[1]:.0f} °F"
+                )
+    if not told:
+        return ""
+    return (
+        f"The bills place the balance temperature only roughly ({'; '.join(told)}), so the parts "
+        "are rough, and so are their ranges: trust the whole more than its parts."
     )
 
 

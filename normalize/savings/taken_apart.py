@@ -33,6 +33,7 @@ class Part:
 class Parts:
     """The parts of the normalized savings, or the reason why there are none.
 
+    rough : where a balance temperature is poorly placed, in words, so that parts are rough.
     slope_before, slope_after, slope_change : the heating slope with its range, and before −
     after (positive is a fall), per °F·day; None where a side has none.
     """
@@ -42,6 +43,12 @@ class Parts:
     slope_before: Estimate | None = None
     slope_after: Estimate | None = None
     slope_change: Estimate | None = None
+    rough: str = ""
+
+    @property
+    def caution(self) -> str:
+        """That slope and balance temperature err together, where there is a balance temperature."""
+        return ERR_TOGETHER if any("balance" in p.name for p in self.parts) else ""
 
     @property
     def total(self) -> float | None:
