@@ -15,8 +15,10 @@ RIVALS = {PICK_AICC: PICK_BIC, AVERAGED: ALONE}  # each against the same ranges 
 
 def conclusion(results: Sequence[Choice]) -> str:
     """One paragraph a number of bills, then the choice that follows."""
-    bills = sorted({r.cell.bills for r in results})
-    paragraphs = [_at([r for r in results if r.cell.bills == n], n) for n in bills]
+    groups: dict[tuple[int, float], list[Choice]] = {}
+    for r in sorted(results, key=lambda r: (r.cell.bills, r.cell.noise)):
+        groups.setdefault((r.cell.bills, r.cell.noise), []).append(r)
+    paragraphs = [_at(rows, *key) for key, rows in groups.items()]
     return "\n\n".join([*paragraphs, _choice(results)])
 
 
@@ -31,8 +33,8 @@ def gain(results: Sequence[Choice], way: str, against: str) -> float:
     return 1.0 - mean_of(results, way, "rms_savings") / base
 
 
-def _at(results: Sequence[Choice], bills: int) -> str:
-    told = [f"**{bills} bills a side** ({len(results)} cells)."]
+def _at(results: Sequence[Choice], bills: int, noise: float) -> str:
+    told = [f"**{bills} bills a side, {noise:.0%} noise** ({len(results)} cells)."]
     errors = ", ".join(
         f"{way} {100 * mean_of(results, way, 'rms_savings'):.2f} %"
         for way in (PICK_BIC, PICK_AICC, AVERAGED)
@@ -42,9 +44,12 @@ def _at(results: Sequence[Choice], bills: int) -> str:
         better = gain(results, way, against)
         wins = sum(r.scores[way].rms_savings < r.scores[against].rms_savings for r in results)
         word = "smaller" if better > 0 else "larger"
+        said = (
+            f"{abs(better):.1%} {word} than BIC's" if abs(better) >= 5e-4 else "as large as BIC's"
+        )
         told.append(
-            f"{way.capitalize() if way == AVERAGED else way}: {abs(better):.1%} {word} than BIC's, "
-            f"the smaller one in {wins} of {len(results)} cells."
+            f"{way.capitalize() if way == AVERAGED else way}: {said}, the smaller one in {wins} "
+            f"of {len(results)} cells."
         )
     covers = ", ".join(
         f"{way} {mean_of(results, way, 'coverage_savings'):.3f}"
@@ -67,7 +72,7 @@ def _choice(results: Sequence[Choice]) -> str:
     best = max(gains, key=lambda w: gains[w])
     inside = {
         way: sum(LOW <= r.scores[way].coverage_savings <= HIGH for r in results)
-        for way in (PICK_BIC, *RIVALS)
+        for way in (PICK_BIC, PICK_AICC, ALONE, AVERAGED)
     }
     covers = "; ".join(f"{way} in {inside[way]} of {len(results)} cells" for way in inside)
     facts = (
@@ -75,7 +80,7 @@ def _choice(results: Sequence[Choice]) -> str:
         f"{-gains[PICK_AICC]:+.1%} and averaging by {-gains[AVERAGED]:+.1%}. Coverage of savings "
         f"lies within {LOW:.2f}–{HIGH:.2f}: {covers}."
     )
-    if gains[best] < WORTHWHILE or inside[best] < inside[PICK_BIC]:
+    if gains[best] < WORTHWHILE or inside[best] < inside[RIVALS[best]]:
         told = (
             f"Neither lowers the error by as much as {WORTHWHILE:.0%} with coverage at least as "
             "good, and one form that can be drawn and checked is worth more to a reader than a "

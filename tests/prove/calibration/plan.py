@@ -76,11 +76,16 @@ def daily() -> list[Cell]:
 
 CHOICE_BILLS = (9, 12, 18, 24)
 CHOICE_RHOS = (0.0, 0.3)
+CHOICE_NOISY_BILLS, CHOICE_NOISE = 12, 0.20  # where forms are hardest to tell apart
 
 
 def choice() -> list[Cell]:
     """Cells in which ways of choosing a form are compared: the default four are offered."""
-    return [
+    noisy = [
+        replace(_of(form, CHOICE_NOISY_BILLS, SPOKE_RHO), noise=CHOICE_NOISE)
+        for form in SPOKE_FORMS
+    ]
+    return noisy + [
         _of(form, bills, rho)
         for form in SPOKE_FORMS for bills in CHOICE_BILLS for rho in CHOICE_RHOS
     ]  # fmt: skip

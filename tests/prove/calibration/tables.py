@@ -89,12 +89,13 @@ def of_choices(results: Sequence[Choice]) -> str:
             s = r.scores[way]
             right = f"{s.right_form:.0%}" if way in WAYS[:2] else ""
             rows.append([
-                r.cell.form, str(r.cell.bills), f"{r.cell.rho:g}", way, right,
+                r.cell.form, str(r.cell.bills), f"{r.cell.rho:g}", f"{r.cell.noise:.0%}", way,
+                right,
                 f"{100 * s.rms_nac:.2f}", f"{100 * s.rms_savings:.2f}",
                 _three(s.coverage_nac), _three(s.coverage_savings), f"{100 * s.width_savings:.1f}",
             ])  # fmt: skip
     head = [
-        "true form", "bills", "ρ", "way", "right form", "rms NAC", "rms savings", "covers NAC",
-        "covers savings", "width",
+        "true form", "bills", "ρ", "noise", "way", "right form", "rms NAC", "rms savings",
+        "covers NAC", "covers savings", "width",
     ]  # fmt: skip
-    return markdown(head, rows, 4)
+    return markdown(head, rows, 5)
