@@ -6,6 +6,7 @@ Lengths of months are the calendar's (Python's calendar module is the reference)
 from __future__ import annotations
 
 import calendar
+import contextlib
 from pathlib import Path
 
 import pytest
@@ -110,10 +111,8 @@ def test_faulty_rows_are_left_out_and_told(tmp_path: Path) -> None:
 @pytest.mark.parametrize("amount", ["1e300", "9" * 400, "inf", "\x00", "=1+1"])
 def test_absurd_amounts_are_none(tmp_path: Path, amount: str) -> None:
     text = f"Date,Tonnes\n2023-01-05,3\n2023-01-06,{amount}\n"
-    try:
+    with contextlib.suppress(BillError):  # a NUL makes it no table at all
         assert read(tmp_path, text).value == (3.0,)
-    except BillError:
-        pass  # a NUL makes it no table at all
 
 
 def test_a_file_that_is_not_there(tmp_path: Path) -> None:

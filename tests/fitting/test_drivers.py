@@ -12,6 +12,7 @@ import statsmodels.api as sm
 
 from normalize.days import day_of_iso
 from normalize.fitting.align import Aligned
+from normalize.fitting.batch import Batch, Stations
 from normalize.fitting.batch import settings as kernel_settings
 from normalize.fitting.day_types import HOLIDAY, WEEKEND, Calendar, day_types
 from normalize.fitting.driver_fit import fit_with, shared_with
@@ -104,7 +105,7 @@ def account(seed: int, n: int, effects: tuple[float, ...], noise: float) -> tupl
     day = np.arange(FIRST, int(end[-1]))
     temp = 50.0 - 22.0 * np.cos((day - 15) / 365.25 * 2 * np.pi) + rng.normal(0, 7, day.size)
 
-    def means(v):
+    def means(v: np.ndarray) -> np.ndarray:
         return np.array([v[a - FIRST : b - FIRST].mean() for a, b in zip(start, end, strict=True)])
 
     h = means(np.maximum(60.0 - temp, 0.0))
@@ -121,7 +122,7 @@ def h_at(aligned: Aligned, temp: np.ndarray, tau: float) -> np.ndarray:
     return np.array([below[a:b].mean() for a, b in spans])
 
 
-def bench(aligned: Aligned) -> tuple:  # type: ignore[type-arg]
+def bench(aligned: Aligned) -> tuple[Batch, Stations]:
     return batch_of_one(aligned, np.zeros(aligned.n, np.uint8), ("heating",))
 
 
