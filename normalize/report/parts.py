@@ -202,15 +202,25 @@ def expectation_sentences(account: AccountResult, wanted: Expectation) -> tuple[
         f"{n.plain(wanted.balance_before_f, 1)} to {n.plain(wanted.balance_after_f, 1)} °F, "
         "because a house that loses less needs heat only in colder weather.",
     ]
-    if wanted.ratio is not None and wanted.ratio_low is not None and wanted.ratio_high is not None:
-        told.append(
-            f"The bills show {n.significant(wanted.ratio)} of what was expected (between "
-            f"{n.significant(wanted.ratio_low)} and {n.significant(wanted.ratio_high)}; this "
-            "range is that of the bills alone, the expectation has errors of its own)."
-        )
+    if wanted.ratio is not None:
+        told.append(_ratio_sentence(wanted))
     if wanted.assumed:
         told.append(f"Assumed, where site.toml does not say: {'; '.join(wanted.assumed)}.")
     return tuple(told)
+
+
+def _ratio_sentence(wanted: Expectation) -> str:
+    low, high = wanted.ratio_low or 0.0, wanted.ratio_high or 0.0
+    between = f"between {n.significant(low)} and {n.significant(high)}"
+    own = "this range is that of the bills alone, the expectation has errors of its own"
+    if high < 0.0:
+        return "The bills show an increase where a saving was expected."
+    if low <= 0.0:
+        return (
+            "The bills show a change that could not be told from none: it is somewhere "
+            f"{between} of what was expected ({own})."
+        )
+    return f"The bills show {n.significant(wanted.ratio)} of what was expected ({between}; {own})."
 
 
 def expectation_table(account: AccountResult, wanted: Expectation) -> tables.Table:

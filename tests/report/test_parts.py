@@ -16,6 +16,7 @@ from normalize.report.html import to_html
 from normalize.report.json import to_json
 from normalize.report.parts import close_reading, parts_table
 from normalize.report.text import to_text
+from normalize.savings.expectation import Expectation
 from normalize.savings.heat_loss import heat_loss_of
 from normalize.savings.results import Estimate
 from normalize.savings.taken_apart import ERR_TOGETHER, Part, Parts
@@ -111,6 +112,23 @@ def test_nothing_is_drawn_of_nothing(gas: AccountResult) -> None:
     told = close_reading(replace(gas, parts=Parts(unavailable="the forms differ")))
     assert told.parts == ("The change is not taken apart: the forms differ.",)
     assert told.parts_table is None
+
+
+def test_the_ratio_is_told_by_its_sign(gas: AccountResult) -> None:
+    wanted = Expectation(saved=100.0, ratio=0.9, ratio_low=0.6, ratio_high=1.2)
+
+    def told(low: float, high: float) -> str:
+        changed = replace(wanted, ratio=(low + high) / 2.0, ratio_low=low, ratio_high=high)
+        return " ".join(close_reading(replace(gas, expectation=changed)).expectation)
+
+    assert "show 0.90 of what was expected (between 0.60 and 1.2" in told(0.6, 1.2)
+    assert "could not be told from none" in told(-0.3, 0.8)
+    assert "an increase where a saving was expected" in told(-0.9, -0.1)
+    none = Expectation(unavailable="there is no long-term year")
+    assert close_reading(replace(gas, expectation=none)).expectation == (
+        "What the described work should have saved in gas cannot be said: "
+        "there is no long-term year.",
+    )
 
 
 def truth_parts(known: dict[str, dict[str, float]], year: object) -> list[float]:

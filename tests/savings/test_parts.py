@@ -46,6 +46,7 @@ from normalize.savings.parts_kernel import (
     NO_FIT,
     SLOPE_CHANGE,
     parts_about,
+    parts_batch,
     take_apart,
 )
 from normalize.savings.sides import Work
@@ -270,6 +271,19 @@ def test_an_account_alone_and_among_many_have_the_same_bits() -> None:
             told = np.array([e.value, e.low, e.high, e.plain_low, e.plain_high])
             assert told.tobytes() == slopes[i, row].tobytes()
         assert alone.total == pytest.approx(found.savings.normalized.value, abs=1e-9)
+
+
+def test_one_signature() -> None:
+    """Coerced at one gate: a second dtype or layout would compile (and differ) anew."""
+    homes = simulate(3, bills=12, rho=0.0, noise=0.1, seed=1)
+    fits, chosen, _ = run_batch(homes.batch, homes.table, [homes.year], confidence=0.9)
+    run_parts(homes.batch, homes.table, [homes.year], fits, chosen, confidence=0.9)
+    other = replace(homes.batch, start=homes.batch.start.astype(np.int64))
+    run_parts(
+        other, homes.table, [homes.year], np.asfortranarray(fits), chosen.astype(np.int64),
+        confidence=0.9,
+    )  # fmt: skip
+    assert len(parts_batch.signatures) == 1
 
 
 def side_arrays(homes: Homes, i: int, code: int) -> tuple[object, ...]:
