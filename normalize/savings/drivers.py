@@ -28,7 +28,6 @@ from normalize.fitting.columns import AFTER, BEFORE, UNUSED
 from normalize.fitting.driver_fit import DriverFit, fit_with, shared_with
 from normalize.fitting.drivers import (
     DailyAmounts,
-    Drivers,
     as_drivers,
     normal_level,
     period_means,
@@ -76,21 +75,36 @@ class DriverTrial:
 class Chosen:
     """The drivers that earned their place.
 
-    drivers : of every period, None where none is kept.  aligned : the periods, those without
-    a known amount of a kept driver set aside.  tried_on : the same for all drivers that were
-    tried, and candidates their matrix: what the comparison with and without rests on.
+    trials : every driver, in the order of site.toml.  aligned : the periods with the drivers
+    kept, those without a known amount of one set aside.  amounts, normals : of every driver.
     """
 
     trials: tuple[DriverTrial, ...]
-    drivers: Drivers | None
     aligned: Aligned
-    tried_on: Aligned
-    candidates: Drivers
+    amounts: tuple[DailyAmounts, ...]
+    normals: tuple[float, ...]
 
     @property
     def kept(self) -> tuple[str, ...]:
         """Names of the drivers kept."""
         return tuple(trial.name for trial in self.trials if trial.kept)
+
+    def with_only(self, names: Sequence[str]) -> Aligned:
+        """The same periods with other drivers, in the order of site.toml."""
+        at = [j for j, amounts in enumerate(self.amounts) if amounts.name in names]
+        return with_drivers(
+            self.aligned, [self.amounts[j] for j in at], [self.normals[j] for j in at]
+        )
+
+
+def with_drivers(
+    aligned: Aligned, drivers: Sequence[DailyAmounts], normals: Sequence[float]
+) -> Aligned:
+    """Periods with these drivers; those without a known amount of one are set aside."""
+    if not drivers:
+        return replace(aligned, drivers=None)
+    found, reasons = as_drivers(drivers, aligned.start, aligned.end, normals)
+    return replace(_set_aside(aligned, reasons), drivers=found)
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,29 +159,24 @@ def choose_drivers(
     levels = [normal_level(d, spans["before"], spans["after"]) for d in drivers]
     refused = [_known_too_little(d, aligned, labels) for d in drivers]
     open_ = [j for j, reason in enumerate(refused) if not reason]
-    candidates, unknown = as_drivers(
-        [drivers[j] for j in open_], aligned.start, aligned.end, [levels[j][0] for j in open_]
-    )
-    tried_on = _set_aside(aligned, unknown)
+    tried_on = with_drivers(aligned, [drivers[j] for j in open_], [levels[j][0] for j in open_])
     side = np.where(tried_on.usable, codes(labels), UNUSED).astype(np.uint8)
     values = np.zeros((aligned.n, len(drivers)))
-    values[:, open_] = candidates.values
-    bench = _Bench(*batch_of_one(tried_on, side, tuple(forms), net), values, {})
+    if tried_on.drivers is not None:
+        values[:, open_] = tried_on.drivers.values
+    bare = replace(tried_on, drivers=None)
+    bench = _Bench(*batch_of_one(bare, side, tuple(forms), net), values, {})
     for j in open_:
         earlier = [i for i in open_ if i < j and not refused[i]]
         refused[j] = _collinear(bench, drivers, j, earlier)
     able = [j for j in open_ if not refused[j]]
     kept = _forward(bench, able)
     trials = tuple(_trial(bench, d, j, refused[j], levels[j], kept) for j, d in enumerate(drivers))
-    own, missing = as_drivers(
-        [drivers[j] for j in kept], aligned.start, aligned.end, [levels[j][0] for j in kept]
-    )
     return Chosen(
         trials=trials,
-        drivers=own if kept else None,
-        aligned=_set_aside(aligned, missing) if kept else aligned,
-        tried_on=tried_on,
-        candidates=candidates,
+        aligned=with_drivers(aligned, [drivers[j] for j in kept], [levels[j][0] for j in kept]),
+        amounts=tuple(drivers),
+        normals=tuple(level for level, _ in levels),
     )
 
 
