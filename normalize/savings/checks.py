@@ -232,6 +232,17 @@ def _placebo(savings: Savings, placebo: Placebo | None) -> list[Check]:
     ]  # fmt: skip
 
 
+def moved_before(placebo: Placebo | None) -> tuple[str, ...]:
+    """The caution that use moved by itself before the work; empty where it hardly did."""
+    if placebo is None or placebo.share is None or placebo.share <= MOST_ANNOUNCED:
+        return ()
+    return (
+        f"Use moved by itself before the work: {len(placebo.announced)} of "
+        f"{len(placebo.dates)} invented work dates, when nothing was done, would have announced "
+        "a change. Part of the real change may be more of the same.",
+    )
+
+
 __all__ = [
     "FSU_CONFIDENCE",
     "FSU_K",
@@ -239,4 +250,5 @@ __all__ = [
     "checks_of",
     "cv_limit",
     "fractional_uncertainty",
+    "moved_before",
 ]

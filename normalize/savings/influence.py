@@ -17,6 +17,7 @@ from normalize.savings.results import Estimate
 from normalize.savings.sides import codes
 
 LOOK_COOK = 4.0  # Cook's distance over this ÷ n is worth a look (common practice, no source)
+MOST_SINGLE = 120  # more readings than this (days, not bills): none is left out singly
 STRONG_COOK = 1.0  # over this one bill moves the fit a lot: Cook & Weisberg 1982 (memory)
 
 
@@ -93,12 +94,13 @@ class Without:
 def without_each(asked: Asked, labels: Sequence[str]) -> tuple[Without, ...]:
     """The whole comparison, choice of form included, once without each bill in use.
 
-    labels : (periods,) as ``Comparison.labels``.  One batch; nothing is approximated.
+    labels : (periods,) as ``Comparison.labels``.  One batch; nothing is approximated.  Empty
+    where more than ``MOST_SINGLE`` readings are in use: of so many no one weighs much.
     """
     aligned = asked.aligned
     own = codes(tuple(labels))
     used = np.flatnonzero((own != UNUSED) & aligned.usable)
-    if used.shape[0] == 0:
+    if not 0 < used.shape[0] <= MOST_SINGLE:
         return ()
     sides = np.tile(own, (used.shape[0], 1))
     sides[np.arange(used.shape[0]), used] = UNUSED

@@ -37,6 +37,8 @@ if TYPE_CHECKING:
     from normalize.weather.year import LongTermYear
 
 MOST_DATES = 48  # more boundaries than this are thinned evenly: they add hardly anything
+FEWEST_DATES = 8  # tried of daily readings, of which a date costs more
+MOST_ROWS = 6_000  # dates times readings, above which dates are thinned further
 ROWS_AT_ONCE = 200_000  # of a program's batch, so that memory stays small
 
 
@@ -101,8 +103,9 @@ def placebo_of(
     if asked.year is None:
         return Placebo(unavailable=NO_YEAR)
     days, sides = invented_dates(
-        aligned.start, aligned.end, mine, window_days=_window(aligned.days[mine], delivered)
-    )
+        aligned.start, aligned.end, mine,
+        window_days=_window(aligned.days[mine], delivered), most=dates_of(int(mine.sum())),
+    )  # fmt: skip
     if days.shape[0] == 0:
         return Placebo(unavailable=_too_short(int(aligned.days[mine].sum())))
     found = ask_again(asked, sides, also=("line",))
@@ -127,6 +130,15 @@ def placebo_of(
         )
     first, last = int(aligned.start[mine].min()), int(aligned.end[mine].max())
     return Placebo(dates, int(days.shape[0]) - len(dates), first, last)
+
+
+def dates_of(readings: int, most: int = MOST_DATES) -> int:
+    """How many invented dates are tried of so many readings.
+
+    >>> dates_of(60), dates_of(1460)
+    (48, 8)
+    """
+    return min(most, max(MOST_ROWS // max(readings, 1), FEWEST_DATES))
 
 
 def _window(lengths: NDArray[np.int32], delivered: bool) -> int:
@@ -246,9 +258,10 @@ def placebo_counts(
     rows = 0
     for i in range(accounts):
         cut = slice(int(batch.offsets[i]), int(batch.offsets[i + 1]))
+        mine = batch.side[cut] == BEFORE
         _, sides = invented_dates(
-            batch.start[cut], batch.end[cut], batch.side[cut] == BEFORE,
-            window_days=window_days, most=most,
+            batch.start[cut], batch.end[cut], mine,
+            window_days=window_days, most=dates_of(int(mine.sum()), most),
         )  # fmt: skip
         if sides.shape[0]:
             pieces.append((i, cut, sides))

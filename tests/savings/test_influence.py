@@ -11,9 +11,9 @@ from normalize.bills.periods import Periods
 from normalize.fitting.align import align
 from normalize.savings.again import Asked, ask_again
 from normalize.savings.compare import compare
-from normalize.savings.influence import without_each
+from normalize.savings.influence import MOST_SINGLE, without_each
 from normalize.savings.sides import codes
-from tests.savings.test_answers import STATION, house, year
+from tests.savings.test_answers import STATION, TEMP, house, year
 
 pytestmark = pytest.mark.kernel
 
@@ -68,3 +68,16 @@ def test_a_bill_that_is_not_used_has_no_row() -> None:
     rows = without_each(Asked(aligned, year(), ("flat",), 0.90), found.labels)
     assert rows[0].number == 4
     assert len(rows) == 39
+
+
+def test_daily_readings_are_not_left_out_one_by_one() -> None:
+    """Of a thousand readings no single one weighs much, and each would cost a refit."""
+    start = 300 + np.arange(900, dtype=np.int32)
+    use = 0.6 + 0.12 * np.maximum(61 - TEMP[start], 0)
+    daily = Periods(
+        start, start + 1, use, np.full(900, np.nan), np.zeros(900, bool), np.ones(900, np.int32)
+    )
+    aligned = align(daily, STATION)
+    labels = ("before",) * 450 + ("after",) * 450
+    assert without_each(Asked(aligned, year(), ("flat",), 0.90), labels) == ()
+    assert MOST_SINGLE < 900

@@ -13,7 +13,7 @@ from normalize.fitting.align import align
 from normalize.fitting.batch import Batch, stations
 from normalize.fitting.columns import AFTER, BEFORE, UNUSED
 from normalize.savings.again import Asked
-from normalize.savings.checks import MOST_ANNOUNCED
+from normalize.savings.checks import MOST_ANNOUNCED, moved_before
 from normalize.savings.compare import compare
 from normalize.savings.placebo import Placebo, invented_dates, placebo_counts, placebo_of
 from normalize.savings.sides import Work
@@ -152,6 +152,21 @@ def test_nothing_after_the_work_takes_part() -> None:
     use[36:] *= 3.0
     other = replace(bills, periods=replace(bills.periods, use=use))
     assert placebo(bills, work) == placebo(other, work)
+
+
+def test_use_that_moved_before_the_work_earns_a_caution() -> None:
+    """15 % less from the middle of the baseline on: most dates near it announce it."""
+    bills, work = house(40, 14, noise=0.02)
+    use = bills.periods.use.copy()
+    use[20:40] *= 0.85
+    moved = placebo(replace(bills, periods=replace(bills.periods, use=use)), work)
+    assert moved.share is not None
+    assert moved.share > MOST_ANNOUNCED
+    told = moved_before(moved)
+    assert len(told) == 1
+    assert f"{len(moved.announced)} of {len(moved.dates)} invented work dates" in told[0]
+    assert moved_before(placebo(bills, work)) == ()
+    assert moved_before(None) == ()
 
 
 def test_a_gap_that_leaves_no_date_is_called_a_gap() -> None:
