@@ -188,8 +188,9 @@ def _avoided(
     seen: _Seen, at: int, n: int, use: NDArray[np.float64], ahead: Ahead, confidence: float
 ) -> Smallest:
     """From the baseline alone, as the range of avoided use is."""
-    steps = np.abs(np.subtract.outer(np.arange(n), np.arange(n)))
-    noise = np.array([(rho**steps).sum() / (1.0 - rho * rho) for rho in RHO])
+    apart = np.arange(1, n)
+    pairs = n + 2.0 * (RHO[:, None] ** apart @ (n - apart).astype(np.float64))
+    noise = pairs / (1.0 - RHO * RHO)
     total = seen.scale2[:, at] + seen.innovation * noise * ahead.length * seen.mean_days
     shift, scale = np.ascontiguousarray(seen.shift[:, at]), np.sqrt(total)
 
@@ -224,8 +225,9 @@ def _normalized(
     shift = np.ascontiguousarray(seen.shift[:, 0])
     weight, centre, scale = [], [], []
     for true, share in _groups(seen.weight):
-        noise = later.trace[:, true] / (n - k)
-        joint = weights_of(seen.like + later.level - 0.5 * (n - k) * np.log(later.trace[:, true]))
+        trace = later.trace(true)
+        noise = trace / (n - k)
+        joint = weights_of(seen.like + later.level - 0.5 * (n - k) * np.log(trace))
         sure = seen.innovation[true] * ratio
         low, _ = difference_range(
             joint, shift, np.sqrt(before2), seen.spare,
@@ -256,34 +258,37 @@ class _Later:
     """A like fit of bills to come, at every ρ, in units of the innovation variance.
 
     unit2 (27,) variance of the gradient's quantity; level (27,) the restricted likelihood
-    without its residuals; trace (27, 27) expected residual sum of squares at the first ρ when
-    the second is true: tr(M_ρ V_ρ*).
+    without its residuals; vx (27, n, k) V⁻¹X and m (27, k, k) (X'V⁻¹X)⁻¹.
     """
 
     unit2: NDArray[np.float64]
     level: NDArray[np.float64]
-    trace: NDArray[np.float64]
+    vx: NDArray[np.float64]
+    m: NDArray[np.float64]
 
     @classmethod
     def of(cls, jac: NDArray[np.float64], gradient: NDArray[np.float64]) -> _Later:
-        n, k = jac.shape
+        """Of bills one after another, alike in length: V of a first-order autoregression."""
         size = np.sqrt((jac * jac).sum(axis=0))
         x, g = jac / size, gradient[0] / size
-        inverse = np.zeros((RHO.shape[0], n, n))  # V⁻¹ of a first-order autoregression
-        at = np.arange(n)
-        inverse[:, at, at] = (1.0 + RHO * RHO)[:, None]
-        inverse[:, 0, 0] = inverse[:, -1, -1] = 1.0
-        inverse[:, at[1:], at[:-1]] = inverse[:, at[:-1], at[1:]] = -RHO[:, None]
-        vx = inverse @ x
+        rho = RHO[:, None, None]
+        vx = (1.0 + rho * rho) * x
+        vx[:, [0, -1]] = x[[0, -1]]
+        vx[:, 1:] -= rho * x[:-1]
+        vx[:, :-1] -= rho * x[1:]
         m = np.linalg.inv(x.T @ vx)
-        left = inverse - vx @ m @ np.swapaxes(vx, 1, 2)
-        steps = np.abs(np.subtract.outer(at, at))
-        v = RHO[:, None, None] ** steps / (1.0 - RHO * RHO)[:, None, None]
-        return cls(
-            unit2=np.einsum("i,rij,j->r", g, m, g),
-            level=0.5 * np.log(1.0 - RHO * RHO) + 0.5 * np.linalg.slogdet(m)[1],
-            trace=left.reshape(RHO.shape[0], -1) @ v.reshape(RHO.shape[0], -1).T,
-        )
+        level = 0.5 * np.log(1.0 - RHO * RHO) + 0.5 * np.linalg.slogdet(m)[1]
+        return cls(np.einsum("i,rij,j->r", g, m, g), level, vx, m)
+
+    def trace(self, true: int) -> NDArray[np.float64]:
+        """(27,) expected residual sum of squares at each ρ when RHO[true] holds: tr(M_ρ V*)."""
+        n = self.vx.shape[1]
+        star = float(RHO[true])
+        apart = np.abs(np.subtract.outer(np.arange(n), np.arange(n)))
+        v = star**apart / (1.0 - star * star)
+        whole = (2.0 + (n - 2) * (1.0 + RHO * RHO)) * v[0, 0] - 2.0 * (n - 1) * RHO * v[0, 1]
+        taken = np.einsum("rij,rji->r", self.m, np.swapaxes(self.vx, 1, 2) @ (v @ self.vx))
+        return np.asarray(whole - taken)
 
 
 def _lacks(baseline: Baseline, ahead: Ahead, n: int) -> str:
@@ -298,25 +303,20 @@ def _lacks(baseline: Baseline, ahead: Ahead, n: int) -> str:
     for tau, warm in ((fit.balance_heating_f, False), (fit.balance_cooling_f, True)):
         if tau is None:
             continue
-        beyond = ahead.temp_f > tau if warm else ahead.temp_f < tau
-        share = _by_bill(np.where(np.isnan(ahead.temp_f), np.nan, beyond), ahead.length)[:n]
-        if (share > 0.5).sum() < MIN_COLD_PERIODS or (share < 0.5).sum() < MIN_MILD_PERIODS:
-            return "these bills would not span enough cold and mild weather"
+        days = ahead.temp_f[:, : n * ahead.length]
+        beyond = days > tau if warm else days < tau
+        share = beyond.reshape(days.shape[0], n, ahead.length).mean(axis=2)  # (years, bills)
+        cold, mild = (share > 0.5).sum(axis=1), (share < 0.5).sum(axis=1)
+        spans = (cold >= MIN_COLD_PERIODS) & (mild >= MIN_MILD_PERIODS)
+        if spans.mean() < 0.5:
+            return "in most years these bills would not span enough cold and mild weather"
     return ""
-
-
-def _by_bill(daily: NDArray[np.float64], length: int) -> NDArray[np.float64]:
-    """(bills,) means over the years and over each bill's days of (years, days)."""
-    mean = np.nanmean(daily, axis=0)
-    n = mean.shape[0] // length
-    out: NDArray[np.float64] = mean[: n * length].reshape(n, length).mean(axis=1)
-    return out
 
 
 def _ahead(
     fit: Fit, ahead: Ahead, *, held: bool
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Expected use a day of every bill to come, and (bills, k) derivatives: means over the years."""
+    """Expected use a day of every bill to come and (bills, k) derivatives, means over the years."""
     parts = []
     for temp in ahead.temp_f:
         n = temp.shape[0] // ahead.length
