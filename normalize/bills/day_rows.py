@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, TypeVar, overload
 
 import numpy as np
 
+from normalize.bills import rules
 from normalize.bills.local_days import DaySums, spoken
 from normalize.bills.periods import BillRow, LedgerEntry
 
@@ -51,13 +52,17 @@ class _Made(Sequence[T]):
 
 
 class DayRows(_Made[BillRow]):
-    """One row for each local day of an interval file. file : its name.  sums : its days."""
+    """One row for each local day of an interval file.
 
-    __slots__ = ("file", "sums")
+    file : its name.  sums : its days.  step : seconds of a reading.
+    """
 
-    def __init__(self, file: str, sums: DaySums) -> None:
+    __slots__ = ("file", "step", "sums")
+
+    def __init__(self, file: str, sums: DaySums, step: int = 0) -> None:
         self.file = file
         self.sums = sums
+        self.step = step
 
     def __len__(self) -> int:
         return int(self.sums.day.size)
@@ -73,7 +78,8 @@ class DayRows(_Made[BillRow]):
         day, cost = int(s.day[k]), float(s.cost[k])
         return BillRow(
             self.file, int(s.line[k]), day, day + 1, float(s.use[k]),
-            None if np.isnan(cost) else cost, problem=problem_of(s, k), note="",
+            None if np.isnan(cost) else cost, problem=problem_of(s, k),
+            note=estimates_note(int(s.estimated[k]), int(s.count[k])),
         )  # fmt: skip
 
 
@@ -84,6 +90,17 @@ def problem_of(sums: DaySums, k: int) -> str:
     if sums.twice[k]:
         return f"readings of {spoken(int(sums.twice[k]))} are there twice on this day"
     return ""
+
+
+def estimates_note(estimated: int, count: int) -> str:
+    """A note on a day or period of which a large share was estimated, or "".
+
+    >>> estimates_note(30, 96), estimates_note(3, 96)
+    ('30 of 96 readings are estimates', '')
+    """
+    if estimated == 0 or estimated < rules.ESTIMATED_SHARE * count:
+        return ""
+    return f"{estimated:,} of {count:,} readings are estimates"
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -15,8 +15,10 @@ import numpy as np
 from normalize.bills import espi_codes as codes
 from normalize.bills.answers import Answers, Understood
 from normalize.bills.columns import answer
+from normalize.bills.day_rows import DayRows
 from normalize.bills.espi_links import Series, join, place_of, refusal
 from normalize.bills.espi_numbers import Numbers, added, cautions_of, merged
+from normalize.bills.espi_spans import billed_spans
 from normalize.bills.espi_xml import Entry, Reading, read_entries
 from normalize.bills.local_days import Clock, clock_of, espi_clock
 from normalize.bills.periods import BillRow
@@ -84,7 +86,7 @@ def understand_meter(opened: Opened, said: Answers) -> Understood:
     costs = {}
     if np.all(np.isnan(table.cost)):
         costs = _summary_costs(entries, clock, chosen[0].point)
-    if costs:
+    if costs and not isinstance(rows, DayRows):
         rows = tuple(replace(r, cost=costs.get((r.start or 0, r.end or 0))) for r in rows)
         more.append("cost from the usage summaries")
     number = chosen[0].code("currency")
@@ -96,6 +98,7 @@ def understand_meter(opened: Opened, said: Answers) -> Understood:
         ),
         cautions_of(table), sent=bool(exports) or table.net,
         currency=codes.CURRENCIES.get(number or 0),
+        spans=billed_spans(entries, clock, chosen[0].point),
     )  # fmt: skip
 
 

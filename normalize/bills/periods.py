@@ -86,6 +86,21 @@ class Periods:
 
 
 @dataclass(frozen=True, slots=True)
+class Spans:
+    """The periods of bills, to which days are to be summed.
+
+    start, end : (n,) int64 day numbers, half-open, in order, never overlapping.  use, cost : (n,)
+    as billed, NaN where not known; use in the unit of the days.  source : whose periods they are.
+    """
+
+    start: NDArray[np.int64]
+    end: NDArray[np.int64]
+    use: NDArray[np.float64]
+    cost: NDArray[np.float64]
+    source: str
+
+
+@dataclass(frozen=True, slots=True)
 class Flag:
     """Something odd about a period, left as it is. period : from 1.  what : a code's name.
 

@@ -21,10 +21,10 @@ from normalize.bills.espi_xml import looks_like_xml
 from normalize.bills.flag_words import flag_cautions, flags_of
 from normalize.bills.groups import cell
 from normalize.bills.headings import header_score, squeeze
-from normalize.bills.periods import Bills, Periods
+from normalize.bills.period_sums import month_spans, spans_of_bills, summed
+from normalize.bills.periods import Bills, Periods, Spans
 from normalize.bills.repair import reconcile, repair
 from normalize.bills.solar import solar_signature
-from normalize.bills.sum_rows import months_of
 from normalize.bills.table import (
     BillFile,
     Cell,
@@ -34,7 +34,7 @@ from normalize.bills.table import (
     open_file,
     read_table,
 )
-from normalize.errors import NoBills, NormalizeError, UnreadableBills
+from normalize.errors import AmbiguousBills, NoBills, NormalizeError
 
 if TYPE_CHECKING:
     from normalize.bills.interval_head import IntervalHead
@@ -69,6 +69,9 @@ def read_bills(
     read_day: int | str | None = None,
     time_zone: str | None = None,
     sum_to: str | None = None,
+    periods_from: str | os.PathLike[str] | None = None,
+    generation: str | os.PathLike[str] | None = None,
+    solar_since: int | str | None = None,
     interval_times: str | None = None,
     multiplier: float | None = None,
     tank_size: float | None = None,
@@ -84,8 +87,10 @@ def read_bills(
     file that holds several.  decimal : "point" or "comma".
     read_day : for bills that name only a month, the day of that month on which the meter is
     read, or "calendar"; also where months begin when intervals are summed.
-    time_zone : "America/New_York" or "-05:00", where readings carry none.  sum_to : "day" or
-    "month", for interval data.  interval_times : "start" or "end" of an interval.
+    time_zone : "America/New_York" or "-05:00", where readings carry none.  sum_to : "day",
+    "month" or "bill" (the file's own bills), for interval data; periods_from : another file
+    whose bills say the periods.  generation : a file of what solar panels made, to be added to
+    net use; solar_since : the panels' first day.  interval_times : "start" or "end" of an interval.
     multiplier : of a meter whose readings are given.  tank_size, tank_percent : the tank's
     content when full, and whether percentages are "before" or "after" the delivery.
     Raises MissingFile, UnreadableBills, AmbiguousBills (asks one question), UnknownUnit, NoBills.
@@ -173,25 +178,70 @@ def bills_of(
     currency: str,
 ) -> Bills:
     """Rows of one account, repaired and reconciled.  Raises NoBills."""
-    if answers.sum_to == "month":
-        found = _months(found, answers)
-    bills = _repaired(file, found, account, net_metered=net_metered, currency=currency)
+    spans = _spans(found, answers)
+    if spans is not None:
+        found = summed(found, spans)
+    solar = answers.generation is not None
+    bills = _repaired(file, found, account, net_metered=net_metered or solar, currency=currency)
     reconcile(bills)
-    return bills
+    return _with_generation(bills, found, answers) if solar else bills
 
 
-def _months(found: Understood, answers: Answers) -> Understood:
-    """Days summed to months, where that was asked for."""
-    lengths = [r.end - r.start for r in found.rows if r.start is not None and r.end is not None]
-    if not lengths or sorted(lengths)[len(lengths) // 2] != 1:
-        raise UnreadableBills("sum_to was given, but the file holds no days to add up",
-                              next_step="Leave out sum_to.")  # fmt: skip
-    day = answers.read_day or 1
-    return replace(
-        found,
-        rows=months_of(found.rows, day),
-        reading=(*found.reading, f"days summed to months that begin on day {day}"),
-    )
+def _spans(found: Understood, answers: Answers) -> Spans | None:
+    """The periods to which days are to be summed; None to leave them days."""
+    if answers.periods_from is not None:
+        return _spans_of_file(answers.periods_from, found, answers)
+    if answers.sum_to == "month":
+        return month_spans(found.rows, answers.read_day or 1)
+    if answers.sum_to != "bill":
+        return None
+    if found.spans is None:
+        raise AmbiguousBills(
+            'sum_to is "bill", but the file itself tells of no bills',
+            where=found.rows[0].file if found.rows else "",
+            next_step='Name the file that does: periods_from = "bills.csv" under [[account]] in '
+            "site.toml, or --periods-from.",
+        )
+    return found.spans
+
+
+def _spans_of_file(path: str, found: Understood, answers: Answers) -> Spans:
+    """The periods of the bills in another file, read with the same answers about dates."""
+    file = open_file(path)
+    said = Answers(
+        fuel=found.fuel, dates=answers.dates, end_dates=answers.end_dates,
+        read_day=answers.read_day, decimal=answers.decimal, time_zone=answers.time_zone,
+        named=_named(file, path, answers),
+    )  # fmt: skip
+    other = understand_file(file, said, None)
+    # An estimated reading is none of the days' business: its date is a date like any other.
+    rows = [replace(row, estimated=False) for row in other.rows]
+    periods, _ = repair(rows, kind=other.kind, net_metered=True)
+    if periods.n == 0:
+        raise NoBills("it holds no bill whose dates can be used", where=file.name)
+    return spans_of_bills(periods, f"the bills of {file.name}", known=other.unit == found.unit)
+
+
+def _named(file: BillFile, path: str, answers: Answers) -> dict[str, str]:
+    """The column of use of a file of periods, where it is the one of generation."""
+    if path != answers.generation:
+        return {}
+    from normalize.bills.generation import heading_of_generation
+
+    name = answers.made_column or heading_of_generation(file)
+    return {"usage": name} if name else {}
+
+
+def _with_generation(bills: Bills, found: Understood, answers: Answers) -> Bills:
+    """Net use made gross by a file of what solar panels made."""
+    from normalize.bills.generation import generation_of, made_gross
+
+    def understand(file: BillFile, said: Answers) -> Understood:
+        return understand_file(file, said, None)
+
+    file = open_file(answers.generation or "")
+    made = generation_of(file, answers, bills.unit, understand)
+    return made_gross(bills, made, file, answers.solar_since, others=found.cautions)
 
 
 def _repaired(
