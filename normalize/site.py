@@ -34,6 +34,7 @@ if TYPE_CHECKING:
     from normalize.savings.placebo import Placebo
     from normalize.savings.results import Check, Price, Savings, Total
     from normalize.savings.taken_apart import Parts
+    from normalize.savings.with_and_without import DriverReport
     from normalize.sensitivity import Moved
     from normalize.units import Factor
     from normalize.weather.temperature import DailyTemperature
@@ -138,6 +139,7 @@ class AccountResult:
     evidence: tuple[SideEvidence, ...] = ()  # of the sides that have a fit
     without: tuple[Without, ...] = ()  # the answer without each bill in use
     placebo: Placebo | None = None  # invented work dates before the work, or why there are none
+    drivers: DriverReport | None = None  # None where site.toml names no driver for the account
 
     @property
     def has_answer(self) -> bool:

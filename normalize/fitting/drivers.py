@@ -15,12 +15,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Final
+from typing import TYPE_CHECKING, Final
 
 import numpy as np
 from numpy.typing import NDArray
 
-from normalize.bills.driver_rows import DriverRows
+if TYPE_CHECKING:
+    from normalize.bills.driver_rows import DriverRows
 
 YEAR: Final = 365  # days of a long-term year
 NEARLY_A_YEAR: Final = 360  # days of a side that stand for one
@@ -59,6 +60,7 @@ def by_day(
 ) -> DailyAmounts:
     """Rows laid out over their days: a total evenly over them, a level on each.
 
+    >>> from normalize.bills.driver_rows import DriverRows
     >>> rows = DriverRows((0, 2), (2, 3), (10.0, 4.0), "total", ("x.csv", ""))
     >>> by_day("tonnes", rows).amount.tolist()
     [5.0, 5.0, 4.0]

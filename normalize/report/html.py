@@ -10,7 +10,17 @@ from typing import TYPE_CHECKING, Any, Final, NamedTuple
 
 from normalize.errors import UnwritableReport
 from normalize.fitting.forms import FORMS
-from normalize.report import look, parts, placebo_words, site_words, spread, svg, tables, words
+from normalize.report import (
+    drivers,
+    look,
+    parts,
+    placebo_words,
+    site_words,
+    spread,
+    svg,
+    tables,
+    words,
+)
 from normalize.report import numbers as n
 from normalize.report.figure_placebo import placebo_figure
 from normalize.report.figure_spread import spread_figure
@@ -144,6 +154,7 @@ def _account(
         else [],
         **_firm(account, result, number, say, classes),
         **_placebo(account, number, say, classes),
+        **_drivers(account, say),
         **_close(account, say),
         **_behind(account, result, say),
     }
@@ -176,6 +187,16 @@ def _placebo(
         "placebo": [say(s) for s in placebo_words.sentences(account)],
         "placebo_figure": _shown(placebo_figure(account, f"a{number}-placebo"), classes),
         "placebo_table": _hidden(table, say) if table is not None else None,
+    }
+
+
+def _drivers(account: AccountResult, say: Callable[[str], str]) -> dict[str, Any]:
+    """What drives use beside the weather: sentences and tables."""
+    told = drivers.reading_of(account)
+    return {
+        "drivers": [say(s) for s in told.sentences] if told else [],
+        "drivers_answers": _hidden(told.answers, say) if told else None,
+        "drivers_tried": _hidden(told.tried, say) if told else None,
     }
 
 

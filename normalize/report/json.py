@@ -11,6 +11,7 @@ import math
 from typing import TYPE_CHECKING, Any, Final
 
 from normalize.days import iso
+from normalize.report.drivers import drivers_json
 from normalize.report.parts_json import close_reading
 
 if TYPE_CHECKING:
@@ -170,6 +171,7 @@ def _account(account: AccountResult) -> Json:
             for f in (account.bills.flags if account.bills else ())
         ],
         **close_reading(account, _estimate),
+        "drivers": drivers_json(account, _estimate),
         "cautions": list(account.cautions),
     }
 

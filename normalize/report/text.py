@@ -7,7 +7,16 @@ import unicodedata
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
-from normalize.report import checks_words, parts, placebo_words, site_words, spread, tables, words
+from normalize.report import (
+    checks_words,
+    drivers,
+    parts,
+    placebo_words,
+    site_words,
+    spread,
+    tables,
+    words,
+)
 from normalize.report import numbers as n
 
 if TYPE_CHECKING:
@@ -211,9 +220,21 @@ def _close(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
             yield from sheet.item(caution)
 
 
+def _drivers(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
+    """What drives use beside the weather, and the answer with and without."""
+    told = drivers.reading_of(account)
+    if told is None:
+        return
+    yield from ["", "What drives use beside the weather"]
+    for sentence in told.sentences:
+        yield from sheet.wrap(sentence)
+    yield from ["", *sheet.table(told.answers, keep=range(4))]
+
+
 def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterator[str]:
     """Statistics, checks, factors and the ledger of one account."""
     save = account.savings
+    yield from _drivers(account, sheet)
     yield from _close(account, sheet)
     if save.before is not None or save.after is not None:
         yield from ["", *sheet.table(tables.statistics_table(account))]

@@ -65,13 +65,14 @@ def with_and_without(
         if trial.kept:
             sets.append(tuple(name for name in kept if name != trial.name))
         elif trial.before is not None or trial.after is not None:
-            names = {*kept, trial.name}
-            sets.append(tuple(t.name for t in chosen.trials if t.name in names))
-    answers = [_answer(kept, True, found)]
-    for names in dict.fromkeys(sets):
-        if names != kept:
-            answers.append(_answer(names, False, compare(chosen.with_only(names))))
-    return DriverReport(chosen.trials, tuple(answers))
+            more = {*kept, trial.name}
+            sets.append(tuple(t.name for t in chosen.trials if t.name in more))
+    others = [
+        _answer(names, False, compare(chosen.with_only(names)))
+        for names in dict.fromkeys(sets)
+        if names != kept
+    ]
+    return DriverReport(chosen.trials, (_answer(kept, True, found), *others))
 
 
 def _answer(names: tuple[str, ...], reported: bool, found: Comparison) -> DriverAnswer:
