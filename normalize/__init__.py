@@ -13,6 +13,7 @@ import importlib
 from typing import TYPE_CHECKING, Final
 
 if TYPE_CHECKING:
+    from normalize.bills.accounts import FileAccounts, read_accounts
     from normalize.bills.periods import Bills
     from normalize.bills.read import read_bills
     from normalize.errors import NormalizeError
@@ -31,6 +32,7 @@ __all__ = [
     "Bills",
     "DailyTemperature",
     "Estimate",
+    "FileAccounts",
     "Fit",
     "LongTermYear",
     "NormalizeError",
@@ -42,6 +44,7 @@ __all__ = [
     "fit",
     "long_term_year",
     "measure_savings",
+    "read_accounts",
     "read_bills",
     "read_long_term_year",
     "read_site",
@@ -52,6 +55,7 @@ _HOME: Final = {
     "Bills": "normalize.bills.periods",
     "DailyTemperature": "normalize.weather.temperature",
     "Estimate": "normalize.savings.results",
+    "FileAccounts": "normalize.bills.accounts",
     "Fit": "normalize.fitting.results",
     "LongTermYear": "normalize.weather.year",
     "NormalizeError": "normalize.errors",
@@ -62,6 +66,7 @@ _HOME: Final = {
     "fit": "normalize.fitting.fit",
     "long_term_year": "normalize.weather.year",
     "measure_savings": "normalize.savings.compare",
+    "read_accounts": "normalize.bills.accounts",
     "read_bills": "normalize.bills.read",
     "read_long_term_year": "normalize.weather.year",
     "read_site": "normalize.site",

@@ -2,23 +2,31 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from normalize.bills.deliveries import k_factor
 from normalize.errors import NormalizeError
 from normalize.fitting.align import Aligned, align
+from normalize.savings.again import Asked
 from normalize.savings.cautions import Circumstances, cautions_of
-from normalize.savings.checks import checks_of, share_outside
+from normalize.savings.checks import checks_of
 from normalize.savings.compare import Comparison, compare
+from normalize.savings.components import Equipment
+from normalize.savings.expectation import House, expectation_of
+from normalize.savings.guesses import SideOfWork, guess_caution, sway_of
+from normalize.savings.heat_loss import heat_loss_of
 from normalize.savings.offer import forms_offered
+from normalize.savings.parts import parts_of
 from normalize.savings.results import Estimate, Price, Savings
+from normalize.savings.scrutiny import Scrutiny, scrutinise
 from normalize.savings.sides import REASONS, Work
+from normalize.savings.taken_apart import Parts
 from normalize.savings.worth import price_of
 from normalize.site import AccountResult, Curve, KFactorRow, PeriodRow, Site
 from normalize.sitefile import AccountPlan
-from normalize.units import Factor, co2_kg_per_unit, mmbtu_per_unit
+from normalize.units import FUELS, Factor, co2_kg_per_unit, mmbtu_per_unit
 
 if TYPE_CHECKING:
     from normalize.bills.periods import Bills
@@ -53,23 +61,36 @@ def unread_account(plan: AccountPlan, problem: str, confidence: float) -> Accoun
     )
 
 
-def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: float) -> AccountResult:
-    """One account before and after the upgrades that touch it."""
+def assess_account(
+    site: Site, plan: AccountPlan, bills: Bills, confidence: float, *, closely: bool = True
+) -> AccountResult:
+    """One account before and after the upgrades that touch it.
+
+    closely : with the evidence behind its checks, the parts and the expectation; without, only
+    the answer is of use.
+    """
     aligned = align(bills.periods, site.weather)
     work = work_on(site, plan.name)
+    forms = forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms)
+    net = plan.net_metered and not bills.gross
     found = compare(
         aligned,
         work,
         site.year,
         confidence=confidence,
-        forms=forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms),
+        forms=forms,
         occupied_since=plan.occupied_since,
-        net_metered=plan.net_metered and not bills.gross,
+        net_metered=net,
         year_unavailable=site.year_unavailable,
         delivered=bills.kind == "delivery",
     )
     savings = _unfit(found.savings, bills.unfit, confidence) if bills.unfit else found.savings
+    close = Scrutiny()
+    if closely and not bills.unfit:
+        asked = Asked(aligned, site.year, forms, confidence, net, found.stated_f is not None)
+        close = scrutinise(asked, found, work_start=work.start, delivered=bills.kind == "delivery")
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
+    rows = period_rows(bills, aligned, found)
     unavailable = ""
     if not savings.normalized.available and not savings.avoided.available:
         unavailable = savings.normalized.unavailable or ""
@@ -79,7 +100,7 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
         unit=bills.unit,
         bills=bills,
         unavailable=unavailable,
-        periods=period_rows(bills, aligned, found),
+        periods=rows,
         tried_before=found.tried_before,
         tried_after=found.tried_after,
         savings=savings,
@@ -90,13 +111,84 @@ def assess_account(site: Site, plan: AccountPlan, bills: Bills, confidence: floa
         mmbtu_per_unit=_mmbtu(bills),
         checks=checks_of(
             savings,
-            outside_share=_outside(site, aligned, found),
+            close.evidence,
             n_after=sum(1 for label in found.labels if label == "after"),
+            without=close.without,
+            placebo=close.placebo,
         ),
-        cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work)),
+        cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work, rows)),
         k_factors=_k_factors(bills, aligned, found),
         work_start=work.start,
         work_end=work.end,
+        evidence=close.evidence,
+        without=close.without,
+        placebo=close.placebo,
+        **(
+            _read_closely(site, plan, bills, aligned, found, savings, confidence) if closely else {}
+        ),
+    )
+
+
+def _read_closely(
+    site: Site,
+    plan: AccountPlan,
+    bills: Bills,
+    aligned: Aligned,
+    found: Comparison,
+    savings: Savings,
+    confidence: float,
+) -> dict[str, Any]:
+    """Parts of the savings, the heat loss behind the slope, and what the work should have saved."""
+    heat = _mmbtu(bills)
+    btu = None if heat is None else heat.value * 1e6
+    mine = sorted(
+        (u for u in site.upgrades if not u.accounts or plan.name in u.accounts),
+        key=lambda u: u.start,
+    )
+    components = [c for u in mine for c in u.components]
+    new = [c.efficiency_after for c in components if isinstance(c, Equipment) and c.share == 1.0]
+    if bills.unfit:
+        parts = Parts(unavailable=bills.unfit)
+    else:
+        parts = parts_of(aligned, found, site.year, confidence=confidence)
+    house = House(
+        fuel=bills.fuel,
+        btu_per_unit=btu,
+        setpoint_f=site.heating_setpoint_f,
+        efficiency=plan.efficiency,
+        heating_share=plan.heating_share,
+        other_heaters=_other_heaters(site, plan),
+    )
+    return {
+        "parts": parts,
+        "heat_loss": heat_loss_of(
+            parts,
+            btu_per_unit=btu,
+            efficiency=plan.efficiency,
+            efficiency_after=new[-1] if new else None,
+            floor_area_ft2=site.floor_area_ft2,
+        ),
+        "expectation": expectation_of(
+            savings.before,
+            site.year,
+            components,
+            house,
+            savings.normalized,
+            nac_before=savings.nac_before.value,
+            undescribed=[u.name for u in mine if not u.components],
+        ),
+    }
+
+
+def _other_heaters(site: Site, plan: AccountPlan) -> tuple[str, ...]:
+    """Other accounts whose fuel is burned for heat: they share the house's heat loss."""
+    return tuple(
+        a.name
+        for a in site.accounts
+        if a.name != plan.name
+        and a.space_heating
+        and a.fuel in FUELS
+        and FUELS[a.fuel].heating_only
     )
 
 
@@ -161,14 +253,6 @@ def _curve(fit: Fit | None, aligned: Aligned) -> Curve | None:
     return Curve(grid, fit.predict(grid))
 
 
-def _outside(site: Site, aligned: Aligned, found: Comparison) -> float | None:
-    if site.year is None:
-        return None
-    seen = [_days_of(aligned, i) for i, label in enumerate(found.labels) if label == "before"]
-    together = np.concatenate(seen) if seen else np.empty(0)
-    return share_outside(site.year.temp_f, site.year.weight, together)
-
-
 def _used_nothing(bills: Bills, found: Comparison) -> bool:
     after = [
         float(bills.periods.use[i]) for i, label in enumerate(found.labels) if label == "after"
@@ -177,7 +261,12 @@ def _used_nothing(bills: Bills, found: Comparison) -> bool:
 
 
 def _circumstances(
-    site: Site, plan: AccountPlan, bills: Bills, found: Comparison, work: Work
+    site: Site,
+    plan: AccountPlan,
+    bills: Bills,
+    found: Comparison,
+    work: Work,
+    rows: tuple[PeriodRow, ...],
 ) -> Circumstances:
     near = any(
         row.estimated and row.end is not None and abs(row.end - work.start) <= NEAR_WORK_DAYS
@@ -196,8 +285,26 @@ def _circumstances(
         water_only=not plan.space_heating,
         tried_before=found.tried_before,
         used_nothing=_used_nothing(bills, found),
-        bill_cautions=bills.cautions,
+        bill_cautions=(*_guesses(bills, found, rows), *bills.cautions),
     )
+
+
+def _guesses(bills: Bills, found: Comparison, rows: tuple[PeriodRow, ...]) -> tuple[str, ...]:
+    """A caution where metered bills sway about their fits as guessed readings do."""
+    if bills.kind == "delivery":
+        return ()  # fills that are not quite full sway alike, and are told of elsewhere
+    sides = []
+    for label, fit in (("before", found.savings.before), ("after", found.savings.after)):
+        mine = [r for r in rows if r.side == label and not np.isnan(r.fitted_per_day)]
+        if fit is None or not mine:
+            continue
+        start, end = (np.array([getattr(r, name) for r in mine]) for name in ("start", "end"))
+        use, fitted = (np.array([getattr(r, name) for r in mine])
+                       for name in ("use_per_day", "fitted_per_day"))  # fmt: skip
+        taus = (fit.balance_heating_f, fit.balance_cooling_f)
+        k = len(fit.terms) + sum(1 for tau in taus if tau is not None)
+        sides.append(SideOfWork(start, end, use, fitted, k))
+    return guess_caution(sway_of(sides))
 
 
 def _unfit(savings: Savings, reason: str, confidence: float) -> Savings:

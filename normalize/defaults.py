@@ -24,6 +24,14 @@ SHORT_YEAR_DAYS: Final = 360  # fewer reporting days than this: avoided use "so 
 HEATING_RANGE_F: Final = (40.0, 80.0)
 COOLING_RANGE_F: Final = (50.0, 85.0)
 
+# What an engineering expectation takes where the site file does not say.
+HEATING_SETPOINT_F: Final = 68.0  # °F indoors in the heating season (common practice)
+
 # When a form is set aside.
 MIN_ABS_T: Final = 2.0  # IPMVP asks |t| > 2 (memory)
 BASE_LOAD_T: Final = -2.0  # a base load is called negative only when two standard errors below 0
+
+# When a driver of use beside the weather is refused (method §3.1).
+MAX_SHARED_VARIATION: Final = 0.90  # of its variation with weather and other drivers: a variance
+#                        inflation of 10 (Marquardt 1970, Technometrics 12:591-612, memory)
+MIN_DAY_TYPE_SPREAD: Final = 0.05  # of a bill's days: months all have nearly the same weekends

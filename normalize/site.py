@@ -25,8 +25,16 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from normalize.bills.periods import Bills
+    from normalize.fitting.drivers import DailyAmounts
     from normalize.fitting.results import FormTried
+    from normalize.savings.evidence import SideEvidence
+    from normalize.savings.expectation import Expectation
+    from normalize.savings.heat_loss import HeatLoss
+    from normalize.savings.influence import Without
+    from normalize.savings.placebo import Placebo
     from normalize.savings.results import Check, Price, Savings, Total
+    from normalize.savings.taken_apart import Parts
+    from normalize.savings.with_and_without import DriverReport
     from normalize.sensitivity import Moved
     from normalize.units import Factor
     from normalize.weather.temperature import DailyTemperature
@@ -53,7 +61,9 @@ class Site:
     floor_area_ft2: float | None = None
     currency: str = "USD"
     inputs: tuple[tuple[str, str], ...] = ()  # (file, SHA-256) of every input
+    heating_setpoint_f: float | None = None  # mean indoor temperature, where site.toml says it
     weather_plan: WeatherPlan | None = None  # other stations and years that site.toml offers
+    drivers: tuple[tuple[DailyAmounts, ...], ...] = ()  # of each account, in their order
 
 
 @dataclass(frozen=True, slots=True)
@@ -123,6 +133,13 @@ class AccountResult:
     k_factors: tuple[KFactorRow, ...] = ()  # delivered fuel only
     work_start: int | None = None
     work_end: int | None = None
+    parts: Parts | None = None  # of the normalized savings; None when bills could not be read
+    heat_loss: HeatLoss | None = None  # None where the account shows no heating slope
+    expectation: Expectation | None = None  # None where no components are described
+    evidence: tuple[SideEvidence, ...] = ()  # of the sides that have a fit
+    without: tuple[Without, ...] = ()  # the answer without each bill in use
+    placebo: Placebo | None = None  # invented work dates before the work, or why there are none
+    drivers: DriverReport | None = None  # None where site.toml names no driver for the account
 
     @property
     def has_answer(self) -> bool:
@@ -142,7 +159,7 @@ class SiteResult:
     cautions: tuple[str, ...]
     settings: tuple[tuple[str, str], ...]  # the defaults that mattered, name and value
     versions: tuple[tuple[str, str], ...]  # normalize, python, numpy, numba
-    moved: tuple[Moved, ...] = ()  # the answer with other stations and years, where asked for
+    moved: tuple[Moved, ...] = ()  # the answer with one choice changed at a time
 
 
 def read_site(folder: str | os.PathLike[str]) -> Site:
@@ -152,13 +169,17 @@ def read_site(folder: str | os.PathLike[str]) -> Site:
     nothing; site.toml and the weather must be readable.
     Errors: SiteError, WeatherError and their kinds.
     """
+    from normalize.site_drivers import read_site_drivers
+
     plan = read_site_file(folder)
     bills, problems = _read_bills(plan)
+    drivers, driver_files = read_site_drivers(plan, bills)
     weather = _weather(plan, bills)
     year, why_not = _year(plan, weather)
     inputs = [("site.toml", plan.sha256), *weather.source]
     inputs += year.source if year is not None else ()
     inputs += [pair for b in bills if b is not None for pair in b.source]
+    inputs += driver_files
     return Site(
         name=plan.name,
         folder=plan.folder,
@@ -174,6 +195,8 @@ def read_site(folder: str | os.PathLike[str]) -> Site:
         currency=plan.currency,
         inputs=tuple(dict.fromkeys(inputs)),
         weather_plan=plan.weather,
+        heating_setpoint_f=plan.heating_setpoint_f,
+        drivers=drivers,
     )
 
 
@@ -238,6 +261,8 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
     confidence : two-sided, 0.5 to 0.999.  Errors: NoUpgrade when site.toml names no work.
     An account without an answer carries its reason and ends nothing.
     """
+    from normalize.sensitivity import how_firm
+
     if not site.upgrades:
         raise NoUpgrade(
             "names no upgrade",
@@ -259,6 +284,7 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
         cautions=_site_cautions(site, accounts),
         settings=_settings(site, confidence),
         versions=_versions(),
+        moved=how_firm(site, accounts, confidence),
     )
 
 

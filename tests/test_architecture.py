@@ -28,6 +28,8 @@ FLOOR = {room: number for number, rooms in enumerate(FLOORS) for room in rooms}
 SAME_ROOM = {
     "account": "site",
     "sensitivity": "site",
+    "plan": "site",
+    "site_drivers": "site",
 }  # parts of a site's job, in files of their own
 ENTRANCES = {"__init__", "__main__"}  # of the package itself: doors to everything, lazily
 

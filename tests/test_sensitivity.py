@@ -1,13 +1,14 @@
-"""How far the answer moves with other stations and normal years, on the sample house."""
+"""How far the answer moves with other choices, stations and normal years: the sample house."""
 
 from __future__ import annotations
 
 import shutil
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
-from normalize.sensitivity import how_far
+from normalize.sensitivity import how_far, how_firm
 from normalize.site import assess, read_site
 
 pytestmark = pytest.mark.kernel
@@ -36,7 +37,11 @@ def test_every_alternative_is_a_row_and_the_first_is_the_answer(folder: Path) ->
     gas = [m for m in moved if m.account == "gas"]
     assert gas[0].changes == "as chosen"
     assert gas[0].normalized == result.accounts[0].savings.normalized
-    assert {m.changes for m in gas} == {"as chosen", "station", "long-term year"}
+    assert {m.changes for m in gas} == {
+        "as chosen", "same form", "weights", "criterion", "one bill left out", "window",
+        "station", "long-term year",
+    }  # fmt: skip
+    assert {m.account for m in moved} == {"gas", "electricity"}
     coast = next(m for m in gas if m.changes == "station")
     assert coast.normalized is not None
     assert coast.normalized.value is not None
@@ -54,3 +59,20 @@ def test_another_normal_year_leaves_avoided_use_alone(folder: Path) -> None:
         if m.changes == "long-term year" and m.avoided is not None:
             same = next(a for a in result.accounts if a.account == m.account)
             assert m.avoided == same.savings.avoided
+
+
+def test_quick_rows_come_with_every_result_and_change_nothing_in_it(folder: Path) -> None:
+    site = read_site(folder)
+    result = assess(site)
+    quick = how_firm(site, result.accounts, result.confidence)
+    assert result.moved == quick
+    assert how_far(site, result)[: len([m for m in quick if m.account == "gas"])] == tuple(
+        m for m in quick if m.account == "gas"
+    )
+
+
+def test_an_account_without_an_answer_has_no_rows(folder: Path) -> None:
+    site = read_site(folder)
+    nothing = replace(site, bills=(None, site.bills[1]), read_errors=(("gas", "unreadable"),))
+    result = assess(nothing)
+    assert {m.account for m in result.moved} == {"electricity"}

@@ -9,6 +9,7 @@ import re
 import unicodedata
 from collections.abc import Iterable
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Literal
 
 from normalize.errors import AmbiguousBills
@@ -43,9 +44,11 @@ def as_text(cell: object) -> str:
     >>> as_text("\\u00a0\\u22125 ")
     '-5'
     """
-    if cell is None:
-        return ""
-    text = str(cell)
+    return "" if cell is None else _plain(str(cell))
+
+
+@lru_cache(maxsize=50_000)  # a file of many accounts says the same words over and over
+def _plain(text: str) -> str:
     if not text.isascii():
         text = unicodedata.normalize("NFKC", text)
         text = re.sub(r"[\u2010-\u2015\u2212]", "-", text).replace("\u2019", "'")
@@ -65,7 +68,12 @@ def split_amount(cell: object) -> Amount | None:
     >>> split_amount("512 E").suffix
     'e'
     """
-    text = _MONEY.sub("", as_text(cell)).replace("- ", "-").strip()
+    return _amount(as_text(cell))
+
+
+@lru_cache(maxsize=50_000)
+def _amount(cell: str) -> Amount | None:
+    text = _MONEY.sub("", cell).replace("- ", "-").strip()
     found = _SHAPE.match(text)
     if found is None or bool(found["open"]) != bool(found["close"]):
         return None

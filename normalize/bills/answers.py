@@ -6,14 +6,17 @@ shape of what tables, interval files and ESPI XML come to before repair.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Literal, cast
 
 from normalize.bills.amounts import Decimal
 from normalize.bills.dates import ORDERS, Order
-from normalize.bills.periods import BillRow
+from normalize.bills.periods import BillRow, Spans
 from normalize.bills.repair import Kind
 from normalize.bills.sum_rows import SumTo
+from normalize.days import day_of_iso
+from normalize.defaults import MIN_DAYS_A_SIDE
 from normalize.errors import BillError
 from normalize.units import canonical_fuel, canonical_unit
 
@@ -22,12 +25,18 @@ NO_COLUMN = "none"  # generation_column of a file whose usage is gross already
 CALENDAR = "calendar"  # read_day for bills of whole calendar months
 TankPercent = Literal["before", "after"]
 
+ONE_BILL = "one bill alone cannot show how use answers to the weather"
+ENOUGH_BILLS = (
+    f"At least {MIN_DAYS_A_SIDE} days of bills on each side of the work are needed, with a winter "
+    "and a summer among them, better a whole year: ask the supplier for the account's history."
+)
+
 CHOICES: dict[str, tuple[str, ...]] = {
     "dates": ORDERS,
     "end_dates": ("exclusive", "inclusive"),
     "kind": ("meter", "delivery"),
     "decimal": ("point", "comma"),
-    "sum_to": ("day", "month"),
+    "sum_to": ("day", "month", "bill"),
     "tank_percent": ("before", "after"),
     "interval_times": ("start", "end"),
 }
@@ -41,6 +50,7 @@ COLUMN_ROLES = (
 class Answers:
     """What the user said; each is None where nothing was said.  As read_bills documents them.
 
+    made_column : of the file of generation.
     read_day : 1 to 31, or 0 for calendar months.  gross : usage is what the house used, solar
     panels or not.  named : role → heading.
     """
@@ -56,6 +66,10 @@ class Answers:
     read_day: int | None = None
     time_zone: str | None = None
     sum_to: SumTo | None = None
+    periods_from: str | None = None
+    generation: str | None = None
+    made_column: str | None = None
+    solar_since: int | None = None
     interval_times: str | None = None
     multiplier: float | None = None
     tank_size: float | None = None
@@ -69,18 +83,21 @@ class Understood:
     """A file, read: one account's rows before repair, and how they were understood.
 
     sent : energy sent to the grid was found.  generation : it was added back, so that use is
-    gross.  currency : where the file says it.
+    gross.  currency : where the file says it.  settled : what its lines proved, as answers.
+    spans : the bills that the file itself tells of, for days to be summed to.
     """
 
     fuel: str
     unit: str
     kind: Kind
-    rows: tuple[BillRow, ...]
+    rows: Sequence[BillRow]
     reading: tuple[str, ...]
     cautions: tuple[str, ...] = ()
     sent: bool = False
     generation: bool = False
     currency: str | None = None
+    settled: dict[str, str] = field(default_factory=dict)
+    spans: Spans | None = None
 
 
 def answers_of(name: str, given: dict[str, object]) -> Answers:
@@ -107,6 +124,10 @@ def answers_of(name: str, given: dict[str, object]) -> Answers:
         read_day=_read_day(given.get("read_day")),
         time_zone=_text(given, "time_zone"),
         sum_to=cast("SumTo | None", given.get("sum_to")),
+        periods_from=_text(given, "periods_from"),
+        generation=_text(given, "generation"),
+        made_column=_text(given, "generation_column") if given.get("generation") else None,
+        solar_since=_day(given, "solar_since"),
         interval_times=_text(given, "interval_times"),
         multiplier=_positive(given, "multiplier"),
         tank_size=_positive(given, "tank_size"),
@@ -115,7 +136,9 @@ def answers_of(name: str, given: dict[str, object]) -> Answers:
         named={
             r: str(given[f"{r}_column"])
             for r in COLUMN_ROLES
-            if given.get(f"{r}_column") and given[f"{r}_column"] != NO_COLUMN
+            if given.get(f"{r}_column")
+            and given[f"{r}_column"] != NO_COLUMN
+            and not (r == "generation" and given.get("generation"))
         },
     )
 
@@ -123,6 +146,19 @@ def answers_of(name: str, given: dict[str, object]) -> Answers:
 def _text(given: dict[str, object], key: str) -> str | None:
     value = given.get(key)
     return None if value is None else str(value)
+
+
+def _day(given: dict[str, object], key: str) -> int | None:
+    """A day number, or a date such as 2021-05-01."""
+    value = given.get(key)
+    if value is None or isinstance(value, int):
+        return value
+    try:
+        return day_of_iso(str(value))
+    except ValueError:
+        raise BillError(
+            f"{key} is {str(value)[:40]!r}", wanted="a date such as 2021-05-01"
+        ) from None
 
 
 def _positive(given: dict[str, object], key: str) -> float | None:

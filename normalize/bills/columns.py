@@ -259,6 +259,28 @@ def _of_fuel(columns: Columns, left: list[int], fuel: str | None, where: str) ->
     return [k for k in named if k in fits] or likely or fits
 
 
+_BESIDE_POWER = {"therm", "Dth", "cf", "ccf", "Mcf", "MMcf"}  # not m3: gas billed in kWh has it
+
+
+def fuels_of_columns(columns: Columns) -> tuple[str, ...]:
+    """The fuels that have usage columns of their own, where it is plain that they are several.
+
+    Headings name them ("Gas", "Electric"), or one is in kWh and one in therms or cubic feet.  A
+    column of m³ beside one of kWh can be the same gas twice.
+    """
+    if "usage" in columns.by_role:
+        return ()
+    found: dict[str, set[str]] = {}
+    for k in columns.usage:
+        heading = columns.headings[k]
+        fuel = fuel_suggested(heading)
+        if fuel:
+            found.setdefault(fuel, set()).add("" if heading.fuel else _unit_of(heading, None))
+    sure = all("" in how or how & _BESIDE_POWER or fuel == "electricity"
+               for fuel, how in found.items())  # fmt: skip
+    return tuple(found) if len(found) > 1 and sure else ()
+
+
 def _unit_of(heading: Heading, fuel: str | None) -> str:
     """Canonical unit of a heading; "" if it has none or it does not fit the fuel."""
     if not heading.unit:

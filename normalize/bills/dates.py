@@ -10,6 +10,7 @@ import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import date, datetime, timedelta
+from functools import lru_cache
 from itertools import pairwise
 from typing import Literal
 
@@ -114,6 +115,11 @@ def read_written(cell: object, *, epoch_1904: bool = False) -> Written:
         return Written(day=day_of(cell))
     if isinstance(cell, (int, float)) and not isinstance(cell, bool):
         return _of_number(float(cell), epoch_1904)
+    return _of_text(str(cell), epoch_1904)
+
+
+@lru_cache(maxsize=50_000)  # the same few thousand days stand in a file of many accounts
+def _of_text(cell: str, epoch_1904: bool) -> Written:
     shown = as_text(cell)
     text = _TIME.sub("", _WEEKDAY.sub("", shown.lower())).strip().removesuffix("z")
     if found := _YEAR_FIRST.match(text):

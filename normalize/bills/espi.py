@@ -8,15 +8,17 @@ clocks in local_days.py.  In the ledger a "line" is the number of the reading in
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from normalize.bills import espi_codes as codes
 from normalize.bills.answers import Answers, Understood
 from normalize.bills.columns import answer
-from normalize.bills.espi_links import Series, join, refusal
+from normalize.bills.day_rows import DayRows
+from normalize.bills.espi_links import Series, join, place_of, refusal
 from normalize.bills.espi_numbers import Numbers, added, cautions_of, merged
+from normalize.bills.espi_spans import billed_spans
 from normalize.bills.espi_xml import Entry, Reading, read_entries
 from normalize.bills.local_days import Clock, clock_of, espi_clock
 from normalize.bills.periods import BillRow
@@ -24,29 +26,67 @@ from normalize.bills.sum_rows import SHORT_READING, day_rows
 from normalize.errors import AmbiguousBills, UnknownUnit, UnreadableBills
 from normalize.units import canonical_unit
 
+MOST_CHOICES = 12  # shown in a question
 _COMPLETE_PARTS = 2  # parts by time of use or tier, beside no total, are added up
+
+
+@dataclass(frozen=True, slots=True)
+class Opened:
+    """An ESPI file, its series joined. notes : what was passed over."""
+
+    name: str
+    entries: tuple[Entry, ...]
+    series: tuple[Series, ...]
+    notes: tuple[str, ...]
+
+
+def open_espi(data: bytes, name: str) -> Opened:
+    """Entries and usable series of a file.  Raises UnreadableBills."""
+    entries = read_entries(data, name)
+    every = join(entries, name)
+    notes: list[str] = []
+    usable = _usable(every, name, notes) or _from_summaries(entries, notes)
+    if not usable:
+        raise _nothing(every, name)
+    return Opened(name, tuple(entries), tuple(usable), tuple(notes))
+
+
+def meters_of(opened: Opened, said: Answers) -> list[tuple[str, str, Opened]]:
+    """(name, fuel, its own part of the file) of each meter and fuel; fuel "" where not said."""
+    found: dict[tuple[int, str], list[Series]] = {}
+    for series in opened.series:
+        fuel = _series_fuel(series)
+        if said.fuel is None or fuel in ("", said.fuel):
+            found.setdefault((series.point, fuel), []).append(series)
+    return [
+        (f"meter {point}", fuel, replace(opened, series=tuple(own)))
+        for (point, fuel), own in sorted(found.items())
+    ]
 
 
 def read_espi(data: bytes, name: str, said: Answers) -> Understood:
     """Rows of one account.  Raises UnreadableBills, AmbiguousBills, UnknownUnit."""
-    entries = read_entries(data, name)
-    every = join(entries, name)
-    notes: list[str] = []
-    usable = _usable(every, name, notes)
-    if not usable:
-        usable = _from_summaries(entries, notes)
-    if not usable:
-        raise _nothing(every, name)
+    return understand_meter(open_espi(data, name), said)
+
+
+def understand_meter(opened: Opened, said: Answers) -> Understood:
+    """Rows of the one account that the answers choose.  Raises as read_espi does."""
+    entries, name, notes = opened.entries, opened.name, list(opened.notes)
+    usable = list(opened.series)
+    if said.rows is not None:
+        usable = _named_meter(usable, said.rows, name)
     usable = _of_fuel(usable, said, name, notes)
-    chosen, exports = _choose(usable, said, name, notes)
+    chosen, exports = _choose(usable, name, notes)
     fuel = _fuel_of(chosen[0], said, name)
     unit, factor = _unit_of(chosen[0], fuel, said, name)
     clock = _clock(entries, said, name)
     notes.append(f"days are those of the clock: {clock.name}")
     table = Numbers.of(chosen, exports, factor, name)
     rows, more = _rows(table, clock, said, name)
-    costs = _summary_costs(entries, clock) if not np.any(~np.isnan(table.cost)) else {}
-    if costs:
+    costs = {}
+    if np.all(np.isnan(table.cost)):
+        costs = _summary_costs(entries, clock, chosen[0].point)
+    if costs and not isinstance(rows, DayRows):
         rows = tuple(replace(r, cost=costs.get((r.start or 0, r.end or 0))) for r in rows)
         more.append("cost from the usage summaries")
     number = chosen[0].code("currency")
@@ -58,6 +98,7 @@ def read_espi(data: bytes, name: str, said: Answers) -> Understood:
         ),
         cautions_of(table), sent=bool(exports) or table.net,
         currency=codes.CURRENCIES.get(number or 0),
+        spans=billed_spans(entries, clock, chosen[0].point),
     )  # fmt: skip
 
 
@@ -94,9 +135,8 @@ def _nothing(every: Sequence[Series], name: str) -> UnreadableBills:
 
 def _from_summaries(entries: Sequence[Entry], notes: list[str]) -> list[Series]:
     """Series made of the bills that usage summaries speak of; for files without readings."""
-    found: dict[tuple[int | None, int | None, int | None], Series] = {}
+    found: dict[tuple[int | None, ...], Series] = {}
     points = [e for e in entries if e.kind == "usagepoint"]
-    kind = points[0].whole("servicecategory/kind") if len(points) == 1 else None
     summaries = [e for e in entries if e.kind.endswith("usagesummary")]
     for k, entry in enumerate(summaries, start=1):
         total = "overallconsumptionlastperiod/"
@@ -105,13 +145,15 @@ def _from_summaries(entries: Sequence[Entry], notes: list[str]) -> list[Series]:
         if value is None or start is None or seconds is None:
             continue
         power = entry.whole(total + "poweroftenmultiplier")
-        key = (uom, power, entry.whole("commodity"))
+        place = place_of(entry, points)
+        kind = points[place - 1].whole("servicecategory/kind") if place else None
+        key = (place, uom, power, entry.whole("commodity"))
         if key not in found:
             fields = {"uom": str(uom) if uom is not None else "",
                       "poweroftenmultiplier": str(power or 0)}  # fmt: skip
             for each in ("commodity", "currency"):
                 fields[each] = entry.fields.get(each, "")
-            found[key] = Series(Entry("readingtype", "", "", (), fields), 0, kind)
+            found[key] = Series(Entry("readingtype", "", "", (), fields), place, kind)
         cost = entry.whole("billlastperiod")
         found[key].readings.append(
             Reading(k, float(start), float(seconds), float(value),
@@ -183,21 +225,26 @@ def _unit_of(series: Series, fuel: str, said: Answers, name: str) -> tuple[str, 
     return unit, power * factor
 
 
-def _choose(
-    usable: list[Series], said: Answers, name: str, notes: list[str]
-) -> tuple[list[Series], list[Series]]:
+def _named_meter(usable: list[Series], rows: str, name: str) -> list[Series]:
+    wanted = rows.strip().lower().removeprefix("meter").strip()
+    kept = [s for s in usable if str(s.point) == wanted]
+    if kept:
+        return kept
+    known = ", ".join(map(str, sorted({s.point for s in usable})[:MOST_CHOICES]))
+    raise UnreadableBills(f"there is no meter {rows[:20]!r}", where=name, wanted=f"one of {known}")
+
+
+def _choose(usable: list[Series], name: str, notes: list[str]) -> tuple[list[Series], list[Series]]:
     """The series that are the account's use (parts to add up), and those of export."""
     points = sorted({s.point for s in usable})
-    if said.rows is not None:
-        wanted = said.rows.strip().lower().removeprefix("meter").strip()
-        usable = [s for s in usable if str(s.point) == wanted]
-        if not usable:
-            raise UnreadableBills(f"there is no meter {said.rows[:20]!r}", where=name,
-                                  wanted=f"one of {', '.join(map(str, points))}")  # fmt: skip
-    elif len(points) > 1:
+    if len(points) > 1:
+        more = " or …" if len(points) > MOST_CHOICES else ""
+        lines = " or ".join(f'rows = "meter {p}"' for p in points[:MOST_CHOICES])
         raise AmbiguousBills(
-            f"the file holds {len(points)} meters, which are never added up", where=name,
-            next_step=answer("rows", *(f"meter {p}" for p in points[:3])),
+            f"the file holds {len(points)} meters", where=name,
+            wanted="to know which is meant, for they are never added up",
+            next_step=f"Put {lines}{more} under [[account]] in site.toml, or use --rows; "
+            "normalize bills shows all of them.",
         )  # fmt: skip
     exports = [s for s in usable if s.code("flowdirection") == codes.EXPORT]
     use = [s for s in usable if s not in exports]
@@ -248,7 +295,7 @@ def _covered(series: Series) -> float:
 
 def _rows(
     table: Numbers, clock: Clock, said: Answers, name: str
-) -> tuple[tuple[BillRow, ...], list[str]]:
+) -> tuple[Sequence[BillRow], list[str]]:
     local = clock.local(table.start)
     if np.median(table.seconds) < SHORT_READING:
         if table.several:
@@ -298,11 +345,16 @@ def _clock(entries: Sequence[Entry], said: Answers, name: str) -> Clock:
     )
 
 
-def _summary_costs(entries: Sequence[Entry], clock: Clock) -> dict[tuple[int, int], float]:
-    """(first day, end) of a billing period → what its bill came to."""
+def _summary_costs(
+    entries: Sequence[Entry], clock: Clock, point: int
+) -> dict[tuple[int, int], float]:
+    """(first day, end) of a billing period → what its bill came to, for one meter."""
     found = {}
+    points = [e for e in entries if e.kind == "usagepoint"]
     for entry in entries:
         if not entry.kind.endswith("usagesummary"):
+            continue
+        if len(points) > 1 and place_of(entry, points) != point:
             continue
         start, seconds = entry.whole("billingperiod/start"), entry.whole("billingperiod/duration")
         money = entry.whole("billlastperiod")

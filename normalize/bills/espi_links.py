@@ -77,12 +77,21 @@ def join(entries: Sequence[Entry], name: str) -> list[Series]:
         point = _point_of(block, meter, of["usagepoint"])
         key = (id(kind), id(point), "" if meter is not None else block.up)
         if key not in found:
-            place = of["usagepoint"].index(point) + 1 if point is not None else 0
+            place = _place(point, of["usagepoint"])
             service = point.whole("servicecategory/kind") if point is not None else None
             found[key] = Series(kind, place, service)
         for each in block.blocks:
             found[key].readings += _with_times(each.readings, each.start, kind)
     return list(found.values())
+
+
+def place_of(entry: Entry, points: Sequence[Entry]) -> int:
+    """The place, from 1, of an entry's usage point in the file; 0 where links do not say."""
+    return _place(_one(entry, points), points)
+
+
+def _place(point: Entry | None, points: Sequence[Entry]) -> int:
+    return next((n for n, p in enumerate(points, start=1) if p is point), 0)
 
 
 def _one(child: Entry, parents: Sequence[Entry]) -> Entry | None:

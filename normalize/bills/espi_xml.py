@@ -7,24 +7,19 @@ bounded memory.  Elements are known by namespace and name, never by prefix.  Nam
 
 from __future__ import annotations
 
-import io
 import re
-from collections.abc import Iterator
 from dataclasses import dataclass, field
-from functools import lru_cache
-from typing import TYPE_CHECKING
 from urllib.parse import urlsplit
 
 from normalize.bills.espi_codes import ESTIMATED_QUALITIES, SUSPECT_QUALITY, WEATHER_NORMALIZED
 from normalize.errors import UnreadableBills
 
-if TYPE_CHECKING:
-    from xml.etree.ElementTree import Element
-
 ATOM = "http://www.w3.org/2005/Atom"
 ESPI = "http://naesb.org/espi"
 MAX_ENTRIES = 200_000
 MAX_READINGS = 3_000_000  # 85 years of quarter hours
+MAX_DEPTH = 100
+PIECE = 1 << 16  # bytes handed to the parser at once
 MAX_TEXT = 200  # characters of a field that is kept
 MILLISECONDS = 1e11  # an instant above it would lie after the year 5138
 
@@ -33,7 +28,8 @@ KINDS = {
     "electricpowerusagesummary", "electricpowerqualitysummary", "localtimeparameters",
     "timeconfiguration",
 }  # fmt: skip
-_FIELD = re.compile(r"[^a-z0-9/]")
+OTHER, FIELD, OBJECT, LINK, ENTRY = range(5)  # what an element can be
+MOST_TAGS = 1000  # that are remembered: a file has few names and many elements
 
 
 @dataclass(slots=True)
@@ -105,13 +101,12 @@ def read_entries(data: bytes, name: str) -> list[Entry]:
     from xml.etree.ElementTree import ParseError
 
     from defusedxml.common import DefusedXmlException
-    from defusedxml.ElementTree import iterparse
 
     if re.search(rb"<!(?:DOCTYPE|ENTITY)", data.replace(b"\0", b"")[:100_000], re.IGNORECASE):
         raise _unsafe(name)
-    stream = io.BytesIO(data.lstrip(b" \t\r\n"))
+    walk = _Walk(name)
     try:
-        return _Walk(name).entries(iterparse(stream, events=("start", "end"), forbid_dtd=True))
+        _parse(data.lstrip(b" \t\r\n"), walk)
     except DefusedXmlException:
         raise _unsafe(name) from None
     except ParseError as err:
@@ -122,6 +117,33 @@ def read_entries(data: bytes, name: str) -> list[Entry]:
         ) from None
     except (ValueError, LookupError, UnicodeError):  # an encoding nobody knows
         raise UnreadableBills("the XML is in an unknown encoding", where=name) from None
+    return walk.finish()
+
+
+class _Silence:
+    """A target that keeps nothing: no tree is built."""
+
+    def close(self) -> None:
+        """Nothing to hand over."""
+
+
+def _parse(data: bytes, walk: _Walk) -> None:
+    """Run defusedxml's parser, the one its iterparse runs, with the walk's own handlers.
+
+    Document types, entities and external references are refused by the parser as ever; but a
+    reading costs no elements, events and second walk over them, which took most of the time.
+    """
+    from defusedxml.ElementTree import DefusedXMLParser
+
+    parser = DefusedXMLParser(target=_Silence(), forbid_dtd=True)
+    inner = parser.parser
+    inner.StartElementHandler = walk.start
+    inner.EndElementHandler = walk.end
+    inner.CharacterDataHandler = walk.text
+    view = memoryview(data)
+    for begin in range(0, len(data), PIECE):
+        parser.feed(bytes(view[begin : begin + PIECE]))
+    parser.close()
 
 
 def _unsafe(name: str) -> UnreadableBills:
@@ -133,67 +155,122 @@ def _unsafe(name: str) -> UnreadableBills:
     )
 
 
-@lru_cache(maxsize=512)  # a file has few names and many elements
-def _local(tag: object) -> tuple[str, str]:
+def _local(tag: str) -> tuple[str, str]:
     """(namespace, lower-case name); typing errors such as IntervalBLock then do no harm."""
-    if not isinstance(tag, str):
-        return "", ""
     space, _, name = tag.rpartition("}")
-    return space.lstrip("{"), name.lower()
+    return space, name.lower()
 
 
 class _Walk:
-    """Gathers entries while the parser runs, and lets go of what it has gathered."""
+    """Gathers entries while the parser runs: an object's fields by their path below it.
+
+    fields : of the object or reading that is open, by path; None where none is.  outer : what a
+    reading or an object within an object interrupts.  paths : of the elements open within it;
+    None for those of other namespaces, which are passed over.  leaf : no child came yet.
+    """
 
     def __init__(self, name: str) -> None:
         self.name = name
         self.found: list[Entry] = []
         self.waiting: list[Entry] = []  # objects of the entry that is open
         self.links: list[tuple[str, str]] = []
-        self.block: Block | None = None
+        self.blocks: list[Block] = []
         self.readings = 0
         self.is_espi = False
+        self.depth = 0
+        self.tags: dict[str, tuple[int, str]] = {}
+        self.fields: dict[str, str] | None = None
+        self.outer: list[tuple[dict[str, str] | None, list[str | None]]] = []
+        self.paths: list[str | None] = []
+        self.marks: list[str] = []  # of quality, of the reading that is open
+        self.pieces: list[str] = []
+        self.leaf = False
 
-    def entries(self, events: Iterator[tuple[str, Element]]) -> list[Entry]:
-        depth, root = 0, None
-        for event, element in events:
-            space, name = _local(element.tag)
-            if event == "start":
-                root = element if root is None else root
-                depth += 1
-                self.is_espi = self.is_espi or space == ESPI
-                if depth > 100:
-                    raise UnreadableBills("the XML is nested too deeply", where=self.name)
-                if space == ESPI and name == "intervalblock":
-                    self.block = Block(None, None)
-                continue
-            depth -= 1
-            self._ended(space, name, element)
-            if name == "entry" and root is not None:
-                root.clear()
-        self._close()
-        if not self.found:
-            self._refuse()
-        return self.found
+    def start(self, tag: str, attributes: list[str]) -> None:
+        """An element begins. attributes : names and values in turn."""
+        self.depth += 1
+        if self.depth > MAX_DEPTH:
+            raise UnreadableBills("the XML is nested too deeply", where=self.name)
+        what, name = self.tags.get(tag) or self._tag(tag)
+        if what == FIELD:
+            if self.fields is not None:
+                paths = self.paths
+                above = paths[-1] if paths else ""
+                self.leaf = above is not None
+                paths.append(f"{above}/{name}" if above else name if self.leaf else None)
+                self.pieces = []
+            return
+        self.leaf = False
+        if what == OBJECT:
+            self._open(name)
+        elif self.fields is not None:
+            self.paths.append(None)
+        elif what == LINK:
+            of = dict(zip(attributes[::2], attributes[1::2], strict=True))
+            self.links.append((of.get("rel", ""), path_of(of.get("href", ""))))
 
-    def _ended(self, space: str, name: str, element: Element) -> None:
-        if space == ATOM and name == "link":
-            self.links.append((element.get("rel", ""), path_of(element.get("href", ""))))
-        elif space == ATOM and name == "entry":
+    def _tag(self, tag: str) -> tuple[int, str]:
+        """What a tag is, and its lower-case name, kept for the next time."""
+        space, name = _local(tag)
+        what = OTHER
+        if space == ESPI:
+            self.is_espi = True
+            what = OBJECT if name == "intervalreading" or name in KINDS else FIELD
+        elif space == ATOM and name in ("link", "entry"):
+            what = LINK if name == "link" else ENTRY
+        if len(self.tags) < MOST_TAGS:
+            self.tags[tag] = what, name
+        return what, name
+
+    def _open(self, name: str) -> None:
+        """An object or a reading begins."""
+        self.outer.append((self.fields, self.paths))
+        self.fields, self.paths = {}, []
+        if name == "intervalreading":
+            self.marks = []
+        elif name == "intervalblock":
+            self.blocks.append(Block(None, None))
+
+    def text(self, data: str) -> None:
+        """Characters of an element; more than a field can be is not kept."""
+        if self.leaf and len(self.pieces) < MAX_TEXT:
+            self.pieces.append(data[: 2 * MAX_TEXT])
+
+    def end(self, tag: str) -> None:
+        """An element ends."""
+        self.depth -= 1
+        if self.paths:
+            place = self.paths.pop()
+            if self.leaf and place is not None and self.fields is not None:
+                self._keep(place)
+            self.leaf = False
+            return
+        self.leaf = False
+        what, name = self.tags.get(tag) or self._tag(tag)
+        if what == OBJECT and self.fields is not None:
+            fields = self.fields
+            self.fields, self.paths = self.outer.pop()
+            if name == "intervalreading":
+                self._reading(fields)
+            else:
+                self._object(name, fields)
+        elif what == ENTRY:
             self._close()
-        elif space == ESPI and name == "intervalreading":
-            self._reading(element)
-        elif space == ESPI and name in KINDS:
-            self._object(name, element)
 
-    def _reading(self, element: Element) -> None:
+    def _keep(self, place: str) -> None:
+        """The text of a leaf, the first of its name; of marks of quality, every one."""
+        text = "".join(self.pieces).strip()[:MAX_TEXT] if self.pieces else ""
+        if self.fields is not None and place not in self.fields:
+            self.fields[place] = text
+        if place == "quality" or place.endswith("/quality"):
+            self.marks.append(text)
+
+    def _reading(self, fields: dict[str, str]) -> None:
         self.readings += 1
         if self.readings > MAX_READINGS:
             raise UnreadableBills(
                 f"the file holds more than {MAX_READINGS:,} readings", where=self.name
             )
-        fields = dict(_leaves(element, ""))
-        quality = _worst_quality(element)
         tou = number(fields.get("tou"))
         reading = Reading(
             self.readings,
@@ -201,25 +278,30 @@ class _Walk:
             number(fields.get("timeperiod/duration")),
             number(fields.get("value")),
             number(fields.get("cost")),
-            quality,
+            _worst_quality(self.marks) if self.marks else None,
             int(tou) if tou is not None and abs(tou) < 1e6 else 0,
         )
-        if self.block is not None:
-            self.block.readings.append(reading)
-        element.clear()
+        if self.blocks:
+            self.blocks[-1].readings.append(reading)
 
-    def _object(self, name: str, element: Element) -> None:
-        entry = Entry(name, "", "", (), dict(_leaves(element, "")))
-        if name == "intervalblock" and self.block is not None:
-            self.block.start = instant(entry.fields.get("interval/start"))
-            self.block.seconds = number(entry.fields.get("interval/duration"))
-            entry.blocks.append(self.block)
-            self.block = None
+    def _object(self, name: str, fields: dict[str, str]) -> None:
+        entry = Entry(name, "", "", (), fields)
+        if name == "intervalblock" and self.blocks:
+            block = self.blocks.pop()
+            block.start = instant(fields.get("interval/start"))
+            block.seconds = number(fields.get("interval/duration"))
+            entry.blocks.append(block)
         self.waiting.append(entry)
-        element.clear()
         if len(self.found) + len(self.waiting) > MAX_ENTRIES:
             raise UnreadableBills(f"the file holds more than {MAX_ENTRIES:,} entries",
                                   where=self.name)  # fmt: skip
+
+    def finish(self) -> list[Entry]:
+        """Every entry of the file.  Raises UnreadableBills where there is none."""
+        self._close()
+        if not self.found:
+            self._refuse()
+        return self.found
 
     def _close(self) -> None:
         """An entry ends: its objects get its links."""
@@ -246,33 +328,14 @@ class _Walk:
         )
 
 
-def _worst_quality(element: Element) -> int | None:
+def _worst_quality(texts: list[str]) -> int | None:
     """Of several marks of quality, the one that says most against the reading."""
-    marks = [
-        int(value)
-        for node in element.iter(f"{{{ESPI}}}quality")
-        if (value := number(node.text)) is not None and abs(value) < 1e6
-    ]
+    if len(texts) == 1:
+        value = number(texts[0])
+        return int(value) if value is not None and abs(value) < 1e6 else None
+    marks = [int(value) for t in texts if (value := number(t)) is not None and abs(value) < 1e6]
     bad = (WEATHER_NORMALIZED, SUSPECT_QUALITY, *ESTIMATED_QUALITIES)
     return next((mark for mark in bad if mark in marks), marks[0] if marks else None)
-
-
-def _leaves(element: Element, path: str) -> Iterator[tuple[str, str]]:
-    """Text of every leaf below an element, the first of each name."""
-    seen: set[str] = set()
-    stack = [(child, "") for child in reversed(list(element))]
-    while stack:
-        node, above = stack.pop()
-        space, name = _local(node.tag)
-        if space != ESPI or name == "intervalreading":
-            continue
-        place = f"{above}/{name}" if above else name
-        children = list(node)
-        if children:
-            stack.extend((child, place) for child in reversed(children))
-        elif place not in seen:
-            seen.add(place)
-            yield place, (node.text or "").strip()[:MAX_TEXT]
 
 
 def path_of(href: str) -> str:

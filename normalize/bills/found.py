@@ -6,18 +6,18 @@ is in deliveries.py.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 
 from normalize.bills.amounts import Decimal, number_of
 from normalize.bills.answers import NO_COLUMN, Answers
 from normalize.bills.columns import Columns, answer
 from normalize.bills.deliveries import Tank
+from normalize.bills.groups import cell
 from normalize.bills.layout_choice import Layout
 from normalize.bills.layouts import Record
 from normalize.bills.records import how_numbers_are_written
 from normalize.bills.repair import Kind
-from normalize.bills.select import cell
 from normalize.bills.table import RawRow, RawTable
 from normalize.errors import AmbiguousBills
 
@@ -29,7 +29,7 @@ class Found:
     table: RawTable
     columns: Columns
     body: Sequence[RawRow]
-    totals: Sequence[int]
+    totals: Collection[int]
     layout: Layout
     kind: Kind
     where: str

@@ -10,8 +10,8 @@ from collections.abc import Iterable, Sequence
 
 from normalize.bills.amounts import split_amount
 from normalize.bills.columns import Columns, answer, fuel_of_unit, fuel_suggested
+from normalize.bills.groups import cell, fuel_named
 from normalize.bills.headings import known_unit
-from normalize.bills.select import cell, fuel_named
 from normalize.bills.table import RawRow
 from normalize.errors import AmbiguousBills, UnknownUnit
 from normalize.units import FUELS, canonical_unit

@@ -187,4 +187,9 @@ def header_score(cells: Sequence[Cell], names: frozenset[str] = frozenset()) -> 
 
 def squeeze(text: object) -> str:
     """A heading for comparing: lower case, letters and digits only."""
+    return _squeezed(text) if isinstance(text, str) else _squeezed(as_text(text))
+
+
+@lru_cache(maxsize=50_000)
+def _squeezed(text: str) -> str:
     return "".join(c for c in as_text(text).lower() if c.isalnum() or c in "$%")

@@ -1,12 +1,11 @@
 """When each line of an interval file was: local moments, their step, and what settled them.
 
-What belongs here: columns of stamps or of dates and times to local seconds; the order of day
-and month; whether a stamp is the start or the end of its interval; time zones.
+What belongs here: dates and times of day to local seconds; the order of day and month; whether
+a stamp is the start or the end of its interval; time zones.
 """
 
 from __future__ import annotations
 
-import re
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -15,49 +14,43 @@ import numpy as np
 from normalize.bills.answers import Answers
 from normalize.bills.columns import answer
 from normalize.bills.dates import Order
-from normalize.bills.interval_kernel import FULL, NO_OFFSET, Lines, local_seconds
+from normalize.bills.interval_cells import BAD_TIME, BARE_HOUR, NO_OFFSET
+from normalize.bills.interval_kernel import Lines
+from normalize.bills.interval_sums import NO_DAY, count_steps, local_seconds
 from normalize.bills.local_days import DAY, Clock, clock_of, spoken
+from normalize.bills.wide_head import WideHead
 from normalize.errors import AmbiguousBills, UnreadableBills
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     Long = NDArray[np.int64]
+    Int = NDArray[np.int32]
+    Byte = NDArray[np.uint8]
 
 LONGEST_STEP = 36 * 3600
-SURELY_NO_DATES = 200  # lines looked at before a file of months by name is ruled out
-_CLOCK_TIME = re.compile(rb"(\d{1,2}):(\d{2})(?::(\d{2}))?[\d.]*\s*([aApP])?")
-_FIRST_OF_MONTH = (
-    np.arange("1900-01", "2100-03", dtype="datetime64[M]").astype("datetime64[D]").astype(np.int64)
-)
+SURELY_NO_DATES = 200  # dates looked at before a file of months by name is ruled out
+MOST_OFFSETS = 4  # a place has two, winter's and summer's; more are ends of ranges (13:00-14:00)
+_FIRST_MONTH = np.datetime64("1900-01")
 
 
 @dataclass(frozen=True, slots=True)
 class Moments:
     """local : (n,) local seconds of each interval's start.  offset : (n,) from UTC, or NO_OFFSET.
 
-    known : (n,) lines with a moment.  step : seconds of an interval.  clock : where known.
+    known : (n,) 1 for lines with a moment.  step : seconds of an interval.  clock : where known.
+    rising : each moment is later than the one before.  zoned : the file gives its own offsets.
     """
 
     local: Long
-    offset: Long
-    known: NDArray[np.bool_]
+    offset: Int
+    known: Byte
     step: int
     clock: Clock | None
+    rising: bool
+    zoned: bool
     notes: tuple[str, ...]
     cautions: tuple[str, ...]
-    zoned: bool
-
-    def lengths(self, keep: NDArray[np.bool_]) -> Long | None:
-        """Seconds of each day that has lines, from the file's own offsets; None without them."""
-        if self.clock is not None or not self.zoned:
-            return None
-        day, offset = self.local[keep] // DAY, self.offset[keep]
-        order = np.argsort(self.local[keep] - offset, kind="stable")
-        days, first = np.unique(day[order], return_index=True)
-        last = np.append(first[1:], day.size) - 1
-        change: Long = offset[order][first] - offset[order][last]
-        return DAY + change if days.size else None
 
 
 def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: str) -> Moments:
@@ -65,23 +58,20 @@ def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: st
 
     Raises AmbiguousBills, UnreadableBills.
     """
-    bad = np.flatnonzero((lines.fields[:, 0] < 0) & (lines.state == FULL))
-    if 2 * bad.size > np.count_nonzero(lines.state == FULL):
-        _months_as_numbers(lines, data, bad)
-    order, note = _order(lines, answers, where)
-    local, known = _local(lines, order)
-    if not np.any(known):
+    days, note = _days(lines, data, answers, where)
+    second = _bare_numbers(lines.second)
+    local, known = np.empty(second.shape, np.int64), np.empty(second.shape, np.uint8)
+    if local_seconds(lines.date, second, days, local, known) == 0:
         raise UnreadableBills("no line begins with a moment of time", where=where)
-    zoned = bool(np.any(lines.offset[known] != NO_OFFSET))
-    offset = lines.offset.astype(np.int64)
-    step = _step(local, offset, known, zoned=zoned, where=where)
+    offset, zoned = _offsets(lines.offset, known)
+    step, rising = _step(local, offset, known, where)
     notes = [note] if note else []
     cautions: list[str] = []
-    label = _label(role, local[known], step, answers, notes, cautions)
+    label = _label(role, local, known, step, answers, notes, cautions)
     if label == "end":
         local -= step
     clock = clock_of(answers.time_zone, where=where) if answers.time_zone is not None else None
-    if clock is None and zoned and bool(np.all(offset[known] == 0)):
+    if clock is None and zoned and not np.any(offset[known == 1]):
         raise AmbiguousBills(
             "the times are UTC, and the file does not say in which time zone the meter is",
             where=where,
@@ -90,41 +80,92 @@ def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: st
         )
     if clock is not None and zoned:
         local = clock.local(local - np.where(offset == NO_OFFSET, 0, offset))
-    return Moments(local, offset, known, step, clock, tuple(notes), tuple(cautions), zoned)
+        rising = bool(np.all(np.diff(local) > 0))
+    return Moments(local, offset, known, step, clock, rising, zoned, tuple(notes), tuple(cautions))
 
 
-def _months_as_numbers(lines: Lines, data: bytes, bad: NDArray[np.intp]) -> None:
-    """Stamps whose dates name their month, in place; each date is looked up once.
+def wide_moments(
+    lines: Lines, wide: WideHead, data: bytes, answers: Answers, where: str
+) -> Moments:
+    """Moments of a wide file's readings, line by line. Raises as moments_of does."""
+    days, note = _days(lines, data, answers, where)
+    day = np.where(lines.date >= 0, days[np.maximum(lines.date, 0)], NO_DAY)
+    if not np.any(day != NO_DAY):
+        raise UnreadableBills("no line begins with a date", where=where)
+    # The hour that comes twice when clocks go back is, nearly everywhere, the one from 1 to 2.
+    more = {k: 3600 + n * wide.step for n, k in enumerate(wide.extra)}
+    starts = np.array([(wide.starts | more)[k] for k in wide.columns], np.int64)
+    known = np.repeat((day != NO_DAY).astype(np.uint8), starts.size)
+    local = (np.where(day == NO_DAY, 0, day)[:, None] * DAY + starts).reshape(-1)
+    clock = clock_of(answers.time_zone, where=where) if answers.time_zone is not None else None
+    rising = not wide.extra and bool(np.all(np.diff(day[day != NO_DAY]) > 0))
+    notes = (f"a column for each {spoken(wide.step)}", *([note] if note else []))
+    offset = np.full(local.shape, NO_OFFSET, np.int32)
+    return Moments(local, offset, known, wide.step, clock, rising, False, notes, ())
 
-    bad : lines that are no stamps in numbers.  When none of the first is a date either, the rest
-    is not looked at.
+
+def _offsets(offset: Int, known: Byte) -> tuple[Int, bool]:
+    """Offsets from UTC, unless they are no offsets, and whether there are any."""
+    some = offset[(offset != NO_OFFSET) & (known == 1)]
+    if some.size == 0:
+        return offset, False
+    if np.unique(some[: 10 * SURELY_NO_DATES]).size > MOST_OFFSETS:
+        return np.full_like(offset, NO_OFFSET), False
+    return offset, True
+
+
+def _bare_numbers(second: Int) -> Int:
+    """Times such as 13, 1300 or 130000 to seconds; which of these they are, all of them show."""
+    bare = second <= BARE_HOUR
+    if not np.any(bare):
+        return second
+    value = BARE_HOUR - second[bare].astype(np.int64)
+    top = int(value.max())
+    scale = 10000 if top > 2400 else 100 if top > 24 else 1
+    hour, minute, rest = value // scale, value % scale, np.zeros_like(value)
+    if scale == 10000:
+        minute, rest = minute // 100, minute % 100
+    total = hour * 3600 + minute * 60 + rest
+    good = (minute < 60) & (rest < 60) & (total <= DAY)
+    out = second.copy()
+    out[bare] = np.where(good, total, BAD_TIME)
+    return out
+
+
+def _days(lines: Lines, data: bytes, answers: Answers, where: str) -> tuple[Long, str]:
+    """Day number of each date, NO_DAY for none, and a sentence on their order."""
+    parts = lines.parts.astype(np.int64)
+    bad = np.flatnonzero(parts[:, 0] < 0)
+    if 2 * bad.size > parts.shape[0]:
+        _months_by_name(parts, lines.spans, data, bad)
+    order, note = _order(parts, answers, where)
+    places = {"year first": (0, 1, 2), "month first": (2, 0, 1), "day first": (2, 1, 0)}[order]
+    year, month, day = (parts[:, k] for k in places)
+    year = np.where(year >= 100, year, np.where(year < 70, year + 2000, year + 1900))
+    good = (parts[:, 0] >= 0) & (year >= 1900) & (year < 2100) & (month >= 1) & (month <= 12)
+    good &= (day >= 1) & (day <= 31)
+    months = np.where(good, (year - 1900) * 12 + month - 1, 0)
+    first, after = (
+        (_FIRST_MONTH + months + k).astype("datetime64[D]").astype(np.int64) for k in (0, 1)
+    )
+    good &= first + day <= after
+    return np.where(good, first + day - 1, NO_DAY), note
+
+
+def _months_by_name(parts: Long, spans: Long, data: bytes, bad: NDArray[np.intp]) -> None:
+    """Dates that name their month, in place; each is looked up once.
+
+    bad : those that are no numbers.  When none of the first is a date either, the rest is not
+    looked at.
     """
-    dates: dict[bytes, tuple[int, int, int]] = {}
-    first = bad[:SURELY_NO_DATES]
-    _named_stamps(lines, data, first, dates)
-    if any(year > 0 for year, _, _ in dates.values()):
-        _named_stamps(lines, data, bad[SURELY_NO_DATES:], dates)
-
-
-def _named_stamps(
-    lines: Lines, data: bytes, bad: NDArray[np.intp], dates: dict[bytes, tuple[int, int, int]]
-) -> None:
-    for i, (a, b) in zip(bad.tolist(), lines.span[bad].tolist(), strict=True):
+    known: dict[bytes, tuple[int, int, int]] = {}
+    for count, (i, (a, b)) in enumerate(zip(bad.tolist(), spans[bad].tolist(), strict=True)):
+        if count == SURELY_NO_DATES and all(year < 0 for year, _, _ in known.values()):
+            return
         text = data[a:b]
-        cut = text.find(b":")
-        cut = text.rfind(b" ", 0, cut) if cut > 0 else len(text)
-        date = text[:cut]
-        if date not in dates:
-            dates[date] = _named_date(date)
-        if dates[date][0] < 0:
-            continue
-        lines.fields[i, :3] = dates[date]
-        found = _CLOCK_TIME.search(text[cut:])
-        if found:
-            hour = int(found[1])
-            if found[4]:
-                hour = hour % 12 + (12 if found[4] in b"pP" else 0)
-            lines.fields[i, 3:6] = hour, int(found[2]), int(found[3] or 0)
+        if text not in known:
+            known[text] = _named_date(text)
+        parts[i] = known[text]
 
 
 def _named_date(text: bytes) -> tuple[int, int, int]:
@@ -139,11 +180,10 @@ def _named_date(text: bytes) -> tuple[int, int, int]:
     return (when.year, when.month, when.day)
 
 
-def _order(lines: Lines, answers: Answers, where: str) -> tuple[Order, str]:
-    a, b = lines.fields[:, 0], lines.fields[:, 1]
+def _order(parts: Long, answers: Answers, where: str) -> tuple[Order, str]:
+    a, b = parts[:, 0], np.where(parts[:, 0] >= 0, parts[:, 1], -1)
     if 2 * np.count_nonzero(a > 31) >= np.count_nonzero(a >= 0):
         return "year first", ""
-    b = np.where(a >= 0, b, -1)
     if answers.dates is not None:
         return answers.dates, f"dates are {answers.dates}, as you said"
     first, second = np.count_nonzero(a > 12), np.count_nonzero(b > 12)
@@ -158,42 +198,34 @@ def _order(lines: Lines, answers: Answers, where: str) -> tuple[Order, str]:
     )
 
 
-def _local(lines: Lines, order: Order) -> tuple[Long, NDArray[np.bool_]]:
-    """Local seconds, and which lines have them; 24:00 is the end of its day."""
-    places = {"year first": (0, 1, 2), "month first": (2, 0, 1), "day first": (2, 1, 0)}[order]
-    n = lines.state.shape[0]
-    local, known = np.empty(n, np.int64), np.empty(n, np.uint8)
-    local_seconds(
-        lines.fields, lines.state, np.array(places, np.int64), _FIRST_OF_MONTH, local, known
-    )
-    return local, known.view(np.bool_)
-
-
-def _step(local: Long, offset: Long, known: NDArray[np.bool_], *, zoned: bool, where: str) -> int:
-    """The commonest step between neighbouring moments."""
-    moved = (
-        local[known] - np.where(offset == NO_OFFSET, 0, offset)[known] if zoned else local[known]
-    )
-    steps = np.diff(moved)
-    if np.any(steps <= 0):
+def _step(local: Long, offset: Int, known: Byte, where: str) -> tuple[int, bool]:
+    """The commonest step between neighbouring moments, and whether each is later than the last."""
+    counts = np.zeros(LONGEST_STEP + 1, np.int64)
+    rising = count_steps(local, offset, known, counts)
+    if not rising:
+        some = known == 1
+        moved = local[some] - np.where(offset == NO_OFFSET, 0, offset)[some]
         steps = np.diff(np.sort(moved))
-    steps = steps[(steps > 0) & (steps <= LONGEST_STEP)]
-    if steps.size == 0:
+        counts = np.bincount(steps[(steps > 0) & (steps <= LONGEST_STEP)], minlength=1)
+    if not np.any(counts):
         raise UnreadableBills("the lines do not follow each other within days", where=where)
-    return int(np.argmax(np.bincount(steps)))
+    return int(np.argmax(counts)), rising
 
 
 def _label(
-    role: str, local: Long, step: int, answers: Answers, notes: list[str], cautions: list[str]
-) -> str:
+    role: str, local: Long, known: Byte, step: int, answers: Answers, notes: list[str],
+    cautions: list[str],
+) -> str:  # fmt: skip
     """Whether a stamp begins or ends its interval."""
     if answers.interval_times is not None:
         notes.append(f"a time is the {answers.interval_times} of its interval, as you said")
         return answers.interval_times
     if role in ("start", "end") or step >= DAY:
         return role if role == "end" and step < DAY else "start"
+    if not np.all(known):
+        local = local[known == 1]
     first, last = int(local.min() % DAY), int(local.max() % DAY)
-    if np.any(local % DAY == 0) and first == 0 and last == DAY - step:
+    if first == 0 and last == DAY - step:
         return "start"
     if first == step % DAY and last == 0:
         notes.append("a time is the end of its interval: the file begins and ends so")

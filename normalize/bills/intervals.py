@@ -1,9 +1,9 @@
-"""Interval files: 15-minute, hourly or daily readings as CSV, tens of megabytes of them.
+"""Interval files: readings of five minutes to a day, tens of megabytes of them.
 
-What belongs here: telling such a file from a table of bills, and its way into one row for each
-local day.  Lines are taken apart in interval_kernel.py, moments made in
-interval_times.py, days summed in local_days.py.  Headings and
-questions are those of every table (columns.py, select.py).
+What belongs here: their way into one row for each local day, long files and wide ones alike.
+Whether a file is one is told in interval_head.py, lines are taken apart in interval_file.py,
+moments made in interval_times.py, days summed in local_days.py.  Headings and questions are
+those of every table (columns.py, groups.py).
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from normalize.bills.amounts import Decimal, as_text, decide_decimal, number_of
+from normalize.bills.amounts import Decimal, decide_decimal
 from normalize.bills.answers import Answers, Understood
 from normalize.bills.columns import (
     Columns,
@@ -24,199 +24,132 @@ from normalize.bills.columns import (
     described,
     find_columns,
 )
-from normalize.bills.dates import read_written
+from normalize.bills.day_rows import DayRows
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
+from normalize.bills.groups import cell, masked
 from normalize.bills.headings import squeeze
-from normalize.bills.interval_kernel import (
-    BLANK,
-    COST,
-    FULL,
-    SKIP,
-    STAMP,
-    TIME,
-    USE,
-    WORD,
-    Lines,
-    take_apart,
-)
-from normalize.bills.interval_times import Moments, moments_of
+from normalize.bills.interval_file import Taken, stamp_role
+from normalize.bills.interval_head import IntervalHead, whole_sheet
+from normalize.bills.interval_kernel import BLANK, FULL, TOO_WIDE
+from normalize.bills.interval_sums import keep_lines
+from normalize.bills.interval_times import Moments, moments_of, wide_moments
 from normalize.bills.local_days import DAY
 from normalize.bills.records import is_estimated
-from normalize.bills.select import cell, masked
 from normalize.bills.sum_rows import day_rows, several
-from normalize.bills.table import BillFile, CsvHead, RawRow, RawTable, Score, csv_head
-from normalize.errors import AmbiguousBills, NoBills, NormalizeError, UnreadableBills
+from normalize.bills.table import BillFile, RawRow, RawTable
+from normalize.errors import AmbiguousBills, NoBills, UnreadableBills
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from normalize.bills.periods import BillRow
+    Long = NDArray[np.int64]
+    Float = NDArray[np.float64]
+    Byte = NDArray[np.uint8]
 
-MANY_DAYS = 5_000  # daily lines: more than that are read here, for speed
-MAX_LINES = 4_000_000  # a century of quarter hours
-USE_SLOT, COST_SLOT = 0, 1
-SAMPLE = 400  # lines looked at to tell what kind of file it is
-
-
-def is_interval_file(file: BillFile, answers: Answers, score: Score) -> CsvHead | None:
-    """The file's head if its lines are intervals within days (or very many days), else None."""
-    head = csv_head(file, score)
-    if head is None:
-        return None
-    table = RawTable(file.name, file.sha256, head.rows, head.delimiter)
-    try:
-        columns, body = find_columns(table, answers.named)
-    except NormalizeError:
-        return None  # the reader of tables says what is the matter
-    body = body[:SAMPLE]
-    when = _date_column(columns)
-    if when is None or len(body) < 2:
-        return None
-    timed = [row for row in body if _has_time(cell(row, when), cell(row, columns.get("time")))]
-    if 2 * len(timed) > len(body) and _within_days(timed, when):
-        return head
-    spans = columns.get("start") is not None and columns.get("end") is not None
-    return head if head.lines > MANY_DAYS and not spans and _daily(body, when) else None
+SAMPLE = 400  # cells looked at for their decimal mark
+MOST_USE = 1e12  # of any unit in one interval
 
 
-def _date_column(columns: Columns) -> int | None:
-    for role in ("start", "read", "end"):
-        if (k := columns.get(role)) is not None:
-            return k
-    return None
+@dataclass(frozen=True, slots=True)
+class _Readings:
+    """Readings one by one, whatever the shape of the file.
+
+    state, own : (n,) of the reading's line: state, 1 if it is the account's.  use : (n,).  cost,
+    guessed : (n,) or (1,) as in sum_days.  line : (n,) or (1,).  width : readings of a line.
+    room : seconds of a day beyond which the file has no place for readings, or None.
+    """
+
+    moments: Moments
+    state: Byte
+    own: Byte
+    use: Float
+    cost: Float
+    guessed: Long
+    line: Long
+    width: int = 1
+    room: int | None = None
 
 
-def _has_time(value: object, beside: object) -> bool:
-    text = as_text(value)
-    return ":" in text or (beside is not None and any(c.isdigit() for c in as_text(beside)))
-
-
-def _within_days(rows: Sequence[RawRow], when: int) -> bool:
-    """Whether several lines share their day, as intervals do and bills do not."""
-    days = [as_text(cell(row, when)).replace("T", " ").split(" ")[0] for row in rows]
-    return len(set(days)) <= 0.6 * len(days)
-
-
-def _daily(body: Sequence[RawRow], when: int) -> bool:
-    found = [read_written(cell(row, when)) for row in body]
-    days = [w.day for w in found if w.day is not None]
-    if len(days) < len(found) / 2:
-        parts = [w.parts for w in found if w.parts is not None]
-        return len({p[:2] for p in parts}) > 0.8 * len(body)  # nearly each line another day
-    steps = np.abs(np.diff(np.array(days)))
-    return bool(steps.size and np.median(steps) <= 1)
-
-
-def read_intervals(file: BillFile, head: CsvHead, answers: Answers) -> Understood:
+def read_intervals(file: BillFile, head: IntervalHead, answers: Answers) -> Understood:
     """Local days of one account.  Raises as read_bills does."""
     table = RawTable(file.name, file.sha256, head.rows, head.delimiter)
     columns, body = find_columns(table, answers.named)
+    if head.sheet:
+        head = whole_sheet(file, head)
     where = f"{file.name}:{columns.line}"
     columns, usage_notes = choose_usage(
         columns, fuel=answers.fuel, unit=answers.unit, where=file.name
     )
-    body = body[:SAMPLE]
     fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
     columns = choose_cost(columns, fuel)
-    decimal = _decimal(columns, body, head, answers, where)
-    big = _Big.of(file, head, columns, decimal)
-    own, other_notes = _of_account(big, columns, answers, where)
+    taken = Taken.of(file, head, columns, _decimal(columns, body, head, answers, where))
+    own, other_notes = _of_account(taken, columns, answers, where)
     unit, unit_note = unit_of(
-        columns, _unit_rows(big, columns), (), said=answers.unit, fuel=fuel, where=where
+        columns, _unit_rows(taken, columns), (), said=answers.unit, fuel=fuel, where=where
     )
-    moments = moments_of(big.lines, _stamp_role(columns), big.data, answers, where)
-    use = big.numbers(USE_SLOT)
-    priced = columns.get("cost") is not None
-    cost = big.numbers(COST_SLOT) if priced else np.full(use.shape, np.nan)
-    rows, notes = _summed(big, moments, own, use, cost, _estimated(big, columns))
+    taken.look_again()
+    make = _long if head.wide is None else _wide
+    readings = make(taken, head, columns, own, answers, where)
+    rows, notes = _summed(readings, taken)
     roles = [role for role in ("start", "end", "read", "time") if columns.get(role) is not None]
     return Understood(
         fuel, unit, "meter", rows,
         (
+            *((f"sheet {head.sheet[:40]!r}",) if head.sheet else ()),
             f"interval data, header on line {columns.line}", f"fuel: {fuel}", unit_note,
-            *described(columns, (*roles, "usage", "cost")), *usage_notes, *other_notes,
-            *moments.notes, *notes,
+            *described(columns, (*roles, *(("usage", "cost") if head.wide is None else ()))),
+            *usage_notes, *other_notes, *readings.moments.notes, *notes,
         ),
-        moments.cautions, sent=bool(np.any(use < 0)),
+        readings.moments.cautions, sent=bool(np.any(readings.use < 0)),
     )  # fmt: skip
 
 
-def _stamp_role(columns: Columns) -> str:
-    return next(r for r in ("start", "read", "end") if columns.get(r) is not None)
+def _long(
+    taken: Taken, head: IntervalHead, columns: Columns, own: Byte, answers: Answers, where: str
+) -> _Readings:
+    """Readings of a file with a line for each."""
+    moments = moments_of(taken.lines, stamp_role(columns), taken.data, answers, where)
+    return _Readings(
+        moments, taken.lines.state, own, np.ascontiguousarray(taken.number("usage")),
+        taken.number("cost") if "cost" in taken.numbers else np.full(1, np.nan),
+        _estimated(taken, columns), np.full(1, taken.first),
+    )  # fmt: skip
+
+
+def _wide(
+    taken: Taken, head: IntervalHead, columns: Columns, own: Byte, answers: Answers, where: str
+) -> _Readings:
+    """Readings of a file with a line for each day."""
+    if head.wide is None:
+        raise TypeError("a wide head is needed")
+    lines, wide, width = taken.lines, head.wide, len(head.wide.columns)
+    for slot, k in enumerate(wide.columns):
+        if k in wide.extra:  # filled once a year, and with noughts on all other days
+            lines.value[lines.value[:, slot] == 0, slot] = np.nan
+    guessed = _estimated(taken, columns)
+    number = np.arange(taken.first, taken.first + lines.state.size, dtype=np.int64)
+    return _Readings(
+        wide_moments(lines, wide, taken.data, answers, where),
+        np.repeat(lines.state, width), np.repeat(own, width), lines.value.reshape(-1),
+        np.full(1, np.nan), np.repeat(guessed, width) if guessed.size > 1 else guessed,
+        np.repeat(number, width), width, None if wide.extra else DAY,
+    )  # fmt: skip
 
 
 def _decimal(
-    columns: Columns, body: Sequence[RawRow], head: CsvHead, answers: Answers, where: str
+    columns: Columns, body: Sequence[RawRow], head: IntervalHead, answers: Answers, where: str
 ) -> Decimal:
     """The decimal mark, from the first lines."""
-    cells = [cell(row, columns.get(role)) for role in ("usage", "cost") for row in body]
+    used = [columns.get(role) for role in ("usage", "cost")]
+    used += head.wide.columns if head.wide is not None else ()
+    cells = [cell(row, k) for k in used if k is not None for row in body[: SAMPLE // len(used)]]
     return decide_decimal(cells, delimiter=head.delimiter, answer=answers.decimal, where=where)[0]
 
 
-@dataclass(frozen=True, slots=True)
-class _Big:
-    """The file taken apart. data : its bytes, recoded if need be.  first : line of lines[0]."""
-
-    name: str
-    data: bytes
-    first: int
-    lines: Lines
-    kinds: dict[str | int, int]  # role, or column of an account → place among the words
-    decimal: Decimal
-
-    @classmethod
-    def of(cls, file: BillFile, head: CsvHead, columns: Columns, decimal: Decimal) -> _Big:
-        """Read every line below the header."""
-        data = file.data
-        if head.encoding == "utf-16":
-            data = data.decode("utf-16", errors="replace").encode()
-        if head.lines > MAX_LINES:
-            raise UnreadableBills(f"the file holds more than {MAX_LINES:,} lines", where=file.name)
-        begin = 0
-        for _ in range(columns.line):
-            begin = data.find(b"\n", begin) + 1
-        roles = [SKIP] * len(columns.headings)
-        for role, use in (("usage", USE), ("cost", COST), ("time", TIME)):
-            if (k := columns.get(role)) is not None:
-                roles[k] = use
-        roles[columns.by_role[_stamp_role(columns)]] = STAMP
-        kinds: dict[str | int, int] = {}
-        words = {k: role for role in ("unit", "estimated") if (k := columns.get(role)) is not None}
-        for k in range(len(roles)):
-            if (k in words or k in columns.accounts) and roles[k] == SKIP:
-                roles[k] = WORD
-                kinds[words.get(k, k)] = len(kinds)
-        flat = np.frombuffer(data, np.uint8)
-        count = data.count(b"\n", begin) + 1 if head.encoding == "utf-16" else head.lines + 1
-        point = "," if decimal == "comma" else "."
-        lines = take_apart(flat, begin, head.delimiter, point, roles, count)
-        return cls(file.name, data, columns.line + 1, lines, kinds, decimal)
-
-    def text(self, a: int, b: int) -> str:
-        """Some bytes as text."""
-        return self.data[a:b].decode("utf-8", "replace")
-
-    def words(self, kind: str | int) -> list[str]:
-        """The distinct words of a column."""
-        place = self.kinds.get(kind)
-        if place is None:
-            return []
-        return [self.text(int(a), int(b)) for a, b in self.lines.vocabulary[place]]
-
-    def numbers(self, slot: int) -> NDArray[np.float64]:
-        """A column of numbers; what the kernel could not read is read as in any table."""
-        value = self.lines.value[:, slot]
-        for i in np.flatnonzero(self.lines.number_state[:, slot] == 2).tolist():
-            a, b = self.lines.number_span[i, 2 * slot : 2 * slot + 2]
-            number = number_of(self.text(int(a), int(b)), self.decimal)
-            value[i] = np.nan if number is None else number
-        return value
-
-
 def _of_account(
-    big: _Big, columns: Columns, answers: Answers, where: str
-) -> tuple[NDArray[np.bool_], tuple[str, ...]]:
-    """Which lines are the account's; asks where the file holds several."""
+    big: Taken, columns: Columns, answers: Answers, where: str
+) -> tuple[Byte, tuple[str, ...]]:
+    """1 for lines that are the account's; asks where the file holds several."""
     own = big.lines.state == FULL
     for k in columns.accounts:
         words = big.words(k)
@@ -241,13 +174,13 @@ def _of_account(
         if not hits:
             raise UnreadableBills("no line belongs to what rows names", where=where,
                                   wanted="one of " + ", ".join(shown[:12]))  # fmt: skip
-        kept = own & np.isin(big.lines.words[:, big.kinds[k]], hits)
+        kept = own & np.isin(big.lines.word[:, big.kinds[k]], hits)
         other = int(own.sum() - kept.sum())
-        return kept, (f"{several(other, 'line')} of other accounts or meters",)
-    return own, ()
+        return kept.view(np.uint8), (f"{several(other, 'line')} of other accounts or meters",)
+    return own.view(np.uint8), ()
 
 
-def _unit_rows(big: _Big, columns: Columns) -> list[RawRow]:
+def _unit_rows(big: Taken, columns: Columns) -> list[RawRow]:
     """One row for each unit that the file names."""
     k = columns.get("unit")
     if k is None:
@@ -257,22 +190,24 @@ def _unit_rows(big: _Big, columns: Columns) -> list[RawRow]:
     return [RawRow(0, (*blank, word)) for word in known]
 
 
-def _estimated(big: _Big, columns: Columns) -> NDArray[np.int64]:
+def _estimated(big: Taken, columns: Columns) -> NDArray[np.int64]:
     k = columns.get("estimated")
     marks = [int(bool(is_estimated(w, columns.headings[k or 0]))) for w in big.words("estimated")]
     if k is None or not any(marks):
-        return np.zeros(big.lines.state.shape, np.int64)
-    number = big.lines.words[:, big.kinds["estimated"]]
+        return np.zeros(1, np.int64)
+    number = big.lines.word[:, big.kinds["estimated"]]
     return np.where(number >= 0, np.array([*marks, 0])[number], 0)
 
 
-def _once(moments: Moments, use: NDArray[np.float64], keep: NDArray[np.bool_]) -> int:
+def _once(moments: Moments, use: NDArray[np.float64], keep: NDArray[np.uint8]) -> int:
     """Drop from ``keep`` lines that repeat another to the letter; returns how many.
 
     On a day of 25 hours an hour is there twice by right, so only what goes beyond is dropped.
     """
+    if moments.rising:
+        return 0
     some = np.flatnonzero(keep)
-    if np.all(np.diff(moments.local[some]) > 0):
+    if some.size == 0 or np.all(np.diff(moments.local[some]) > 0):
         return 0
     order = some[np.lexsort((use[some], moments.offset[some], moments.local[some]))]
     a, b = order[:-1], order[1:]
@@ -282,32 +217,62 @@ def _once(moments: Moments, use: NDArray[np.float64], keep: NDArray[np.bool_]) -
     days = moments.local[order] // DAY - int(moments.local[order[0]]) // DAY
     covered = np.bincount(days)[days] * moments.step
     same &= covered != DAY + 3600
-    keep[order[same]] = False
+    keep[order[same]] = 0
     return int(same.sum())
 
 
-def _summed(
-    big: _Big, moments: Moments, own: NDArray[np.bool_], use: NDArray[np.float64],
-    cost: NDArray[np.float64], guessed: NDArray[np.int64],
-) -> tuple[tuple[BillRow, ...], list[str]]:  # fmt: skip
-    keep = own & moments.known & (np.abs(use) < 1e12)
-    unread = np.flatnonzero(((big.lines.state != BLANK) & own & ~keep) | (big.lines.state == 2))
-    repeated = _once(moments, use, keep)
-    if not np.any(keep):
-        raise NoBills("no line has both a time and a number", where=big.name)
-    line = np.flatnonzero(keep) + big.first
-    local = moments.local
-    if line.size < keep.size:
-        local, use, cost, guessed = local[keep], use[keep], cost[keep], guessed[keep]
+def _summed(r: _Readings, taken: Taken) -> tuple[DayRows, list[str]]:
+    """One row for each local day, and sentences."""
+    moments, keep = r.moments, np.empty(r.use.shape, np.uint8)
+    if keep_lines(r.state, moments.known, r.own, r.use, MOST_USE, keep) == 0:
+        raise NoBills("no line has both a time and a number", where=taken.name)
+    unread = _unread(r, keep)
+    repeated = _once(moments, r.use, keep)
+    _drop_unreal(moments, r.use, keep)
     rows, notes = day_rows(
-        big.name, local, np.full(line.size, moments.step, np.int64), use, cost, line, guessed,
-        clock=moments.clock, length=moments.lengths(keep),
+        taken.name, moments.local, np.full(1, moments.step), r.use, r.cost, r.line, r.guessed,
+        keep=keep, offset=moments.offset if moments.zoned else None, clock=moments.clock,
+        room=r.room,
     )  # fmt: skip
     if unread.size:
         notes.append(
             f"passed over: {several(unread.size, 'line')} without a time and a number, or with "
-            f"more cells than the header (first on line {int(unread[0]) + big.first})"
+            f"more cells than the header (first on line {int(unread[0]) + taken.first})"
         )
     if repeated:
-        notes.append(f"repeated to the letter and counted once: {several(repeated, 'line')}")
-    return rows, notes
+        what = "line" if r.width == 1 else "reading"
+        notes.append(f"repeated to the letter and counted once: {several(repeated, what)}")
+    return rows, [*notes, *_long_days(r, rows)]
+
+
+def _unread(r: _Readings, keep: Byte) -> NDArray[np.intp]:
+    """Lines of which nothing was kept, though they hold something."""
+    if np.all(keep):
+        return np.empty(0, np.intp)
+    kept = keep.reshape(-1, r.width).any(axis=1)
+    state, own = r.state[:: r.width], r.own[:: r.width]
+    return np.flatnonzero(((own == 1) & ~kept & (state != BLANK)) | (state == TOO_WIDE))
+
+
+def _drop_unreal(moments: Moments, use: Float, keep: Byte) -> None:
+    """Drop readings of nothing in the hour that clocks leap over, which a file may write as 0."""
+    clock = moments.clock
+    if clock is None or moments.zoned:
+        return
+    leap = np.flatnonzero(np.diff(clock.offset) > 0)
+    begin, end = (clock.since[leap] + clock.offset[leap + k] for k in (0, 1))
+    at = np.searchsorted(begin, moments.local, side="right") - 1
+    keep[(at >= 0) & (moments.local < end[at]) & (use == 0)] = 0
+
+
+def _long_days(r: _Readings, rows: DayRows) -> list[str]:
+    """A sentence on days of 25 hours in a file that has room for 24."""
+    if r.room is None or r.moments.clock is None:
+        return []
+    days = int(np.count_nonzero(r.moments.clock.seconds_of_day(rows.sums.day) > r.room))
+    if days == 0:
+        return []
+    return [
+        f"{several(days, 'day')} of 25 hours in a file with room for 24: the hour that comes "
+        "twice is added to its namesake, or lost; the file does not say"
+    ]

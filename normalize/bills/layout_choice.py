@@ -12,8 +12,8 @@ from dataclasses import dataclass
 from normalize.bills import records as rec
 from normalize.bills.columns import Columns, answer
 from normalize.bills.dates import read_written
+from normalize.bills.groups import cell
 from normalize.bills.repair import Kind
-from normalize.bills.select import cell
 from normalize.bills.table import RawRow
 from normalize.errors import AmbiguousBills, BillError, UnreadableBills
 

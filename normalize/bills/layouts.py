@@ -22,6 +22,8 @@ REOPENS = (
     "opens the record again: the {event} on line {line} cannot be used, so what this one "
     "measures began at an unknown date"
 )
+ENDS_EXCLUSIVE = "an end date is the day of the reading, not itself in the bill"
+ENDS_INCLUSIVE = "an end date is the last day of the bill"
 DAILY_LINES = 10  # fewer lines a day apart are no daily record (our own, no source)
 NOT_OPENED = {
     "reading": "an estimated reading before any actual one: it cannot open the record",
@@ -168,11 +170,16 @@ def settle_ends(records: Sequence[Record], *, said: str | None, where: str) -> s
     """
     inclusive, why = _ends_are_inclusive(records, said, where)
     if not inclusive:
-        return f"an end date is the day of the reading, not itself in the bill{why}"
+        return f"{ENDS_EXCLUSIVE}{why}"
     for record in records:
         if record.end is not None:
             record.end += 1
-    return f"an end date is the last day of the bill{why}"
+    return f"{ENDS_INCLUSIVE}{why}"
+
+
+def ends_inclusive(sentence: str) -> bool | None:
+    """What a sentence of settle_ends says; None where nothing hung on it or it was an answer."""
+    return {ENDS_INCLUSIVE: True, ENDS_EXCLUSIVE: False}.get(sentence)
 
 
 def _ends_are_inclusive(

@@ -14,15 +14,17 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from normalize.bills.interval_kernel import add_days
+from normalize.bills.interval_sums import add_days, day_lengths, span_of
 from normalize.days import FIRST_SANE_DAY, LAST_SANE_DAY, date_of, day_of
 from normalize.errors import BillError
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    Int = NDArray[np.int32]
     Long = NDArray[np.int64]
     Float = NDArray[np.float64]
+    Byte = NDArray[np.uint8]
 
 DAY = 86_400  # seconds
 _FIRST_YEAR, _LAST_YEAR = 1970, 2099
@@ -181,15 +183,16 @@ class DaySums:
     """Readings summed to local days.
 
     day : (n,) int64.  use, cost : (n,), cost NaN where no reading of the day had one.
-    line : (n,) that of the day's first reading.  estimated : (n,) how many readings of the day
-    are estimates.  missing : (n,) seconds of the day without a reading.  twice : (n,) seconds
-    that are there more than once.
+    line : (n,) that of the day's first reading.  count : (n,) its readings, estimated : how many
+    of them are estimates.  missing : (n,) seconds of the day without a reading.  twice : (n,)
+    seconds that are there more than once.
     """
 
     day: Long
     use: Float
     cost: Float
     line: Long
+    count: Long
     estimated: Long
     missing: Long
     twice: Long
@@ -197,14 +200,17 @@ class DaySums:
 
 def sum_days(
     local: Long, seconds: Long, use: Float, cost: Float, line: Long, estimated: Long,
-    *, length: Long | None = None, clock: Clock | None = None,
+    *, keep: Byte | None = None, offset: Int | None = None, clock: Clock | None = None,
+    room: int | None = None,
 ) -> DaySums:  # fmt: skip
     """Sum readings to the local days in which they begin.
 
-    local : (n,) local seconds of each reading's start.  seconds : (n,) its duration.
-    length : seconds of each day from the first to the last reading's, where the file says its
-    own offsets; clock : where it is known.  With neither, a day of 23 or 25 hours passes as
-    whole where clocks can have changed: on a Sunday of March, April or September to November.
+    local, use : (n,) local seconds of each reading's start, and its use.  seconds, cost,
+    estimated : (n,), or (1,) where it is the same for all.  line : (n,), or (1,) that of the
+    first.  keep : (n,) 1 for readings that count.  offset : (n,) from UTC, where the file says
+    its own; clock : where it is known.  With neither, a day of 23 or 25 hours passes as whole
+    where clocks can have changed: on a Sunday of March, April or September to November.
+    room : seconds of a day beyond which the file has no place for readings.
 
     >>> hours = np.arange(24) * 3600
     >>> one = np.ones(24)
@@ -214,30 +220,35 @@ def sum_days(
     arrays = (np.ascontiguousarray(a, np.int64) for a in (local, seconds, line, estimated))
     local, seconds, line, estimated = arrays
     use, cost = np.ascontiguousarray(use, np.float64), np.ascontiguousarray(cost, np.float64)
-    sane = (local >= FIRST_SANE_DAY * DAY) & (local < (LAST_SANE_DAY + 1) * DAY) & np.isfinite(use)
-    if not np.all(sane):
-        local, seconds, use, cost = local[sane], seconds[sane], use[sane], cost[sane]
-        line, estimated = line[sane], estimated[sane]
-    if local.size == 0:
+    if keep is None:
+        keep = np.isfinite(use).astype(np.uint8)
+    low, high = span_of(local, keep, FIRST_SANE_DAY * DAY, (LAST_SANE_DAY + 1) * DAY)
+    if low > high:
         none = np.empty(0, np.int64)
-        return DaySums(none, np.empty(0), np.empty(0), none, none, none, none)
-    first = int(local.min()) // DAY
-    size = int(local.max()) // DAY - first + 1
+        return DaySums(none, np.empty(0), np.empty(0), none, none, none, none, none)
+    first, size = low // DAY, high // DAY - low // DAY + 1
     count, covered, priced, top, guessed = (np.zeros(size, np.int64) for _ in range(5))
     total, money = np.zeros(size), np.zeros(size)
     add_days(
-        local, seconds, use, cost, line, estimated, first,
+        local, keep, seconds, use, cost, line, estimated, first,
         count, covered, total, money, priced, top, guessed,
     )  # fmt: skip
     there = np.flatnonzero(count)
-    days = (there + first).astype(np.int64)
-    covered = covered[there]
-    full = _lengths(days, covered, clock) if length is None else length
+    days, covered = (there + first).astype(np.int64), covered[there]
+    if offset is not None and clock is None:
+        full, early, late = (np.zeros(size, np.int64) for _ in range(3))
+        day_lengths(local, offset, keep, first, early, late, full)
+        full = full[there]
+    else:
+        full = _lengths(days, covered, clock)
+    if room is not None:
+        full = np.minimum(full, room)
     return DaySums(
         day=days,
         use=total[there],
         cost=np.where(priced[there] > 0, money[there], np.nan),
         line=top[there],
+        count=count[there],
         estimated=guessed[there],
         missing=np.maximum(0, full - covered),
         twice=np.maximum(0, covered - full),

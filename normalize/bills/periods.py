@@ -6,6 +6,7 @@ reading dated *d* is the meter as it stood at the start of day *d*.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
@@ -85,6 +86,21 @@ class Periods:
 
 
 @dataclass(frozen=True, slots=True)
+class Spans:
+    """The periods of bills, to which days are to be summed.
+
+    start, end : (n,) int64 day numbers, half-open, in order, never overlapping.  use, cost : (n,)
+    as billed, NaN where not known; use in the unit of the days.  source : whose periods they are.
+    """
+
+    start: NDArray[np.int64]
+    end: NDArray[np.int64]
+    use: NDArray[np.float64]
+    cost: NDArray[np.float64]
+    source: str
+
+
+@dataclass(frozen=True, slots=True)
 class Flag:
     """Something odd about a period, left as it is. period : from 1.  what : a code's name.
 
@@ -102,6 +118,7 @@ class Bills:
     """One account's bills: rows, periods and the ledger that connects them.
 
     fuel, unit : canonical names from ``normalize.units``.
+    rows, ledger : tuples; of interval files, sequences whose items are made when looked at.
     source : file names with their SHA-256, for the report's list of inputs.
     reading : how the file was understood, as short sentences ("usage from column 'kWh'").
     kind : "meter" for read meters, "delivery" for dealer deliveries.
@@ -114,9 +131,9 @@ class Bills:
     account: str
     fuel: str
     unit: str
-    rows: tuple[BillRow, ...]
+    rows: Sequence[BillRow]
     periods: Periods
-    ledger: tuple[LedgerEntry, ...]
+    ledger: Sequence[LedgerEntry]
     source: tuple[tuple[str, str], ...] = ()
     reading: tuple[str, ...] = ()
     kind: str = "meter"

@@ -32,9 +32,9 @@ from normalize.bills.dates import (
     read_written,
     settle,
 )
+from normalize.bills.groups import cell
 from normalize.bills.headings import Heading
 from normalize.bills.layouts import Record
-from normalize.bills.select import cell
 from normalize.bills.table import Cell, RawRow, RawTable
 from normalize.bills.vocabulary import (
     CELSIUS,
@@ -165,6 +165,31 @@ def decide_order(
         where=where,
         next_step=answer("dates", "month first", "day first"),
     )
+
+
+@dataclass(frozen=True, slots=True)
+class Proven:
+    """What all lines of a file prove, whoever they belong to; None where they prove nothing."""
+
+    dates: Order | None = None
+    decimal: Decimal | None = None
+
+
+def settled_by_all(table: RawTable, columns: Columns, body: Sequence[RawRow]) -> Proven:
+    """The order of dates and the decimal mark, from every line of a file of several accounts."""
+    dates = [
+        read_written(text, epoch_1904=table.epoch_1904)
+        for role in ("start", "end", "read", "delivery", "bill date", "range")
+        if (k := columns.get(role)) is not None
+        for row in body
+        for text in (split_range(cell(row, k)) or (cell(row, k),))
+    ]
+    order = order_by_values(dates)
+    used = [columns.get(role) for role in ("usage", "cost", "temperature", "days")]
+    try:
+        return Proven(order, how_numbers_are_written(table, body, used, None).decimal)
+    except AmbiguousBills:
+        return Proven(order)
 
 
 def put_dates(

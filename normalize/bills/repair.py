@@ -9,11 +9,13 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from functools import partial
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
 from normalize.bills import rules
+from normalize.bills.day_rows import DayLedger, DayRows
 from normalize.bills.periods import BillRow, Bills, LedgerEntry, Periods
 from normalize.bills.repair_join import repair_accounts
 from normalize.errors import BillError
@@ -122,7 +124,7 @@ def _check_shapes(n: int, arrays: Sequence[NDArray[np.generic]], bounds: NDArray
 
 def repair(
     rows: Sequence[BillRow], *, kind: Kind = "meter", net_metered: bool = False
-) -> tuple[Periods, tuple[LedgerEntry, ...]]:
+) -> tuple[Periods, Sequence[LedgerEntry]]:
     """Repair one account's rows; the ledger has one entry per row, in the rows' order.
 
     kind : "delivery" reads ``estimated`` as a partial fill and adds deliveries of one day.
@@ -133,6 +135,8 @@ def repair(
     >>> periods.n, ledger[0].note
     (1, 'the same bill as line 2')
     """
+    if isinstance(rows, DayRows):
+        return _repair_days(rows, kind, net_metered=net_metered)
     good = [row for row in rows if _usable(row)]
     batch = repair_batch(
         _days([row.start for row in good]),
@@ -146,6 +150,21 @@ def repair(
         net_metered=net_metered,
     )
     return _periods(batch), tuple(_fates(rows, batch, [row.line for row in good], kind))
+
+
+def _repair_days(
+    rows: DayRows, kind: Kind, *, net_metered: bool
+) -> tuple[Periods, Sequence[LedgerEntry]]:
+    """The same for days, whose rows are arrays already."""
+    s, good = rows.sums, rows.usable
+    day = s.day[good]
+    batch = repair_batch(
+        day, day + 1, s.use[good], s.cost[good], np.zeros(day.shape, np.bool_), [0, day.size],
+        delivery=kind == "delivery", net_metered=net_metered,
+    )  # fmt: skip
+    place = np.where(good, np.cumsum(good) - 1, -1)
+    entry = partial(_entry, batch=batch, lines=s.line[good], kind=kind)
+    return _periods(batch), DayLedger(rows, place, batch.fate, entry)
 
 
 def _fates(
@@ -163,7 +182,7 @@ def _fates(
         if plain[i]:
             yield LedgerEntry(row.file, row.line, names[i], row.note)
         else:
-            yield _entry(row, batch, i, lines, kind)
+            yield _entry(row, i, batch=batch, lines=lines, kind=kind)
         i += 1
 
 
@@ -200,9 +219,12 @@ def _periods(batch: RepairedBatch) -> Periods:
     )
 
 
-def _entry(row: BillRow, batch: RepairedBatch, i: int, lines: list[int], kind: Kind) -> LedgerEntry:
+def _entry(
+    row: BillRow, i: int, *, batch: RepairedBatch, lines: Sequence[int] | NDArray[np.int64],
+    kind: Kind,
+) -> LedgerEntry:  # fmt: skip
     partner = int(batch.other[i])
-    other = lines[partner] if partner >= 0 else 0
+    other = int(lines[partner]) if partner >= 0 else 0
     if batch.fate[i] < 0:
         code = int(batch.reason[i])
         words = rules.REASONS[code]
@@ -223,27 +245,33 @@ def reconcile(bills: Bills) -> None:
     periods = bills.periods
     if len(bills.rows) != len(bills.ledger):
         raise _does_not_add_up(bills, f"{len(bills.rows)} rows but {len(bills.ledger)} fates")
-    sums = np.zeros(periods.n)
-    sizes = np.zeros(periods.n)
-    seen = np.zeros(periods.n, np.bool_)
-    for row, entry in zip(bills.rows, bills.ledger, strict=True):
+    fates, uses = _fates_and_uses(bills)
+    counted = fates >= 0
+    sums = np.bincount(fates[counted], uses[counted], minlength=periods.n)
+    sizes = np.bincount(fates[counted], np.abs(uses[counted]), minlength=periods.n)
+    if np.any(np.bincount(fates[counted], minlength=periods.n) == 0):
+        raise _does_not_add_up(bills, "a period has no bill")
+    if np.any(np.abs(sums - periods.use) > 1e-9 * np.maximum(sizes, 1.0)):
+        raise _does_not_add_up(bills, "usage of rows and of periods differs")
+    if np.any(periods.start[1:] < periods.end[:-1]) or np.any(periods.days <= 0):
+        raise _does_not_add_up(bills, "periods overlap")
+
+
+def _fates_and_uses(bills: Bills) -> tuple[NDArray[np.int64], NDArray[np.float64]]:
+    """Each row's period from 0 (-1 for left out) and its use.  Raises BillError."""
+    if isinstance(bills.rows, DayRows) and isinstance(bills.ledger, DayLedger):
+        return bills.ledger.fates, bills.rows.sums.use
+    fates, uses = np.full(len(bills.rows), -1, np.int64), np.zeros(len(bills.rows))
+    for k, (row, entry) in enumerate(zip(bills.rows, bills.ledger, strict=True)):
         if (row.file, row.line) != (entry.file, entry.line):
             raise _does_not_add_up(bills, f"line {row.line} is entered as line {entry.line}")
         if entry.fate == "left out":
             if not entry.note:
                 raise _does_not_add_up(bills, f"line {row.line} is left out without a reason")
             continue
-        k = int(entry.fate.removeprefix("period ")) - 1
-        use = 0.0 if row.use is None else row.use
-        sums[k] += use
-        sizes[k] += abs(use)
-        seen[k] = True
-    if not np.all(seen):
-        raise _does_not_add_up(bills, "a period has no bill")
-    if np.any(np.abs(sums - periods.use) > 1e-9 * np.maximum(sizes, 1.0)):
-        raise _does_not_add_up(bills, "usage of rows and of periods differs")
-    if np.any(periods.start[1:] < periods.end[:-1]) or np.any(periods.days <= 0):
-        raise _does_not_add_up(bills, "periods overlap")
+        fates[k] = int(entry.fate.removeprefix("period ")) - 1
+        uses[k] = 0.0 if row.use is None else row.use
+    return fates, uses
 
 
 def _does_not_add_up(bills: Bills, what: str) -> BillError:

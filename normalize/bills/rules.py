@@ -49,6 +49,13 @@ MAX_TANGLE = 500  # rows that all overlap, or share one period: more is a fault 
 ROLLOVER_TIMES = 3.0
 DIAL_DIGITS = (3, 9)  # fewest and most digits of a register (common practice, no source)
 
+# An interval or a day is a small thing to estimate; a day or period of which so much was estimated
+# is more guess than reading, and says so in the ledger (our own, no source).
+ESTIMATED_SHARE = 0.25
+# Readings of a period against its bill: a day's use more or less, when the meter was read at noon,
+# is 3 % of a month (our own, no source).
+SUM_MISMATCH = 0.05
+
 # Solar panels, by their signature: electricity that all but vanishes in sunny months of the
 # northern half of the earth.  An occupied house always runs a refrigerator (our own, no source).
 DARK_MONTHS = (11, 12, 1, 2)

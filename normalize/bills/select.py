@@ -7,36 +7,30 @@ and units of one file apart.  Lines of different accounts are split or asked abo
 from __future__ import annotations
 
 from collections.abc import Sequence
-from itertools import pairwise
 
 from normalize.bills.amounts import as_text, is_blank
-from normalize.bills.columns import Columns, answer
-from normalize.bills.dates import ORDERS, read_written, settle
+from normalize.bills.columns import Columns
+from normalize.bills.groups import (
+    NO_NUMBER,
+    Group,
+    answers_that_choose,
+    cell,
+    fuel_named,
+    group_lines,
+    labels,
+    masked,
+    named,
+    plain,
+)
 from normalize.bills.headings import squeeze
-from normalize.bills.table import Cell, RawRow
+from normalize.bills.sum_rows import several
+from normalize.bills.table import RawRow
 from normalize.bills.vocabulary import TOTALS
 from normalize.errors import AmbiguousBills, BillError, UnknownUnit, UnreadableBills
-from normalize.units import canonical_fuel, canonical_unit
+from normalize.units import canonical_unit
 
-SURE_METER_LINES = 2  # of each meter, before a replacement is believed (our own, no source)
-_SERVICE_WORDS = {
-    "usage",
-    "use",
-    "service",
-    "consumption",
-    "delivery",
-    "meter",
-    "account",
-    "billing",
-}
+MOST_CHOICES = 12  # shown in a question
 _DATE_ROLES = ("start", "end", "read", "range", "delivery", "bill date", "year", "month")
-
-
-def cell(row: RawRow, column: int | None) -> Cell:
-    """The cell of a column; None beyond the row's end."""
-    if column is None or column >= len(row.cells):
-        return None
-    return row.cells[column]
 
 
 def without_remarks(
@@ -113,148 +107,121 @@ def select_rows(
     """
     before = len(body)
     if rows is not None:
-        body = _named_rows(columns, body, str(rows), where)
-    if fuel is not None and (k := columns.get("fuel")) is not None:
-        body = _of_fuel(body, k, fuel, where)
-    if (k := columns.get("unit")) is not None:
-        body = _of_unit(body, k, fuel, unit)
-    notes: tuple[str, ...] = ()
-    if rows is None:
-        for k in (columns.get("fuel"), columns.get("unit"), *columns.accounts):
-            if k is None:
-                continue
-            if "meter" in columns.headings[k].words and _succeed(columns, body, k):
-                notes = ("the meter was replaced: one follows the other, without overlap",)
-            else:
-                _ask_if_several(columns, body, k, where)
-    left = before - len(body)
+        body, rows = _in_named_unit(columns, body, str(rows), where)
+    found = group_lines(columns, body, fuel=fuel)
+    chosen = _named(columns, found.accounts, rows, where) if rows else list(found.accounts)
+    if not chosen and body:
+        raise _none_left(columns, body, fuel, where)
+    if len(chosen) > 1:
+        raise ask_which(chosen, where)
+    group = chosen[0] if chosen else Group((), "", ())
+    kept = lines_of_unit(columns, group, fuel=fuel, unit=unit)
+    notes = group.notes
+    nobodys = sum(1 for _, why in found.nobodys if why == NO_NUMBER)
+    left = before - len(kept) - nobodys
     if left:
-        notes += (f"{left} lines belong to other accounts, fuels or units",)
-    return body, notes
+        verb = "belongs" if left == 1 else "belong"
+        notes += (f"{several(left, 'line')} {verb} to other accounts, fuels or units",)
+    if nobodys:
+        notes += (f"{several(nobodys, 'line')} left out: {NO_NUMBER}",)
+    return kept, notes
 
 
-def _succeed(columns: Columns, body: list[RawRow], k: int) -> bool:
-    """Whether meters follow each other in time, as when one is replaced by another."""
-    when = next((c for r in ("end", "read", "start") if (c := columns.get(r)) is not None), None)
-    meters = list(dict.fromkeys(squeeze(_plain(cell(row, k))) for row in body))
-    if when is None or not 2 <= len(meters) <= 4 or "" in meters:
-        return False
-    written = [read_written(cell(row, when)) for row in body]
-    answers = []
-    for order in ORDERS[:2]:
-        days: dict[str, list[int]] = {m: [] for m in meters}
-        for row, one in zip(body, written, strict=True):
-            day, _ = settle(one, order)
-            if day is not None:
-                days[squeeze(_plain(cell(row, k)))].append(day)
-        if all(len(d) >= SURE_METER_LINES for d in days.values()):
-            spans = sorted((min(d), max(d)) for d in days.values())
-            answers.append(all(a[1] <= b[0] for a, b in pairwise(spans)))
-    return bool(answers) and all(answers)
+def _none_left(columns: Columns, body: Sequence[RawRow], fuel: str | None, where: str) -> BillError:
+    """Not a line is of the fuel that was given, or of any fuel."""
+    if fuel is not None:
+        return UnreadableBills(
+            f"no line is of {fuel}", where=where, next_step="Check the fuel of the account."
+        )
+    texts = dict.fromkeys(as_text(cell(row, columns.get("fuel"))) for row in body)
+    try:
+        for text in texts:
+            fuel_named(text, where=where)
+    except BillError as err:
+        return err
+    return UnreadableBills("no line says whose it is", where=where)
 
 
-def _named_rows(columns: Columns, body: list[RawRow], rows: str, where: str) -> list[RawRow]:
-    wanted = squeeze(rows)
-    keys = [*columns.accounts]
-    keys += [k for role in ("fuel", "unit") if (k := columns.get(role)) is not None]
-    if not keys:
+def _in_named_unit(
+    columns: Columns, body: list[RawRow], rows: str, where: str
+) -> tuple[list[RawRow], str | None]:
+    """Lines in the unit that ``rows`` names; else all of them, and rows still to be looked for."""
+    keys = [k for role in ("fuel", "unit") if (k := columns.get(role)) is not None]
+    if not keys and not columns.accounts:
         raise UnreadableBills(
             "rows was given, but the file has no column of accounts, meters or fuels",
             where=where,
             next_step="Leave out rows.",
         )
-    kept = [row for row in body if any(_is(cell(row, k), wanted) for k in keys)]
-    if not kept:
-        seen = {masked(cell(row, k)) for row in body for k in keys} - {""}
-        raise UnreadableBills(
-            "no line belongs to what rows names",
-            where=where,
-            wanted="one of " + ", ".join(sorted(seen)[:12]),
-        )
-    return kept
+    k, wanted = columns.get("unit"), squeeze(rows)
+    kept = [row for row in body if squeeze(plain(cell(row, k))) == wanted] if wanted else []
+    return (kept, None) if kept else (body, rows)
 
 
-def _is(value: Cell, wanted: str) -> bool:
-    text = squeeze(_plain(value))
-    return text == wanted or (len(wanted) >= 4 and text.endswith(wanted))
+def _named(columns: Columns, groups: Sequence[Group], rows: str, where: str) -> list[Group]:
+    found = named(groups, rows)
+    if not found and columns.get("fuel") is not None:
+        try:
+            fuel = fuel_named(rows)
+        except BillError:
+            fuel = ""
+        found = [g for g in groups if fuel and g.fuel == fuel]
+    if found:
+        return found
+    seen = {label for g in groups for label in (*map(masked, g.names), g.fuel)} - {""}
+    raise UnreadableBills(
+        "no line belongs to what rows names",
+        where=where,
+        wanted="one of " + ", ".join(sorted(seen)[:MOST_CHOICES]),
+    )
 
 
-def _plain(value: Cell) -> str:
-    """An account number as text, also where a spreadsheet made it a number."""
-    if isinstance(value, float) and value == int(value):
-        return str(int(value))
-    return as_text(value)
-
-
-def masked(value: Cell) -> str:
-    """An account or meter for a message: its last four characters.
-
-    >>> masked("0012345678")
-    '…5678'
-    """
-    text = _plain(value)
-    if any(c.isdigit() for c in text) and len(text) > 4:
-        return "…" + text[-4:]
-    return text if len(text) <= 20 else "…" + text[-4:]
-
-
-def _of_fuel(body: list[RawRow], k: int, fuel: str, where: str) -> list[RawRow]:
-    kept = [row for row in body if is_blank(cell(row, k)) or _fuel_of(cell(row, k)) == fuel]
-    if not kept:
-        raise UnreadableBills(
-            f"no line is of {fuel}", where=where, next_step="Check the fuel of the account."
-        )
-    return kept
-
-
-def fuel_named(text: str, *, where: str = "") -> str:
-    """The fuel that a cell names, also as "Electric usage" or "Gas service".
-
-    >>> fuel_named("Natural gas usage")
-    'natural gas'
-    """
-    words = [w for w in text.split() if w.lower().strip(".,:") not in _SERVICE_WORDS]
-    return canonical_fuel(" ".join(words) or text, where=where)
-
-
-def _fuel_of(value: Cell) -> str:
-    try:
-        return fuel_named(as_text(value))
-    except BillError:
-        return ""  # water, sewer, rubbish: another service on the same bill
-
-
-def _of_unit(body: list[RawRow], k: int, fuel: str | None, unit: str | None) -> list[RawRow]:
+def lines_of_unit(
+    columns: Columns, group: Group, *, fuel: str | None, unit: str | None
+) -> list[RawRow]:
     """Lines in the wanted unit, or else in any unit of the fuel (not its demand in kW)."""
-    units = {row.line: _unit_of(cell(row, k), fuel) for row in body}
+    k = columns.get("unit")
+    if k is None:
+        return list(group.rows)
+    texts = {as_text(cell(row, k)) for row in group.rows}
+    units = {text: _unit_of(text, fuel or group.fuel or None) for text in texts}
     wanted = {unit} if unit is not None and unit in units.values() else set(units.values()) - {""}
     if not wanted:
-        return body
-    return [row for row in body if units[row.line] in wanted or is_blank(cell(row, k))]
+        return list(group.rows)
+    return [
+        row
+        for row in group.rows
+        if is_blank(cell(row, k)) or units[as_text(cell(row, k))] in wanted
+    ]
 
 
-def _unit_of(value: Cell, fuel: str | None) -> str:
-    if is_blank(value):
+def _unit_of(text: str, fuel: str | None) -> str:
+    if is_blank(text):
         return ""
     try:
-        return canonical_unit(as_text(value), fuel)
+        return canonical_unit(text, fuel)
     except UnknownUnit:
         return ""
 
 
-def _ask_if_several(columns: Columns, body: list[RawRow], k: int, where: str) -> None:
-    values = {squeeze(_plain(cell(row, k))): cell(row, k) for row in body}
-    values.pop("", None)
-    if len(values) < 2:
-        return
-    dated = sum(1 for v in values.values() if read_written(v).parts is not None)
-    if dated == len(values):  # a "Meter" column of dates is no column of meters
-        return
-    shown = sorted({masked(v) for v in values.values()})
-    raise AmbiguousBills(
-        f"column {columns.headings[k].text!r} tells {len(values)} accounts, meters or fuels "
-        f"apart ({', '.join(shown[:8])})",
+def ask_which(groups: Sequence[Group], where: str) -> AmbiguousBills:
+    """The question of a file of several accounts: every choice, each with its line."""
+    choices = []
+    for lines in answers_that_choose(groups):
+        text = " and ".join(f'{key} = "{value}"' for key, value in lines.items())
+        if text and text not in choices:
+            choices.append(text)
+    fuels = {g.fuel for g in groups}
+    what = "fuels" if len(fuels) == len(groups) else "accounts, meters or fuels"
+    shown = labels(groups[:MOST_CHOICES])
+    more = f" and {len(groups) - len(shown)} more" if len(groups) > len(shown) else ""
+    first = " or ".join(choices[:MOST_CHOICES])
+    return AmbiguousBills(
+        f"the file holds {len(groups)} {what} ({', '.join(shown)}{more})",
         where=where,
         wanted="to know which is meant, for they are never added up",
-        next_step=answer("rows", shown[0].lstrip("…"), shown[1].lstrip("…") if shown[1:] else "…"),
-    )
+        next_step=(f"Put {first}{' or …' if more else ''} under [[account]] in site.toml, or use "
+                   "the option of that name; normalize bills shows all of them.")
+        if choices
+        else "Give them files of their own: nothing in the file tells them apart.",
+    )  # fmt: skip

@@ -1,49 +1,51 @@
-"""Sums over days and months as BillRows, for readings shorter than a bill.
+"""Sums over days as BillRows, for readings shorter than a day, and where months begin.
 
-What belongs here: which days are whole, what is said of those that are not, and days summed to
-months that begin on the day of the reading.
+What belongs here: which days are whole, and what is said of those that are not.  Days are summed
+further in period_sums.py.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from dataclasses import replace
 from datetime import date
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
+from normalize.bills.day_rows import DayRows
 from normalize.bills.local_days import DAY, Clock, spoken, sum_days
-from normalize.bills.periods import BillRow
-from normalize.days import date_of, day_of
+from normalize.days import day_of
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    Int = NDArray[np.int32]
     Long = NDArray[np.int64]
+    Byte = NDArray[np.uint8]
     Float = NDArray[np.float64]
 
-SumTo = Literal["day", "month"]
+SumTo = Literal["day", "month", "bill"]
 SHORT_READING = 20 * 3600  # seconds: anything shorter is summed to days (a day may have 23 h)
 
 
 def day_rows(
     name: str, local: Long, seconds: Long, use: Float, cost: Float, line: Long, estimated: Long,
-    *, clock: Clock | None = None, length: Long | None = None,
-) -> tuple[tuple[BillRow, ...], list[str]]:  # fmt: skip
-    """One BillRow for each local day, and sentences; a day with readings missing has a problem."""
-    s = sum_days(local, seconds, use, cost, line, estimated, length=length, clock=clock)
-    costs = [None if c != c else c for c in s.cost.tolist()]
-    columns = (s.line, s.day, s.use, s.missing, s.twice)
-    rows = tuple(
-        BillRow(name, n, day, day + 1, u, cost, False, None, _problem(gone, more))
-        for (n, day, u, gone, more), cost in zip(
-            zip(*(c.tolist() for c in columns), strict=True), costs, strict=True
-        )
-    )
+    *, keep: Byte | None = None, offset: Int | None = None, clock: Clock | None = None,
+    room: int | None = None,
+) -> tuple[DayRows, list[str]]:  # fmt: skip
+    """One row for each local day, and sentences; a day with readings missing has a problem.
+
+    Arguments as of sum_days.
+    """
+    s = sum_days(
+        local, seconds, use, cost, line, estimated,
+        keep=keep, offset=offset, clock=clock, room=room,
+    )  # fmt: skip
     step = int(np.median(seconds)) if seconds.size else 0
-    total = f"{several(s.day.size, 'local day')}"
-    notes = [f"{several(use.size, 'reading')} of {spoken(step)}, summed to {total}"]
+    readings = int(s.count.sum())
+    notes = [
+        f"{several(readings, 'reading')} of {spoken(step)}, summed to "
+        f"{several(s.day.size, 'local day')}"
+    ]
     if (bad := int(np.count_nonzero(s.missing))) > 0:
         gone = several(round(float(s.missing.sum()) / max(step, 1)), "reading")
         notes.append(f"left out: {several(bad, 'day')} from which {gone} are missing")
@@ -51,7 +53,7 @@ def day_rows(
         notes.append(f"left out: {several(doubled, 'day')} with readings twice")
     if (guessed := int(s.estimated.sum())) > 0:
         notes.append(f"estimates were used as they are: {several(guessed, 'reading')}")
-    return rows, notes
+    return DayRows(name, s, step), notes
 
 
 def several(count: int, word: str) -> str:
@@ -59,17 +61,11 @@ def several(count: int, word: str) -> str:
     return f"{count:,} {word}" + ("" if count == 1 else "s")
 
 
-def _problem(missing: int, twice: int) -> str:
-    if missing:
-        return f"readings of {spoken(missing)} are missing on this day"
-    return f"readings of {spoken(twice)} are there twice on this day" if twice else ""
-
-
 def month_edge(year: int, month: int, read_day: int) -> int:
     """The day of the reading in a month; the last day where the month is too short.
 
-    >>> date_of(month_edge(2023, 2, 31)).isoformat()
-    '2023-02-28'
+    >>> month_edge(2023, 2, 31) == day_of(date(2023, 2, 28))
+    True
     """
     year, month = year + (month - 1) // 12, (month - 1) % 12 + 1
     for day in range(min(read_day, 31), 27, -1):
@@ -80,29 +76,4 @@ def month_edge(year: int, month: int, read_day: int) -> int:
     return day_of(date(year, month, min(read_day, 27)))
 
 
-def months_of(rows: Sequence[BillRow], read_day: int) -> tuple[BillRow, ...]:
-    """Days summed to months that begin on ``read_day``; a month not whole has a problem."""
-    groups: dict[tuple[int, int], list[BillRow]] = {}
-    for row in rows:
-        if row.start is None:
-            continue
-        when = date_of(row.start)
-        low = month_edge(when.year, when.month, read_day)
-        first = when.month if row.start >= low else when.month - 1
-        begin = month_edge(when.year, first, read_day)
-        groups.setdefault((begin, month_edge(when.year, first + 1, read_day)), []).append(row)
-    return tuple(_month(begin, end, group) for (begin, end), group in sorted(groups.items()))
-
-
-def _month(begin: int, end: int, rows: Sequence[BillRow]) -> BillRow:
-    good = [r for r in rows if not r.problem]
-    lacking = end - begin - sum((r.end or 0) - (r.start or 0) for r in good)
-    costs = [r.cost for r in good if r.cost is not None]
-    problem = f"{lacking} of {end - begin} days are missing or not whole" if lacking > 0 else ""
-    return replace(
-        rows[0], start=begin, end=end, use=sum(r.use or 0.0 for r in good),
-        cost=sum(costs) if len(costs) == len(good) and costs else None, problem=problem,
-    )  # fmt: skip
-
-
-__all__ = ["DAY", "SHORT_READING", "SumTo", "day_rows", "month_edge", "months_of"]
+__all__ = ["DAY", "SHORT_READING", "SumTo", "day_rows", "month_edge", "several"]

@@ -23,11 +23,13 @@ Cell = str | int | float | date | None
 Score = Callable[[Sequence[Cell]], float]
 
 MAX_BYTES = 100_000_000  # of a bill file; a lifetime of monthly bills is some kilobytes
-MAX_ROWS = 200_000
+MAX_ROWS = 1_000_000  # three years of monthly bills of 25,000 accounts
+MAX_CELLS = 20_000_000  # in all: some GB of memory at the worst
 MAX_COLUMNS = 500
 MAX_LINE = 100_000  # characters of one line
 MAX_CELL = 5_000  # characters of one cell
 LIKELY_HEADER = 10.0  # score of a line with a date and an amount heading (our own, no source)
+COUNTED_BYTES = 1_000_000  # in which lines are counted, to tell a long file from a short one
 HEADER_LINES = 60  # a header is looked for in this many rows from the top
 
 _UTF16 = (b"\xff\xfe", b"\xfe\xff")
@@ -108,6 +110,19 @@ def read_table(file: BillFile, *, score: Score, sheet: str | None = None) -> Raw
     return RawTable(file.name, digest, rows, delimiter)
 
 
+def read_tables(file: BillFile, *, score: Score, sheet: str | None = None) -> list[RawTable]:
+    """A CSV as one table; of a workbook every sheet that looks like bills.
+
+    Raises UnreadableBills.
+    """
+    if sheet is not None or not file.data.startswith(b"PK"):
+        return [read_table(file, score=score, sheet=sheet)]
+    from normalize.bills.workbook import likely_sheets
+
+    names = likely_sheets(file.data, name=file.name, score=score)
+    return [read_table(file, score=score, sheet=name) for name in names]
+
+
 def _bytes_of(file: Path) -> bytes:
     try:
         info = file.stat()
@@ -144,7 +159,7 @@ def _bytes_of(file: Path) -> bytes:
 
 @dataclass(frozen=True, slots=True)
 class CsvHead:
-    """The first lines of a CSV, split. lines : of the whole file.  encoding : to read it with."""
+    """The first lines of a CSV, split. lines : of its first megabyte.  encoding : to read by."""
 
     rows: tuple[RawRow, ...]
     delimiter: str
@@ -157,7 +172,7 @@ def csv_head(file: BillFile, score: Score) -> CsvHead | None:
     data = file.data
     if data.startswith(b"PK") or (b"\0" in data[:4000] and not data.startswith(_UTF16)):
         return None
-    lines = data.count(b"\n")
+    lines = data.count(b"\n", 0, COUNTED_BYTES)
     sample = data[: 32 * 1024]
     if lines < 2 or b"\n" not in sample:
         return None
@@ -244,7 +259,7 @@ def _delimiter_of(text: str, score: Score) -> str:
 
 def _csv_rows(text: str, delimiter: str, name: str) -> Iterator[RawRow]:
     reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
-    before = 0
+    before = held = 0
     try:
         for count, cells in enumerate(reader):
             line, before = before + 1, reader.line_num
@@ -252,6 +267,9 @@ def _csv_rows(text: str, delimiter: str, name: str) -> Iterator[RawRow]:
                 raise _too_big(name, f"more than {MAX_ROWS:,} lines")
             if len(cells) > MAX_COLUMNS:
                 raise _too_big(name, f"a line ({line}) of more than {MAX_COLUMNS} columns")
+            held += len(cells)
+            if held > MAX_CELLS:
+                raise _too_big(name, f"more than {MAX_CELLS:,} cells")
             if any(len(cell) > MAX_CELL for cell in cells):
                 raise _too_big(name, f"a cell (line {line}) of more than {MAX_CELL:,} characters")
             if any(cell.strip() for cell in cells):
@@ -276,11 +294,13 @@ def choose_sheet(
     """The one sheet that looks like bills; asks when several do. found : (sheet, score)."""
     likely = [sheet for sheet, value in found if value >= good_enough]
     if len(likely) > 1:
-        names = ", ".join(repr(s[:40]) for s in likely[:8])
+        lines = " or ".join(f'sheet = "{s[:40]}"' for s in likely[:12])
+        more = " or …" if len(likely) > 12 else ""
         raise AmbiguousBills(
-            f"{len(likely)} sheets look like bills ({names})",
+            f"{len(likely)} sheets look like bills",
             where=name,
-            next_step=f'Name one: sheet = "{likely[0][:40]}" under [[account]] in site.toml, '
-            "or --sheet.",
+            wanted="to know which is meant, for they are never added up",
+            next_step=f"Put {lines}{more} under [[account]] in site.toml, or use --sheet; "
+            "normalize bills shows all of them.",
         )
     return likely[0] if likely else max(found, key=lambda pair: pair[1])[0]

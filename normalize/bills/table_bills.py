@@ -8,11 +8,12 @@ module: columns (roles) → select (lines of the account) → records (dates, nu
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from typing import Literal
 
 from normalize.bills import records as rec
 from normalize.bills.amounts import Decimal, number_of
-from normalize.bills.answers import Answers, Understood
+from normalize.bills.answers import ENOUGH_BILLS, ONE_BILL, Answers, Understood
 from normalize.bills.columns import (
     Columns,
     choose_cost,
@@ -25,29 +26,51 @@ from normalize.bills.dates import Written, read_written
 from normalize.bills.deliveries import open_by_levels, use_by_levels
 from normalize.bills.found import Found, add_generation, tanks_of
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
+from normalize.bills.groups import cell
 from normalize.bills.headings import squeeze
 from normalize.bills.layout_choice import ask_read_day, layout_of
 from normalize.bills.layouts import (
     Record,
     are_days,
     days_that_disagree,
+    ends_inclusive,
     from_dates_alone,
     from_days,
     from_months,
     from_start_days,
     settle_ends,
 )
+from normalize.bills.records import Proven, settled_by_all
 from normalize.bills.registers import Register, difference
 from normalize.bills.repair import Kind
-from normalize.bills.select import cell, select_rows, without_remarks
+from normalize.bills.select import select_rows, without_remarks
 from normalize.bills.sum_rows import several
 from normalize.bills.table import RawRow, RawTable
 from normalize.days import date_of
-from normalize.errors import NoBills
+from normalize.errors import AmbiguousBills, NoBills
+
+AS_YOU_SAID = ", as you said"
+BY_VALUES = "some of the file can only be read so"
 
 
-def understand_table(table: RawTable, answers: Answers) -> Understood:
-    """Rows of one account from a raw table.  Raises as read_bills does."""
+@dataclass(frozen=True, slots=True)
+class Head:
+    """A table whose header is understood, and its lines beneath.
+
+    body : bill lines and totals, without remarks and repeated headers.  totals : the lines
+    among them that are totals.  notes : sentences.
+    """
+
+    table: RawTable
+    columns: Columns
+    body: list[RawRow]
+    totals: frozenset[int]
+    notes: tuple[str, ...]
+    where: str
+
+
+def head_of(table: RawTable, answers: Answers) -> Head:
+    """The header of a table for the fuel of the answers.  Raises as read_bills does."""
     columns, all_rows = find_columns(table, answers.named)
     where = f"{table.name}:{columns.line}"
     header = [squeeze(c) for row in table.rows if row.line == columns.line for c in row.cells]
@@ -55,20 +78,67 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
         columns, fuel=answers.fuel, unit=answers.unit, where=table.name
     )
     body, totals, remark_notes = without_remarks(columns, header, all_rows)
-    body, other_notes = select_rows(
-        columns, body, rows=answers.rows, fuel=answers.fuel, unit=answers.unit, where=where
-    )
+    notes = (*usage_notes, *remark_notes)
+    return Head(table, columns, body, frozenset(totals), notes, where)
+
+
+def understand_table(table: RawTable, answers: Answers) -> Understood:
+    """Rows of one account from a raw table.  Raises as read_bills does."""
+    head = head_of(table, answers)
+    body, notes = select_rows(
+        head.columns, head.body, rows=answers.rows, fuel=answers.fuel, unit=answers.unit,
+        where=head.where,
+    )  # fmt: skip
+    proven = Proven()
+    if len(body) < len(head.body):  # the other accounts' lines are written in the same way
+        proven = settled_by_all(table, head.columns, head.body)
+    return understand_lines(head, body, notes, answers, proven)
+
+
+def understand_lines(
+    head: Head,
+    body: Sequence[RawRow],
+    other_notes: tuple[str, ...],
+    answers: Answers,
+    proven: Proven,
+) -> Understood:
+    """Rows of one account from its lines.
+
+    other_notes : sentences on how they were chosen.  proven : by all lines of the file.
+    """
+    dates, decimal = answers.dates or proven.dates, answers.decimal or proven.decimal
+    found = _understood(head, body, other_notes, replace(answers, dates=dates, decimal=decimal))
+    words = {}  # nothing is put into the user's mouth that the file as a whole has shown
+    if answers.dates is None:
+        words[f"dates are {dates}{AS_YOU_SAID}"] = f"dates are {dates}: {BY_VALUES}"
+    if answers.decimal is None:
+        comma = "numbers have a decimal comma" if decimal == "comma" else ""
+        words[f"decimal {decimal}{AS_YOU_SAID}"] = comma
+    reading = tuple(s for text in found.reading if (s := words.get(text, text)))
+    return replace(found, reading=reading)
+
+
+def _understood(
+    head: Head, body: Sequence[RawRow], other_notes: tuple[str, ...], answers: Answers
+) -> Understood:
     if not body:
         raise NoBills(
-            "there is a header but no bill beneath it", where=where,
-            next_step=" ".join(_unseen(table, all_rows)),
+            "there is a header but no bill beneath it", where=head.where,
+            next_step=" ".join(_unseen(head.table, head.table.rows)),
         )  # fmt: skip
+    table, columns, where = head.table, head.columns, head.where
     fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
     columns = choose_cost(columns, fuel)
     kind = answers.kind or _kind_of(columns, fuel)
     layout = layout_of(columns, body, kind, where)
-    found = Found(table, columns, body, totals, layout, kind, where)
-    records, notes, cautions = _records(found, answers)
+    found = Found(table, columns, body, head.totals, layout, kind, where)
+    try:
+        records, notes, cautions, settled = _records(found, answers)
+    except AmbiguousBills:
+        if sum(1 for row in body if row.line not in head.totals) > 1:
+            raise
+        # No answer to the question could make one bill enough.
+        raise NoBills(ONE_BILL, where=where, next_step=ENOUGH_BILLS) from None
     solar = add_generation([record for record, _ in records], found, answers)
     unit, unit_note = unit_of(
         columns, body, (suffix for _, suffix in records),
@@ -79,9 +149,10 @@ def understand_table(table: RawTable, answers: Answers) -> Understood:
         (
             *_sheet_note(table), f"header on line {columns.line}", f"fuel: {fuel}", unit_note,
             *described(columns, (*layout.roles, "usage", "cost", _mark(kind), "temperature")),
-            *usage_notes, *notes, *solar.notes, *remark_notes, *other_notes,
+            *notes, *solar.notes, *head.notes, *other_notes,
         ),
         (*cautions, *_unseen(table, body)), sent=solar.sent, generation=solar.generation,
+        settled=settled,
     )  # fmt: skip
 
 
@@ -120,8 +191,10 @@ def _kind_of(columns: Columns, fuel: str) -> Kind:
 
 def _records(
     found: Found, answers: Answers
-) -> tuple[list[tuple[Record, str]], tuple[str, ...], tuple[str, ...]]:
-    """Each bill line's record with what stood behind its number; sentences; cautions."""
+) -> tuple[list[tuple[Record, str]], tuple[str, ...], tuple[str, ...], dict[str, str]]:
+    """Each bill line's record with what stood behind its number; sentences; cautions; what was
+    settled about dates.
+    """
     columns, body = found.columns, found.body
     written = rec.written_dates(found.table, found.layout.where, body)
     months = _months_named(written, found, answers)
@@ -152,15 +225,19 @@ def _records(
     cautions = _put_marks(plain, found)
     _put_temperature(plain, found, answers, numbers.decimal)
     notes = (*order_notes, *((numbers.sentence,) if numbers.sentence else ()))
+    settled: dict[str, str] = {"dates": order} if order_notes else {}
     if months is not None:
         notes += (from_months(plain, months, answers.read_day or 0),)
     else:
-        notes += _put_periods(plain, found, answers)
+        said = _put_periods(plain, found, answers)
+        if both and (inclusive := ends_inclusive(said[0])) is not None:
+            settled["end_dates"] = "inclusive" if inclusive else "exclusive"
+        notes += said
     if columns.differenced:
         notes += _difference(plain, found, answers, numbers.decimal)
     _per_day(plain, columns)
     cautions += days_that_disagree(plain, found.table.name) if both else ()
-    return records, notes, cautions
+    return records, notes, cautions, settled
 
 
 def _months_named(

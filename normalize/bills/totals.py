@@ -5,10 +5,16 @@ What belongs here: the comparison, and where to look first when it fails.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
 from normalize.bills.amounts import number_of, split_amount
 from normalize.bills.periods import Bills
 from normalize.days import iso
 from normalize.errors import BillError
+
+if TYPE_CHECKING:
+    from normalize.bills.accounts import FileAccounts
 
 
 def check_total(bills: Bills, expected: str) -> str:
@@ -32,6 +38,34 @@ def check_total(bills: Bills, expected: str) -> str:
         where=bills.source[0][0] if bills.source else "",
         next_step=_where_to_look(bills, gap),
     )
+
+
+def check_totals(found: FileAccounts, expected: Sequence[str]) -> list[str]:
+    """Sentences for totals such as "5678=1074.8", one account each.
+
+    Raises BillError where a total does not agree, names no account or more than one: totals of
+    several accounts are never compared with one number.
+    """
+    from normalize.bills.groups import Group, named
+
+    groups = [Group((*a.names, a.label), a.fuel, ()) for a in found.accounts]
+    said = []
+    for text in expected:
+        name, _, total = text.rpartition("=")
+        hits = [groups.index(g) for g in named(groups, name)] if name else []
+        account = found.accounts[hits[0]] if len(hits) == 1 else None
+        if account is None or account.bills is None:
+            shown = " or ".join(f'"{a.label}={total}"' for a in found.accounts[:3])
+            raise BillError(
+                f"the expected total {text[:40]!r} does not say of which account it is"
+                if account is None
+                else f"account {account.label} could not be read",
+                where=found.name,
+                wanted="the account and its total, for accounts are never added up",
+                next_step=f"Write --expect-total {shown}, one for each account.",
+            )
+        said.append(f"{account.label}: {check_total(account.bills, total)}")
+    return said
 
 
 def _half_digit(text: str) -> float:

@@ -16,6 +16,7 @@ from typing import TYPE_CHECKING, Any
 
 from normalize.bills.table import (
     HEADER_LINES,
+    LIKELY_HEADER,
     MAX_COLUMNS,
     MAX_ROWS,
     Cell,
@@ -39,9 +40,12 @@ MAX_RATIO = 100  # unpacked over packed, of a part of more than a megabyte
 
 
 def read_workbook(
-    data: bytes, *, name: str, sha256: str, score: Score, sheet: str | None
+    data: bytes, *, name: str, sha256: str, score: Score, sheet: str | None, most: int = MAX_ROWS
 ) -> RawTable:
-    """Values of one sheet.  Raises UnreadableBills; AmbiguousBills if several look like bills."""
+    """Values of one sheet.  Raises UnreadableBills; AmbiguousBills if several look like bills.
+
+    most : rows from the top; fewer than MAX_ROWS for a first look.
+    """
     _check_zip(data, name)
     import openpyxl
     from openpyxl.utils.datetime import CALENDAR_MAC_1904
@@ -53,7 +57,7 @@ def read_workbook(
                 io.BytesIO(data), read_only=True, data_only=True, keep_links=False
             )
             chosen = _pick(book, name, score, sheet)
-            rows = tuple(_rows(book[chosen], name, MAX_ROWS))
+            rows = tuple(_rows(book[chosen], name, most))
             hidden, uncomputed = _unseen(data, getattr(book[chosen], "_worksheet_path", ""))
             epoch_1904 = book.epoch == CALENDAR_MAC_1904
             book.close()
@@ -136,10 +140,49 @@ def _unsafe(name: str, what: str) -> UnreadableBills:
     )
 
 
-def _pick(book: Any, name: str, score: Score, sheet: str | None) -> str:
+def likely_sheets(data: bytes, *, name: str, score: Score) -> list[str]:
+    """Every visible sheet that looks like bills; the likeliest where none does."""
+    _check_zip(data, name)
+    import openpyxl
+
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")
+        try:
+            book = openpyxl.load_workbook(
+                io.BytesIO(data), read_only=True, data_only=True, keep_links=False
+            )
+            found = _scored(book, name, score)
+            book.close()
+        except NormalizeError:
+            raise
+        except Exception as err:
+            raise _broken(name) from err
+    likely = [title for title, value in found if value >= LIKELY_HEADER]
+    return likely or [choose_sheet(found, name=name)]
+
+
+def _scored(book: Any, name: str, score: Score) -> list[tuple[str, float]]:
+    """(title, how much it looks like bills) of each visible sheet."""
+    titles = _titles(book)
+    visible = [t for t in titles if book[t].sheet_state == "visible"] or titles
+    if not visible:
+        raise UnreadableBills("the workbook has no sheet of cells", where=name)
+    if len(visible) == 1:
+        return [(visible[0], 0.0)]
+    return [
+        (t, max((score(r.cells) for r in _rows(book[t], name, HEADER_LINES)), default=0.0))
+        for t in visible
+    ]
+
+
+def _titles(book: Any) -> list[str]:
     from openpyxl.worksheet._read_only import ReadOnlyWorksheet
 
-    titles = [s.title for s in book.worksheets if isinstance(s, ReadOnlyWorksheet)]
+    return [str(s.title) for s in book.worksheets if isinstance(s, ReadOnlyWorksheet)]
+
+
+def _pick(book: Any, name: str, score: Score, sheet: str | None) -> str:
+    titles = _titles(book)
     if sheet is not None:
         if sheet not in titles:
             raise UnreadableBills(
@@ -148,16 +191,7 @@ def _pick(book: Any, name: str, score: Score, sheet: str | None) -> str:
                 wanted="one of " + ", ".join(repr(t[:40]) for t in titles[:8]),
             )
         return sheet
-    visible = [t for t in titles if book[t].sheet_state == "visible"] or titles
-    if not visible:
-        raise UnreadableBills("the workbook has no sheet of cells", where=name)
-    if len(visible) == 1:
-        return str(visible[0])
-    found = [
-        (t, max((score(r.cells) for r in _rows(book[t], name, HEADER_LINES)), default=0.0))
-        for t in visible
-    ]
-    return choose_sheet(found, name=name)
+    return choose_sheet(_scored(book, name, score), name=name)
 
 
 def _rows(sheet: Any, name: str, limit: int) -> Iterator[RawRow]:
@@ -182,8 +216,8 @@ def _rows(sheet: Any, name: str, limit: int) -> Iterator[RawRow]:
 def _cell(value: object) -> Cell:
     if isinstance(value, bool):
         return "yes" if value else "no"
-    if isinstance(value, datetime):
-        return value.date()
+    if isinstance(value, datetime):  # midnight is a day: bills; other moments, intervals
+        return value if value.time() != time() else value.date()
     if isinstance(value, (int, float, date)) or value is None:
         return value
     if isinstance(value, (time, timedelta)):

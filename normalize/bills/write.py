@@ -24,7 +24,10 @@ from normalize.errors import UnwritableReport
 if TYPE_CHECKING:
     from openpyxl.worksheet.datavalidation import DataValidation
 
+    from normalize.bills.accounts import FileAccounts
+
 TEMPLATE = ("start", "end", "usage", "unit", "cost", "estimated")
+TEMPERATURE = "mean temperature (°F)"
 _TRIGGERS = "=+-@\t\r\0\uff1d\uff0b\uff0d\uff20"  # also the full-width forms of = + - @
 
 
@@ -143,21 +146,45 @@ def write_periods(bills: Bills, path: str | os.PathLike[str], *, overwrite: bool
 
     Account names and numbers are not written.  Raises UnwritableReport.
     """
-    p = bills.periods
+    temps = bills.periods.mean_temp_f is not None
     head = ["fuel", "start", "end", "days", f"usage ({bills.unit})", "cost"]
-    temps = p.mean_temp_f
-    if temps is not None:
-        head.append("mean temperature (°F)")
-    lines: list[Sequence[str]] = [head]
-    for k in range(p.n):
-        line = [
-            safe_text(bills.fuel), iso(int(p.start[k])), iso(int(p.end[k])), str(int(p.days[k])),
-            _number(float(p.use[k])), _number(float(p.cost[k])),
-        ]  # fmt: skip
-        if temps is not None:
-            line.append(_number(float(temps[k])))
-        lines.append(line)
+    lines = [head + ([TEMPERATURE] if temps else [])]
+    for k in range(bills.periods.n):
+        span, use, cost, more = _cells(bills, k, temps=temps)
+        lines.append([safe_text(bills.fuel), *span, use, cost, *more])
     _write(path, _csv(lines), overwrite=overwrite)
+
+
+def write_accounts(
+    found: FileAccounts,
+    path: str | os.PathLike[str],
+    *,
+    full_numbers: bool = False,
+    overwrite: bool = False,
+) -> None:
+    """Write every account's cleaned periods into one CSV; read_accounts gives them back.
+
+    A column names the account: masked, or with ``full_numbers`` as the file has it.
+    Raises UnwritableReport.
+    """
+    temps = any(b.periods.mean_temp_f is not None for _, b in found.readable)
+    head = ["account", "fuel", "start", "end", "days", "usage", "unit", "cost"]
+    lines = [head + ([TEMPERATURE] if temps else [])]
+    for account, bills in found.readable:
+        name = safe_text(account.full_name if full_numbers else account.label)
+        for k in range(bills.periods.n):
+            span, use, cost, more = _cells(bills, k, temps=temps)
+            lines.append([name, safe_text(bills.fuel), *span, use, bills.unit, cost, *more])
+    _write(path, _csv(lines), overwrite=overwrite)
+
+
+def _cells(bills: Bills, k: int, *, temps: bool) -> tuple[list[str], str, str, list[str]]:
+    """Start, end and days; use; cost; and the mean temperature where there is a column of it."""
+    p = bills.periods
+    span = [iso(int(p.start[k])), iso(int(p.end[k])), str(int(p.days[k]))]
+    known = p.mean_temp_f
+    more = [_number(float(known[k])) if known is not None else ""] if temps else []
+    return span, _number(float(p.use[k])), _number(float(p.cost[k])), more
 
 
 def _number(value: float) -> str:

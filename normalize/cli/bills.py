@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Final
 
@@ -12,8 +13,9 @@ from normalize.cli.options import FILE, STDOUT, json_option, write_json
 from normalize.cli.tables import paragraph, table
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from collections.abc import Callable, Sequence
 
+    from normalize.bills.accounts import FileAccounts
     from normalize.bills.periods import Bills
 
 LEFT_OUT = "left out"
@@ -104,7 +106,9 @@ def _answers(command: Callable[..., Any]) -> Callable[..., Any]:
 @click.option(
     "--expect-total",
     metavar="USE",
-    help="Check the sum of use against a total that is printed elsewhere.",
+    multiple=True,
+    help="Check the sum of use against a total that is printed elsewhere; of several accounts "
+    "5678=1074.8, once for each.",
 )
 @click.option(
     "--write",
@@ -113,44 +117,95 @@ def _answers(command: Callable[..., Any]) -> Callable[..., Any]:
     type=FILE,
     help="Also write the cleaned periods as CSV to a new FILE.",
 )
+@click.option(
+    "--full-numbers",
+    is_flag=True,
+    help="Write account numbers of a file of several in full (--write, --json).",
+)
 @json_option
 def command(
     file: Path,
     *,
     net_metered: bool,
     picture_to: Path | None,
-    expect_total: str | None,
+    expect_total: tuple[str, ...],
     write_to: Path | None,
+    full_numbers: bool,
     json_to: str | None,
     **answers: Any,
 ) -> None:
     """Show how FILE (CSV, XLSX or ESPI XML) was understood: periods, and the fate of every bill.
 
-    Options answer what the file leaves open; in site.toml they are keys of [[account]], with _
-    for -.
+    Several accounts, meters or fuels are shown one after the other, never added up; --rows
+    names one. Options answer what the file leaves open; in site.toml they are keys of
+    [[account]], with _ for -.
     """
-    from normalize.bills.read import read_bills
+    from normalize.bills.accounts import read_accounts
 
     with patience():
-        bills = read_bills(file, account=file.stem, net_metered=net_metered, **answers)
+        found = read_accounts(file, account=file.stem, net_metered=net_metered, **answers)
+    keep = lines_to_keep(answers, net_metered=net_metered)
+    if found.alone is not None:
+        outputs = _of_one(found.alone, keep)
+    else:
+        outputs = _of_several(found, keep, full_numbers=full_numbers)
     if write_to is not None:
-        from normalize.bills.write import write_periods
-
-        write_periods(bills, write_to)
-    if picture_to is not None:
-        from normalize.report.figure_bills import write_bills_figure
-
-        write_bills_figure(bills, picture_to)
+        outputs.write(write_to)
+    drawn = outputs.draw(picture_to) if picture_to is not None else ""
     if json_to is not None:
-        write_json(to_json(bills), json_to, inputs=(file,))
+        write_json(outputs.json(), json_to, inputs=(file,))
     if json_to != STDOUT:
-        show(to_text(bills, keep=lines_to_keep(answers, net_metered=net_metered)))
-    if expect_total is not None:
-        from normalize.bills.totals import check_total
+        show("\n\n".join(filter(None, [outputs.text(), drawn])))
+    if found.alone is None and not found.bills:
+        from normalize.cli.bill_accounts import none_read
 
-        said = check_total(bills, expect_total)
+        raise none_read(found)
+    for said in outputs.check(expect_total) if expect_total else ():
         if json_to != STDOUT:
             show(f"\n{said}")
+
+
+@dataclass(frozen=True)
+class _Outputs:
+    """What a command can do with bills, of one account or of several."""
+
+    text: Callable[[], str]
+    json: Callable[[], str]
+    write: Callable[[Path], None]
+    draw: Callable[[Path], str]
+    check: Callable[[Sequence[str]], Sequence[str]]
+
+
+def _of_one(bills: Bills, keep: list[str]) -> _Outputs:
+    from normalize.bills.totals import check_total
+    from normalize.bills.write import write_periods
+    from normalize.report.figure_bills import write_bills_figure
+
+    def draw(path: Path) -> str:
+        write_bills_figure(bills, path)
+        return ""
+
+    return _Outputs(
+        text=lambda: to_text(bills, keep=keep),
+        json=lambda: to_json(bills),
+        write=lambda path: write_periods(bills, path),
+        draw=draw,
+        check=lambda totals: [check_total(bills, total) for total in totals],
+    )
+
+
+def _of_several(found: FileAccounts, keep: list[str], *, full_numbers: bool) -> _Outputs:
+    from normalize.bills.totals import check_totals
+    from normalize.bills.write import write_accounts
+    from normalize.cli import bill_accounts as several
+
+    return _Outputs(
+        text=lambda: several.to_text(found, keep),
+        json=lambda: several.to_json(found, full_numbers=full_numbers),
+        write=lambda path: write_accounts(found, path, full_numbers=full_numbers),
+        draw=lambda path: several.write_pictures(found, path),
+        check=lambda totals: check_totals(found, totals),
+    )
 
 
 def lines_to_keep(answers: dict[str, Any], *, net_metered: bool) -> list[str]:
@@ -173,10 +228,10 @@ def to_text(bills: Bills, *, keep: list[str] | None = None) -> str:
     """
     from normalize.report.numbers import mask
 
+    understood = "\n".join(paragraph(mask(f"{text}."), indent="  ") for text in bills.reading)
     blocks = [
         f"{bills.fuel}, in {bills.unit}",
-        "How the file was understood:\n"
-        + "\n".join(paragraph(mask(f"{text}."), indent="  ") for text in bills.reading),
+        *([f"How the file was understood:\n{understood}"] if understood else []),
         _periods(bills),
         *([paragraph(f"Unfit for this method: {bills.unfit}")] if bills.unfit else []),
         *(f"Caution: {paragraph(mask(text))}" for text in bills.cautions),
@@ -241,6 +296,13 @@ def _ledger(bills: Bills) -> str:
 def to_json(bills: Bills) -> str:
     """The same as JSON, schema 1; unknown numbers are null."""
     import json
+
+    whole = {"schema": 1, **to_dict(bills)}
+    return json.dumps(whole, indent=2, ensure_ascii=False, allow_nan=False)
+
+
+def to_dict(bills: Bills) -> dict[str, Any]:
+    """One account's bills as JSON has them."""
     import math
 
     from normalize.days import iso
@@ -262,8 +324,7 @@ def to_json(bills: Bills) -> str:
     ledger = [
         {"file": e.file, "line": e.line, "fate": e.fate, "note": e.note} for e in bills.ledger
     ]
-    whole = {
-        "schema": 1,
+    return {
         "fuel": bills.fuel,
         "unit": bills.unit,
         "kind": bills.kind,
@@ -275,4 +336,3 @@ def to_json(bills: Bills) -> str:
         "unfit": bills.unfit or None,
         "source": [{"file": name, "sha256": digest} for name, digest in bills.source],
     }
-    return json.dumps(whole, indent=2, ensure_ascii=False, allow_nan=False)

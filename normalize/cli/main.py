@@ -21,6 +21,7 @@ from normalize.errors import NormalizeError
 # Name → what it does, in one line.  Each is normalize/cli/NAME.py with a command `command`.
 COMMANDS: Final = {
     "savings": "How much less was used after an upgrade, in a normal year. The main job.",
+    "plan": "Will a saving show? After how many bills, from the bills before the work.",
     "fit": "The fits alone: every form that was tried, before and after.",
     "bills": "How a file of bills was understood and repaired.",
     "degree-days": "Degree-days of a weather file, by month, year or bill, at any base.",

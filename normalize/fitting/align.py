@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from normalize.bills.periods import Periods
 from normalize.days import iso
 from normalize.defaults import MAX_FILLED_SHARE
+from normalize.fitting.drivers import Drivers
 from normalize.weather.temperature import DailyTemperature
 
 
@@ -19,6 +20,7 @@ class Aligned:
 
     start, end (n,) int32 day numbers; use (n,) float64; mean_temp_f (n,) float64, NaN where
     weather is missing; reason (n,) why a period cannot be used, "" when it can.
+    drivers : of every period, where use answers to more than the weather.
     """
 
     start: NDArray[np.int32]
@@ -27,6 +29,7 @@ class Aligned:
     mean_temp_f: NDArray[np.float64]
     reason: tuple[str, ...]
     weather: DailyTemperature
+    drivers: Drivers | None = None
 
     @property
     def n(self) -> int:

@@ -74,10 +74,10 @@ def _weights_at(w, level, power):
 def through_errors(jac, resid, fitted, side, targets, rep, rep_fitted):
     """Evidence at every ρ, over the ways errors may grow: (like, shift, scale2, plain2).
 
-    jac (n, k), resid, fitted (n,) of a side's periods; targets (2, k) gradients of NAC and of
-    the reporting period's use; rep, rep_fitted : those periods and their fitted use, whose
-    own noise is added to the second target.  side, rep : (ts, ps, y, d, w, start, end).
-    shift, scale2 (27, 2) as in ``through_rho``; plain2 (2,) the scale² with ρ = 0 and errors
+    jac (n, k), resid, fitted (n,) of a side's periods; targets (t, k) gradients; rep,
+    rep_fitted : reporting periods and their fitted use, whose own noise is added to the second
+    target, or none.  side, rep : (ts, ps, y, d, w, start, end).
+    shift, scale2 (27, t) as in ``through_rho``; plain2 (t,) the scale² with ρ = 0 and errors
     alike at any use.
     """
     _, _, _, d, w, s, e = side
@@ -101,8 +101,8 @@ def through_errors(jac, resid, fitted, side, targets, rep, rep_fitted):
     rep_level = levels(rep_rows[:, 0], mean_use)
     m = POWERS.shape[0]
     like = np.empty((m, RHO.shape[0]))
-    shift = np.empty((m, RHO.shape[0], 2))
-    scale2 = np.empty((m, RHO.shape[0], 2))
+    shift = np.empty((m, RHO.shape[0], targets.shape[0]))
+    scale2 = np.empty((m, RHO.shape[0], targets.shape[0]))
     error = np.empty(length.shape[0])
     for i in range(m):
         own, mean, log_scale = _weights_at(weight, level, POWERS[i])

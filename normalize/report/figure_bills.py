@@ -30,13 +30,13 @@ KEY: Final = (
 )
 
 
-def bills_figure(bills: Bills, key: str = "bills") -> svg.Picture | None:
+def bills_figure(bills: Bills, key: str = "bills", label: str = "") -> svg.Picture | None:
     """Periods as steps of use a day; readings and repairs beneath; None without periods."""
     p = bills.periods
     per_day = p.use / p.days
     if p.n == 0 or not all(marks.drawable(float(y)) for y in per_day):
         return None
-    title = _title(bills)
+    title = f"{label}: {_title(bills)}" if label else _title(bills)
     with svg.surface(HEIGHT) as figure:
         svg.title(figure, title, UNDER, height=HEIGHT)
         tall = HEIGHT - BOTTOM - STRIP - TOP
@@ -118,9 +118,9 @@ def _group(row: BillRow, left_out: set[int]) -> str:
     return "estimated" if row.estimated else "read"
 
 
-def write_bills_figure(bills: Bills, path: Path) -> None:
-    """Write the picture as SVG to a new file.  Raises UnwritableReport."""
-    picture = bills_figure(bills)
+def write_bills_figure(bills: Bills, path: Path, label: str = "") -> None:
+    """Write the picture as SVG to a new file.  label : whose bills.  Raises UnwritableReport."""
+    picture = bills_figure(bills, label=n.mask(label))
     if picture is None:
         raise UnwritableReport("there is nothing that could be drawn", where=n.mask(path.name))
     try:

@@ -10,8 +10,20 @@ from typing import TYPE_CHECKING, Any, Final, NamedTuple
 
 from normalize.errors import UnwritableReport
 from normalize.fitting.forms import FORMS
-from normalize.report import look, site_words, svg, tables, words
+from normalize.report import (
+    drivers,
+    look,
+    parts,
+    placebo_words,
+    site_words,
+    spread,
+    svg,
+    tables,
+    words,
+)
 from normalize.report import numbers as n
+from normalize.report.figure_placebo import placebo_figure
+from normalize.report.figure_spread import spread_figure
 from normalize.report.figures import figures_of
 
 if TYPE_CHECKING:
@@ -102,7 +114,6 @@ def _site(result: SiteResult, say: Callable[[str], str], *, show_accounts: bool)
         "settings": tables.pairs_table("Settings that mattered", result.settings, "setting"),
         "versions": tables.pairs_table("Versions", result.versions, "program"),
         "inputs": tables.inputs_table(result, show_accounts=show_accounts),
-        "moved": _hidden(tables.moved_table(result), say) if result.moved else None,
     }
 
 
@@ -141,8 +152,80 @@ def _account(
         ]
         if has_bills
         else [],
+        **_firm(account, result, number, say, classes),
+        **_placebo(account, number, say, classes),
+        **_drivers(account, say),
+        **_close(account, say),
         **_behind(account, result, say),
     }
+
+
+def _firm(
+    account: AccountResult,
+    result: SiteResult,
+    number: int,
+    say: Callable[[str], str],
+    classes: dict[str, str],
+) -> dict[str, Any]:
+    """How firm the answer is: sentences, picture and tables."""
+    drawn = spread_figure(account, result, f"a{number}-spread")
+    table, bills = spread.table_of(account, result), spread.bills_table(account, result)
+    return {
+        "firm": [say(s) for s in spread.sentences(account, result)],
+        "firm_figure": _shown(drawn, classes),
+        "firm_table": _hidden(table, say) if table is not None else None,
+        "firm_bills": _hidden(bills, say) if bills is not None else None,
+    }
+
+
+def _placebo(
+    account: AccountResult, number: int, say: Callable[[str], str], classes: dict[str, str]
+) -> dict[str, Any]:
+    """Invented work dates: sentences, picture and table."""
+    table = placebo_words.table_of(account)
+    return {
+        "placebo": [say(s) for s in placebo_words.sentences(account)],
+        "placebo_figure": _shown(placebo_figure(account, f"a{number}-placebo"), classes),
+        "placebo_table": _hidden(table, say) if table is not None else None,
+    }
+
+
+def _drivers(account: AccountResult, say: Callable[[str], str]) -> dict[str, Any]:
+    """What drives use beside the weather: sentences and tables."""
+    told = drivers.reading_of(account)
+    return {
+        "drivers": [say(s) for s in told.sentences] if told else [],
+        "drivers_answers": _hidden(told.answers, say) if told else None,
+        "drivers_tried": _hidden(told.tried, say) if told else None,
+    }
+
+
+def _close(account: AccountResult, say: Callable[[str], str]) -> dict[str, Any]:
+    """What the change is made of, the heat loss, and what the work should have saved."""
+    told = parts.close_reading(account)
+
+    def hidden(table: Table | None) -> Table | None:
+        return None if table is None else _hidden(table, say)
+
+    return {
+        "parts": [say(s) for s in told.parts],
+        "heat_loss": [say(s) for s in told.heat_loss],
+        "expectation": [say(s) for s in told.expectation],
+        "expectation_cautions": [say(s) for s in told.cautions],
+        "parts_table": hidden(told.parts_table),
+        "heat_loss_table": hidden(told.heat_loss_table),
+        "expectation_table": hidden(told.expectation_table),
+    }
+
+
+def _shown(picture: svg.Picture | None, classes: dict[str, str]) -> _Drawn | None:
+    """A picture as the template wants it."""
+    from markupsafe import Markup
+
+    if picture is None:
+        return None
+    body = svg.with_classes(picture.inline(), classes)
+    return _Drawn(Markup(body), n.clean(picture.caption))  # noqa: S704  escaped in svg.Picture
 
 
 def _behind(
@@ -157,6 +240,7 @@ def _behind(
         else None,
         "same_form": _hidden(tables.same_form_table(account), say) if save.same_form else None,
         "checks": _hidden(tables.checks_table(account.checks), say) if account.checks else None,
+        "weights": tables.weights_table(account),
         "checks_summary": say(_checks_summary(account)),
         "factors": _hidden(tables.factors_table(account, result.site.currency), say),
         "ledger": _hidden(tables.ledger_table(account), say) if has_bills else None,
@@ -168,21 +252,13 @@ def _behind(
 def _figures(
     account: AccountResult, result: SiteResult, number: int, classes: dict[str, str]
 ) -> dict[str, _Drawn | None]:
-    from markupsafe import Markup
-
     drawn = figures_of(account, result.site.year, number)
-
-    def shown(picture: svg.Picture | None) -> _Drawn | None:
-        if picture is None:
-            return None
-        body = svg.with_classes(picture.inline(), classes)
-        return _Drawn(Markup(body), n.clean(picture.caption))  # noqa: S704  escaped in svg.Picture
-
     return {
-        "temperature": shown(drawn.temperature),
-        "years": shown(drawn.years),
-        "time": shown(drawn.time),
-        "residuals": shown(drawn.residuals),
+        "temperature": _shown(drawn.temperature, classes),
+        "years": _shown(drawn.years, classes),
+        "time": _shown(drawn.time, classes),
+        "residuals": _shown(drawn.residuals, classes),
+        "parts": _shown(drawn.parts, classes),
     }
 
 
@@ -231,7 +307,11 @@ def _equations(result: SiteResult) -> list[str]:
 
 
 def _checks_summary(account: AccountResult) -> str:
-    missed = [f"{c.name} {c.side}".strip() for c in account.checks if c.meets is False]
+    missed = [
+        c.name if c.side == "both" else f"{c.name} {c.side}".strip()
+        for c in account.checks
+        if c.meets is False
+    ]
     met = sum(c.meets is True for c in account.checks)
     if not missed:
         return f"Checks: {met} met, none missed"

@@ -11,15 +11,21 @@ import math
 from typing import TYPE_CHECKING, Any, Final
 
 from normalize.days import iso
+from normalize.report.drivers import drivers_json
+from normalize.report.parts_json import close_reading
 
 if TYPE_CHECKING:
     from normalize.fitting.results import Fit, FormTried
+    from normalize.savings.influence import BillWeight
+    from normalize.savings.placebo import Placebo
     from normalize.savings.results import Amount, Check, Estimate, Price, Total
+    from normalize.sensitivity import Moved
     from normalize.site import AccountResult, PeriodRow, Site, SiteResult
     from normalize.units import Factor
 
 SCHEMA: Final = 1
 NOT_FINITE: Final = "no finite number came out of the computation"
+WEATHER_CHANGES: Final = ("as chosen", "station", "long-term year")
 
 Json = dict[str, Any]
 
@@ -57,21 +63,30 @@ def to_dict(result: SiteResult) -> Json:
             "normalized": _total(result.total_normalized),
             "avoided": _total(result.total_avoided),
         },
-        "sensitivity": [
-            {
-                "account": m.account,
-                "weather": m.name,
-                "changes": m.changes,
-                "normalized": None if m.normalized is None else _estimate(m.normalized),
-                "avoided": None if m.avoided is None else _estimate(m.avoided),
-                "unavailable": m.unavailable or None,
-            }
-            for m in result.moved
-        ],
+        "sensitivity": [_moved(m, result) for m in result.moved],
         "cautions": list(result.cautions),
         "settings": dict(result.settings),
         "versions": dict(result.versions),
         "inputs": [{"file": file, "sha256": digest} for file, digest in site.inputs],
+    }
+
+
+def _moved(m: Moved, result: SiteResult) -> Json:
+    """The answer with one thing changed; rows of bills left out name their period."""
+    chosen = next(r for r in result.moved if r.account == m.account)
+    weather = m.name if m.changes in WEATHER_CHANGES else chosen.name
+    return {
+        "account": m.account,
+        "weather": weather,
+        "changes": m.changes,
+        "name": m.name,
+        "normalized": None if m.normalized is None else _estimate(m.normalized),
+        "avoided": None if m.avoided is None else _estimate(m.avoided),
+        "unavailable": m.unavailable or None,
+        "form_before": m.form_before or None,
+        "form_after": m.form_after or None,
+        "no_rival": m.far or None,
+        "period": m.number,
     }
 
 
@@ -145,6 +160,8 @@ def _account(account: AccountResult) -> Json:
             "after": [_tried(t) for t in account.tried_after],
         },
         "checks": [_check(c) for c in account.checks],
+        "bill_weights": [_weight(w) for e in account.evidence for w in e.weights],
+        "placebo": _placebo(account.placebo),
         "k_factors": [
             {"side": side, "degree_days_per_unit": a, "unit_per_degree_day": b}
             for side, a, b in account.k_factors
@@ -153,6 +170,8 @@ def _account(account: AccountResult) -> Json:
             {"period": f.period, "what": f.what, "note": f.note}
             for f in (account.bills.flags if account.bills else ())
         ],
+        **close_reading(account, _estimate),
+        "drivers": drivers_json(account, _estimate),
         "cautions": list(account.cautions),
     }
 
@@ -298,6 +317,39 @@ def _check(c: Check) -> Json:
         "means": c.means,
         "do": c.do,
         "source": c.source,
+    }
+
+
+def _weight(w: BillWeight) -> Json:
+    return {
+        "period": w.number,
+        "side": w.side,
+        "leverage": _number(w.leverage),
+        "cook": _number(w.cook),
+        "dffits": _number(w.dffits),
+    }
+
+
+def _placebo(p: Placebo | None) -> Json | None:
+    """Invented work dates; null where the bills could not be read or used at all."""
+    if p is None:
+        return None
+    return {
+        "unavailable": p.unavailable or None,
+        "dates": [
+            {
+                "day": iso(d.day),
+                "n_before": d.n_before,
+                "n_after": d.n_after,
+                "normalized": _estimate(d.normalized),
+            }
+            for d in p.dates
+        ],
+        "announced": len(p.announced),
+        "without_answer": p.without_answer,
+        "largest_day": _day(p.largest.day if p.largest is not None else None),
+        "first_day": _day(p.first),
+        "last_day": None if p.last is None else iso(p.last - 1),
     }
 
 

@@ -7,8 +7,8 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Final
 
 from normalize.fitting.forms import FORMS
+from normalize.report import checks_words, words
 from normalize.report import numbers as n
-from normalize.report import words
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterable
@@ -19,6 +19,7 @@ if TYPE_CHECKING:
 
 STATISTICS: Final = "How the fits sit on their bills; R² never sets a fit aside (a flat load has 0)"
 CHECKS: Final = "Each check with its limit, what the outcome means, and who asks for it"
+WEIGHTS: Final = "What each bill weighs in its side's fit, balance temperature included"
 FACTORS: Final = "What one unit is worth, and where the number comes from"
 LEDGER: Final = "What became of every row of the bill files, by file and line"
 
@@ -190,10 +191,10 @@ def checks_table(checks: tuple[Check, ...]) -> Table:
         (
             n.clean(c.name),
             c.side,
-            n.significant(c.value, 3),
-            n.significant(c.limit, 3),
-            check_outcome(c),
-            n.clean(f"{c.means[:1].upper()}{c.means[1:]}{check_advice(c)}"),
+            checks_words.number(c.value),
+            checks_words.number(c.limit),
+            checks_words.outcome(c),
+            checks_words.meaning(c),
             n.clean(c.source),
         )
         for c in checks
@@ -202,14 +203,13 @@ def checks_table(checks: tuple[Check, ...]) -> Table:
     return _table(CHECKS, header, rows, (2, 3))
 
 
-def check_outcome(check: Check) -> str:
-    """The outcome in words, never in colour."""
-    return {True: "met", False: "not met", None: "for information"}[check.meets]
-
-
-def check_advice(check: Check) -> str:
-    """What to do when a check is not met."""
-    return f". What to do: {check.do}" if check.meets is False and check.do else ""
+def weights_table(account: AccountResult) -> Table | None:
+    """What each bill weighs in its side's fit; None without a fit."""
+    rows = checks_words.weight_rows(account.evidence)
+    header = (
+        "period", "from", "until", "side", "leverage", "Cook's distance", "DFFITS", "note",
+    )  # fmt: skip
+    return _table(WEIGHTS, header, rows, (0, 4, 5, 6)) if rows else None
 
 
 def periods_table(account: AccountResult) -> Table:
@@ -393,31 +393,6 @@ def same_form_table(account: AccountResult) -> Table:
         f"{words.unit_word(account.unit)}; a change of form alone cannot make a saving"
     )
     return _table(caption, ("form on both sides", "value", "low", "high", "note"), rows, (1, 2, 3))
-
-
-def moved_table(result: SiteResult) -> Table:
-    """How far the answer moves with other stations and other normal years."""
-    rows = []
-    for m in result.moved:
-        e = m.normalized
-        known = e is not None and e.available
-        why = m.unavailable if e is None else (e.unavailable or "")
-        rows.append(
-            (
-                n.name(m.account),
-                n.clean(m.name),
-                m.changes,
-                n.plain(e.value, 1) if e is not None and known else n.UNKNOWN,
-                n.plain(e.low, 1) if e is not None and known else n.UNKNOWN,
-                n.plain(e.high, 1) if e is not None and known else n.UNKNOWN,
-                n.clean(why),
-            )
-        )
-    head = ("account", "weather", "what differs", "change", "low", "high", "note")
-    return _table(
-        "The change in a normal year with other weather, in each account's unit", head, rows,
-        (3, 4, 5),
-    )  # fmt: skip
 
 
 def inputs_table(result: SiteResult, *, show_accounts: bool = False) -> Table:

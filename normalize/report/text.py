@@ -7,8 +7,17 @@ import unicodedata
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
+from normalize.report import (
+    checks_words,
+    drivers,
+    parts,
+    placebo_words,
+    site_words,
+    spread,
+    tables,
+    words,
+)
 from normalize.report import numbers as n
-from normalize.report import site_words, tables, words
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Sequence
@@ -38,8 +47,8 @@ def to_text(
     sheet = _Sheet(max(width, MIN_WIDTH), ascii, show_accounts)
     lines = [
         *_answer(result, sheet, subject),
-        *_moved(result, sheet),
         *_cautions(result, sheet),
+        *_firm(result, sheet, statistics=statistics),
     ]
     if statistics:
         for account in result.accounts:
@@ -192,22 +201,54 @@ def _statistics(account: AccountResult, result: SiteResult, sheet: _Sheet) -> It
     yield from _behind(account, result, sheet)
 
 
+def _close(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
+    """What the change is made of, the heat loss, and what the work should have saved."""
+    told = parts.close_reading(account)
+    if told.parts_table is not None:
+        yield from ["", *sheet.table(told.parts_table)]
+    elif told.parts or told.heat_loss:
+        yield ""
+    for sentence in (*told.parts, *told.heat_loss):
+        yield from sheet.wrap(sentence)
+    if told.expectation:
+        yield from ["", "What the work should have saved"]
+        for sentence in told.expectation:
+            yield from sheet.wrap(sentence)
+        if told.expectation_table is not None:
+            yield from ["", *sheet.table(told.expectation_table)]
+        for caution in told.cautions:
+            yield from sheet.item(caution)
+
+
+def _drivers(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
+    """What drives use beside the weather, and the answer with and without."""
+    told = drivers.reading_of(account)
+    if told is None:
+        return
+    yield from ["", "What drives use beside the weather"]
+    for sentence in told.sentences:
+        yield from sheet.wrap(sentence)
+    yield from ["", *sheet.table(told.answers, keep=range(4))]
+
+
 def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterator[str]:
     """Statistics, checks, factors and the ledger of one account."""
     save = account.savings
+    yield from _drivers(account, sheet)
+    yield from _close(account, sheet)
     if save.before is not None or save.after is not None:
         yield from ["", *sheet.table(tables.statistics_table(account))]
     if save.same_form:
         yield from ["", *sheet.table(tables.same_form_table(account))]
     if account.checks:
         yield from ["", "Checks"]
-        for name, side, value, limit, outcome, means, source in tables.checks_table(
-            account.checks
-        ).rows:
-            where = f", {side}" if side else ""
-            against = f" (limit {limit})" if limit != n.UNKNOWN else ""
-            means = means if means.endswith(".") else f"{means}."
-            yield from sheet.item(f"{name}{where}: {value}{against}, {outcome}. {means} [{source}]")
+        for line in checks_words.lines(account.checks):
+            yield from sheet.item(line)
+    invented = placebo_words.sentences(account)
+    if invented:
+        yield from ["", "Invented work dates"]
+        for sentence in invented:
+            yield from sheet.wrap(sentence)
     yield from ["", "Price and factors"]
     for what, value, source in tables.factors_table(account, result.site.currency).rows:
         yield from sheet.item(f"{what}: {value} ({source})")
@@ -219,15 +260,23 @@ def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterat
         yield from sheet.item(f"and {len(noted) - MOST_LEDGER_LINES} more, in the report")
 
 
-def _moved(result: SiteResult, sheet: _Sheet) -> Iterator[str]:
-    """How far the answer moves with other weather, where that was asked for."""
-    if not result.moved:
+def _firm(result: SiteResult, sheet: _Sheet, *, statistics: bool) -> Iterator[str]:
+    """How firm each answer is: a sentence, and behind it the answer under every change."""
+    told = [(a, spread.sentences(a, result)) for a in result.accounts]
+    if not any(sentences for _, sentences in told):
         return
-    yield from ["", *sheet.heading("How far the answer moves", "-")]
-    yield from sheet.table(tables.moved_table(result), keep=range(6))
-    for row in tables.moved_table(result).rows:
-        if row[-1]:
-            yield from sheet.item(f"{row[0]}, {row[1]}: {row[-1]}")
+    yield from ["", "How firm the answer is"]
+    for account, sentences in told:
+        for sentence in sentences:
+            yield from sheet.item(f"{n.name(account.account)}: {sentence}")
+        table = spread.table_of(account, result) if statistics else None
+        if sentences and table is not None:
+            yield ""
+            yield from sheet.table(table, keep=range(4))
+            for row in table.rows:
+                if row[-1]:
+                    yield from sheet.item(f"{row[0]}: {row[-1]}")
+            yield ""
 
 
 def _site_statistics(result: SiteResult, sheet: _Sheet) -> Iterator[str]:

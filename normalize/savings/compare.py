@@ -24,6 +24,7 @@ from normalize.fitting.describe import as_tried
 from normalize.fitting.fit import CHOICE, also_tried, batch_of_one, chosen_of, side_data
 from normalize.fitting.results import FormTried
 from normalize.savings.enough import SideFacts, after_reason, before_reason
+from normalize.savings.estimates import estimate_at, normalized_of
 from normalize.savings.kernel import (
     ACTUAL,
     AVOIDED,
@@ -31,7 +32,6 @@ from normalize.savings.kernel import (
     HELD_BEFORE,
     NAC_AFTER,
     NAC_BEFORE,
-    NORMALIZED,
     PREDICTED,
     compare_batch,
 )
@@ -62,7 +62,7 @@ def run_batch(
     *,
     confidence: float,
     tried: NDArray[np.bool_] | None = None,
-    forced: tuple[int, int] = (-1, -1),
+    forced: tuple[int, int] | NDArray[np.int8] = (-1, -1),
     weights: str = "days",
     criterion: int = BIC,
     settings_: NDArray[np.float64] | None = None,
@@ -70,6 +70,8 @@ def run_batch(
 ) -> tuple[NDArray[np.float64], NDArray[np.int8], NDArray[np.float64]]:
     """The compiled comparison over a ragged batch; years are those of the stations, in order.
 
+    forced : the forms to use whatever the choice says, (before, after), −1 for the choice's
+    own; or one such row an account.
     Returns fits (accounts, 2, forms, columns), chosen (accounts, 2), answers (accounts, …).
     """
     offered = np.ascontiguousarray(batch.wanted, dtype=np.bool_)
@@ -77,7 +79,8 @@ def run_batch(
     temp = [y.temp_f if y else np.empty(0) for y in years]
     days = [y.cum_days if y else np.zeros(1) for y in years]
     degrees = [y.cum_degrees if y else np.zeros(1) for y in years]
-    force = np.tile(np.array(forced, dtype=np.int8), (offered.shape[0], 1))
+    pairs = np.broadcast_to(np.asarray(forced, dtype=np.int8), (offered.shape[0], 2))
+    force = np.ascontiguousarray(pairs)
     fits: NDArray[np.float64]
     chosen: NDArray[np.int8]
     answers: NDArray[np.float64]
@@ -249,38 +252,12 @@ def _same_form(
         held = answers[0, HELD_BEFORE] == 1.0 or answers[0, HELD_AFTER] == 1.0
         method = METHOD_HELD if held else METHOD
         out.append(
-            (f.BY_CODE[code].name, _normalized(answers[0], confidence, method, bool(batch.net[0])))
+            (
+                f.BY_CODE[code].name,
+                normalized_of(answers[0], confidence, method, bool(batch.net[0])),
+            )
         )
     return tuple(out)
-
-
-def _estimate(
-    answer: NDArray[np.float64],
-    at: int,
-    over: float | None,
-    confidence: float,
-    method: str,
-    net: bool = False,
-) -> Estimate:
-    value, low, high, plain_low, plain_high = (float(x) for x in answer[at : at + 5])
-    share = over if over is not None and over > 0.0 else None
-    return Estimate(
-        value=value,
-        low=low,
-        high=high,
-        fraction=value / share if share else None,
-        fraction_low=low / share if share else None,
-        # Nobody can use less than nothing: no more than all of it can be saved.
-        fraction_high=(high if net else min(high, share)) / share if share else None,
-        plain_low=plain_low,
-        plain_high=plain_high,
-        confidence=confidence,
-        method=method,
-    )
-
-
-def _normalized(answer: NDArray[np.float64], confidence: float, method: str, net: bool) -> Estimate:
-    return _estimate(answer, NORMALIZED, float(answer[NAC_BEFORE]), confidence, method, net)
 
 
 def _assemble(
@@ -302,7 +279,7 @@ def _assemble(
     def side(at: int, reason: str, when: int | None, method: str) -> Estimate:
         if reason:
             return Estimate.none(reason, known_from=when, confidence=confidence)
-        return _estimate(answer, at, None, confidence, method)
+        return estimate_at(answer, at, None, confidence, method)
 
     normalized_no = before_no or no_year or after_no
     days = facts[1].days
@@ -314,7 +291,7 @@ def _assemble(
             reason, known_from=work.end + facts[0].typical, confidence=confidence
         )
     else:
-        avoided = _estimate(
+        avoided = estimate_at(
             answer, AVOIDED, float(answer[PREDICTED]), confidence, methods.avoided, net
         )
         if days < SHORT_YEAR_DAYS:
@@ -331,7 +308,7 @@ def _assemble(
                 confidence=confidence,
             )
             if normalized_no
-            else _normalized(answer, confidence, methods.both, net)
+            else normalized_of(answer, confidence, methods.both, net)
         ),
         avoided=avoided,
         before_unavailable=before_no,

@@ -16,7 +16,7 @@ from normalize.fitting.rho import RHO
 from normalize.fitting.side import choose, fit_side
 from normalize.fitting.student import no_tables, t_quantile
 from normalize.jit import kernel
-from normalize.savings.evidence import side_evidence
+from normalize.savings.one_side import side_evidence
 
 # Columns of an account's answer.  Each estimate has value, low, high, plain low, plain high.
 NAC_BEFORE: Final = 0

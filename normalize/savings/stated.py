@@ -50,22 +50,23 @@ def at_stated(
     middle: Answer | None = None
     hull: NDArray[np.float64] | None = None
     for tau in (STATED_F, *STATED_RANGE_F):
-        found = _held_at(batch, table, year, tau, confidence)
+        found = held_at(batch, table, year, tau, confidence)
         if np.isnan(found[0][0, 0, HEATING, BASE]):
             return None
         if middle is None:
             middle, hull = found, found[2].copy()
         elif hull is not None:
-            _widen(hull[0], found[2][0])
+            widen(hull[0], found[2][0])
     if middle is None or hull is None:
         return None
     middle[0][..., ON_BOUND] = 0.0  # where it was put, not where it ended
     return middle[0], middle[1], hull
 
 
-def _held_at(
+def held_at(
     batch: Batch, table: Stations, year: LongTermYear | None, tau: float, confidence: float
 ) -> Answer:
+    """The answers of a whole batch with heating's balance temperature put at ``tau``, °F."""
     from normalize.savings.compare import run_batch
 
     fixed = settings()
@@ -80,7 +81,8 @@ def _held_at(
     )  # fmt: skip
 
 
-def _widen(hull: NDArray[np.float64], other: NDArray[np.float64]) -> None:
+def widen(hull: NDArray[np.float64], other: NDArray[np.float64]) -> None:
+    """Widens the ranges of one answer, in place, to those of another."""
     for at in (NAC_BEFORE, NAC_AFTER, NORMALIZED, AVOIDED):
         for low in (at + 1, at + 3):
             hull[low] = np.fmin(hull[low], other[low])

@@ -17,6 +17,7 @@ SITE_TEXT: Final = """\
 [site]
 name = "My house"
 # floor_area_ft2 = 1840            # heated floor area, if you know it
+# heating_setpoint_f = 68          # mean indoor temperature in winter, for the expectation below
 
 [weather]
 observed = "station.csv"           # daily or hourly temperatures of the nearest good station
@@ -37,6 +38,8 @@ bills = "bills.csv"
 # price = 1.32                     # what one more unit costs, without the fixed charge
 # occupied_since = 2021-06-01      # leave out the bills of whoever lived there before
 # space_heating = false            # for an account that heats only water
+# efficiency = 0.80                # of the heating before the work; a heat pump's may be 2.5
+# heating_share = 0.7              # of the house's heat, where another fuel heats it too
 # net_metered = true               # for solar panels whose surplus goes to the grid
 # Where the bills leave something open, `normalize bills FILE` asks, and names the line to put
 # here: dates = "day first", read_day = 5, time_zone = "America/New_York", tank_size = 275 …
@@ -47,6 +50,34 @@ name = "attic insulation"
 start = 2023-09-11
 end = 2023-09-22
 # cost = 4150
+# accounts = ["gas"]               # which accounts it touches; without it, all
+
+# What the work consists of, to set an engineer's expectation beside what the bills show. As
+# many as there are, each of one kind: insulation, windows, air sealing, equipment, setback.
+# [[upgrade.component]]
+# kind = "insulation"
+# name = "attic floor"
+# area_ft2 = 920
+# r_before = 13                    # of the whole assembly, ft²·°F·h/Btu
+# r_after = 49
+# [[upgrade.component]]
+# kind = "windows"
+# area_ft2 = 150
+# u_before = 0.9                   # Btu/h·ft²·°F, frame included
+# u_after = 0.3
+# [[upgrade.component]]
+# kind = "air sealing"
+# blower_door_cfm50_before = 2600  # from a blower-door test at 50 Pa; divided by 20, or by
+# blower_door_cfm50_after = 2050   # blower_door_divisor. Else natural_cfm_before and _after.
+# [[upgrade.component]]
+# kind = "equipment"               # of the same fuel
+# efficiency_before = 0.80
+# efficiency_after = 0.95
+# share = 1.0                      # of the account's heating that it carries
+# [[upgrade.component]]
+# kind = "setback"
+# degrees_f = 6
+# hours_a_day = 8
 
 # What else changed? It is shown beside the answer, because bills cannot tell causes apart.
 # [[change]]

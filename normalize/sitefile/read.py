@@ -14,7 +14,16 @@ from typing import Final
 from normalize.days import iso
 from normalize.errors import MissingFile, SiteError, UnknownKey
 from normalize.fitting.forms import FORMS
-from normalize.sitefile.table import Table, line_numbers, nearest, shown
+from normalize.savings.components import Component
+from normalize.sitefile.components import (
+    EFFICIENCY_UNIT,
+    HIGHEST_EFFICIENCY,
+    LOWEST_EFFICIENCY,
+    MOST_COMPONENTS,
+    read_component,
+)
+from normalize.sitefile.drivers import read_day_types, read_drivers
+from normalize.sitefile.table import Table, line_numbers, must_exist, nearest, shown
 from normalize.sitefile.values import AccountPlan, Change, SiteFile, Upgrade, WeatherPlan
 from normalize.units import canonical_fuel, canonical_unit
 
@@ -26,8 +35,8 @@ HIGHEST_CO2: Final = 100_000.0  # kg a unit
 LARGEST_FLOOR_FT2: Final = 1e8  # the largest buildings are near 2e7 ft²
 HIGHEST_COST: Final = 1e12
 
-TABLES: Final = ("site", "weather", "account", "upgrade", "change")
-SITE_KEYS: Final = ("name", "floor_area_ft2", "currency")
+TABLES: Final = ("site", "weather", "account", "upgrade", "change", "driver", "day_types")
+SITE_KEYS: Final = ("name", "floor_area_ft2", "currency", "heating_setpoint_f")
 ACCOUNT_KEYS: Final = (
     "name",
     "fuel",
@@ -39,8 +48,10 @@ ACCOUNT_KEYS: Final = (
     "space_heating",
     "net_metered",
     "forms",
+    "efficiency",
+    "heating_share",
 )
-UPGRADE_KEYS: Final = ("name", "start", "end", "cost", "accounts")
+UPGRADE_KEYS: Final = ("name", "start", "end", "cost", "accounts", "component")
 CHANGE_KEYS: Final = ("what", "since", "until")
 WEATHER_KEYS: Final = (
     "observed",
@@ -124,14 +135,15 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
                 f"the table or key {shown(key)} is not known",
                 where=SITE_FILE,
                 next_step=f"{hint}site.toml may have [site], [weather], [[account]], [[upgrade]], "
-                "[[change]].",
+                "[[change]], [[driver]], [day_types].",
             )
     lines = line_numbers(text)
     site = _single(values, "site", lines)
     site.check_keys(SITE_KEYS)
     accounts = tuple(_account(t, folder) for t in _several(values, "account", lines))
     _check_accounts(accounts)
-    upgrades = tuple(_upgrade(t, accounts) for t in _several(values, "upgrade", lines))
+    upgrades = _upgrades(_several(values, "upgrade", lines), accounts)
+    day_types = read_day_types(_single(values, "day_types", lines), folder, accounts)
     return SiteFile(
         name=site.text("name") or folder.resolve().name or "site",
         folder=folder,
@@ -142,6 +154,9 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
         upgrades=upgrades,
         changes=tuple(_change(t) for t in _several(values, "change", lines)),
         sha256=hashlib.sha256(data).hexdigest(),
+        heating_setpoint_f=site.number("heating_setpoint_f", low=40.0, high=90.0, unit="°F"),
+        drivers=read_drivers(_several(values, "driver", lines), folder, accounts, day_types),
+        day_types=day_types,
     )
 
 
@@ -250,12 +265,12 @@ def _weather(table: Table, folder: Path) -> WeatherPlan:
             "each bill carries its mean temperature.",
         )
     if observed is not None:
-        _must_exist(observed, table.where("observed"))
+        must_exist(observed, table.where("observed"))
     file, years = _long_term(table, folder)
     reader = _reader(table, WEATHER_READER_KEYS)
     neighbour = table.path("neighbour", folder)
     if neighbour is not None:
-        _must_exist(neighbour, table.where("neighbour"))
+        must_exist(neighbour, table.where("neighbour"))
         reader["neighbour"] = neighbour
     return WeatherPlan(
         observed=observed,
@@ -277,7 +292,7 @@ def _files(table: Table, key: str, folder: Path) -> tuple[Path, ...]:
     files = []
     for name in names:
         path = replace(one, values={key: name}).required_path(key, folder)
-        _must_exist(path, table.where(key))
+        must_exist(path, table.where(key))
         files.append(path)
     return tuple(files)
 
@@ -303,20 +318,8 @@ def _long_term(weather: Table, folder: Path) -> tuple[Path | None, int]:
             wanted="one of the two",
         )
     if file is not None:
-        _must_exist(file, weather.where("long_term"))
+        must_exist(file, weather.where("long_term"))
     return file, years or 10
-
-
-def _must_exist(path: Path, where: str) -> None:
-    if path.is_file():
-        return
-    here = sorted(p.name for p in path.parent.iterdir()) if path.parent.is_dir() else []
-    guess = nearest(path.name, here)
-    raise MissingFile(
-        f"there is no file {shown(path.name)} in the folder",
-        where=where,
-        next_step=f"Did you mean {guess!r}?" if guess else "Put it there, or correct its name.",
-    )
 
 
 def _account(table: Table, folder: Path) -> AccountPlan:
@@ -335,6 +338,12 @@ def _account(table: Table, folder: Path) -> AccountPlan:
         space_heating=table.flag("space_heating", default=True),
         net_metered=table.flag("net_metered", default=False),
         forms=_forms(table),
+        efficiency=table.number(
+            "efficiency", low=LOWEST_EFFICIENCY, high=HIGHEST_EFFICIENCY, unit=EFFICIENCY_UNIT
+        ),
+        heating_share=table.number(
+            "heating_share", low=0.01, high=1.0, unit="share of the house's heat"
+        ),
         reader=_reader(table, BILL_READER_KEYS),
     )
 
@@ -376,7 +385,28 @@ def _check_accounts(accounts: tuple[AccountPlan, ...]) -> None:
         seen.add(account.name)
 
 
-def _upgrade(table: Table, accounts: tuple[AccountPlan, ...]) -> Upgrade:
+def _upgrades(tables: list[Table], accounts: tuple[AccountPlan, ...]) -> tuple[Upgrade, ...]:
+    upgrades: list[Upgrade] = []
+    components = 0  # so far in the file: lines are counted through all upgrades
+    for table in tables:
+        upgrades.append(_upgrade(table, accounts, components))
+        components += len(upgrades[-1].components)
+    return tuple(upgrades)
+
+
+def _components(upgrade: Table, before: int) -> tuple[Component, ...]:
+    if isinstance(upgrade.values.get("component"), dict):
+        raise upgrade.bad("component", "one table", "[[upgrade.component]] with two brackets")
+    tables = _several(upgrade.values, "component", upgrade.lines)
+    if len(tables) > MOST_COMPONENTS:
+        raise upgrade.bad("component", f"a list of {len(tables)}", f"at most {MOST_COMPONENTS}")
+    return tuple(
+        read_component(replace(t, label="[[upgrade.component]]", index=before + i))
+        for i, t in enumerate(tables)
+    )
+
+
+def _upgrade(table: Table, accounts: tuple[AccountPlan, ...], components: int) -> Upgrade:
     table.check_keys(UPGRADE_KEYS)
     start = table.days("start")
     if start is None:
@@ -405,6 +435,7 @@ def _upgrade(table: Table, accounts: tuple[AccountPlan, ...]) -> Upgrade:
         end=end[1],
         cost=table.number("cost", low=0.0, high=HIGHEST_COST, unit="the site's currency"),
         accounts=touched,
+        components=_components(table, components),
     )
 
 

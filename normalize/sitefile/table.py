@@ -14,7 +14,7 @@ from datetime import date, datetime
 from pathlib import Path, PurePosixPath, PureWindowsPath
 
 from normalize.days import FIRST_SANE_DAY, LAST_SANE_DAY, day_of
-from normalize.errors import SiteError, UnknownKey
+from normalize.errors import MissingFile, SiteError, UnknownKey
 
 MAX_TEXT = 200  # characters of a name or a note: longer is a slip of the paste key
 _MONTH = re.compile(r"(\d{4})-(\d{2})")
@@ -196,6 +196,19 @@ class Table:
                 next_step="Copy the file into the folder and give its name alone.",
             )
         return folder / text
+
+
+def must_exist(path: Path, where: str) -> None:
+    """Raise MissingFile where there is no such file, naming one that is there and much like it."""
+    if path.is_file():
+        return
+    here = sorted(p.name for p in path.parent.iterdir()) if path.parent.is_dir() else []
+    guess = nearest(path.name, here)
+    raise MissingFile(
+        f"there is no file {shown(path.name)} in the folder",
+        where=where,
+        next_step=f"Did you mean {guess!r}?" if guess else "Put it there, or correct its name.",
+    )
 
 
 def shown(value: object) -> str:

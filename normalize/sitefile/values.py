@@ -8,6 +8,8 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from pathlib import Path
 
+    from normalize.savings.components import Component
+
 
 @dataclass(frozen=True, slots=True)
 class Upgrade:
@@ -21,6 +23,7 @@ class Upgrade:
     end: int
     cost: float | None = None
     accounts: tuple[str, ...] = ()  # the accounts it touches; empty means all
+    components: tuple[Component, ...] = ()  # what it consists of, for an engineer's expectation
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +44,8 @@ class AccountPlan:
     price : of the last unit, in the site's currency.  co2_kg_per_unit : kg of CO₂.
     occupied_since : day number; bills before it belong to an earlier occupant.
     forms : the forms to try; None for those that suit the fuel.
+    efficiency : of the heating before the work, heat out per heat in over a season.
+    heating_share : share of the house's heat that this account carries.
     reader : answers to the bill reader's questions, its keywords.
     """
 
@@ -55,6 +60,8 @@ class AccountPlan:
     net_metered: bool = False
     forms: tuple[str, ...] | None = None
     reader: dict[str, object] = field(default_factory=dict)
+    efficiency: float | None = None
+    heating_share: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,8 +89,46 @@ class WeatherPlan:
 
 
 @dataclass(frozen=True, slots=True)
+class DriverPlan:
+    """Something beside the weather that drives use: occupied units, production, school days.
+
+    file : with a value a day, a month or a stretch of days; None for a column of the bill file.
+    accounts : that it applies to; empty means all.  normal : its level on a day of a normal
+    year.  normal_per_year : its sum over a normal year.  reader : how its values are read.
+    """
+
+    name: str
+    file: Path | None = None
+    accounts: tuple[str, ...] = ()
+    normal: float | None = None
+    normal_per_year: float | None = None
+    reader: dict[str, str] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
+class DayTypesPlan:
+    """Kinds of days that may use more or less than others.
+
+    weekend : days of the week, Monday is 0.  holidays : day numbers, or holidays_file.
+    school_terms : day numbers ``[start, end)``.  accounts : empty means all.
+    """
+
+    weekend: tuple[int, ...]
+    holidays: tuple[int, ...] = ()
+    holidays_file: Path | None = None
+    school_terms: tuple[tuple[int, int], ...] = ()
+    accounts: tuple[str, ...] = ()
+    holidays_per_year: float | None = None
+    school_days_per_year: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class SiteFile:
-    """site.toml, read and checked. sha256 : of the file's bytes."""
+    """site.toml, read and checked.
+
+    sha256 : of the file's bytes.  heating_setpoint_f : mean indoor temperature in the heating
+    season, °F.
+    """
 
     name: str
     folder: Path
@@ -94,3 +139,6 @@ class SiteFile:
     upgrades: tuple[Upgrade, ...]
     changes: tuple[Change, ...]
     sha256: str
+    heating_setpoint_f: float | None = None
+    drivers: tuple[DriverPlan, ...] = ()
+    day_types: DayTypesPlan | None = None

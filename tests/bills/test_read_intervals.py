@@ -245,8 +245,8 @@ def test_an_unknown_zone(tmp_path: Path) -> None:
 def test_no_more_lines_than_a_century_of_quarter_hours(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    import normalize.bills.intervals as intervals
+    import normalize.bills.interval_file as interval_file
 
-    monkeypatch.setattr(intervals, "MAX_LINES", 50)
+    monkeypatch.setattr(interval_file, "MAX_LINES", 50)
     with pytest.raises(UnreadableBills, match="more than 50 lines"):
         read(["Timestamp,kWh", *(f"{h:%Y-%m-%d %H:%M},0.5" for h in HOURS)], tmp_path)

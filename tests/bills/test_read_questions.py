@@ -43,12 +43,6 @@ QUESTIONS: dict[str, tuple[str, dict[str, Any], str, list[dict[str, Any]]]] = {
         'end_dates = "inclusive" or end_dates = "exclusive"',
         [{"end_dates": "inclusive"}, {"end_dates": "exclusive"}],
     ),
-    "a single bill": (
-        H + "2023-01-05,2023-02-06,81\n",
-        {},
-        'end_dates = "inclusive"',
-        [{"end_dates": "inclusive"}],
-    ),
     "unit": (
         "Start,End,Usage\n2023-01-05,2023-02-06,81\n2023-02-06,2023-03-07,70\n",
         {"fuel": "natural gas"},
@@ -107,6 +101,35 @@ QUESTIONS: dict[str, tuple[str, dict[str, Any], str, list[dict[str, Any]]]] = {
         [],
     ),
 }
+
+
+@pytest.mark.parametrize(
+    ("text", "options"),
+    [
+        (H + "2023-01-05,2023-02-06,81\n", {}),
+        (H + "1/5/2023,2/6/2023,81\nTotal,,81\n", {}),
+        ("Month,Usage\nJan-23,81\n", {"fuel": "natural gas"}),
+        ("Start;End;kWh\n2023-01-05;2023-02-06;1,234\n", {}),
+    ],
+)
+def test_one_bill_alone_is_not_asked_about(
+    text: str, options: dict[str, Any], tmp_path: Path
+) -> None:
+    """No answer could make one bill enough; what is needed is said instead."""
+    file = tmp_path / "bills.csv"
+    file.write_text(text)
+    with pytest.raises(NoBills, match="one bill alone cannot show") as told:
+        read_bills(file, **options)
+    assert "At least 270 days of bills on each side of the work" in str(told.value)
+    assert "Put " not in str(told.value)
+
+
+def test_one_bill_with_the_answer_given_is_read(tmp_path: Path) -> None:
+    file = tmp_path / "bills.csv"
+    file.write_text(H + "2023-01-05,2023-02-05,81\n")
+    bills = read_bills(file, end_dates="inclusive")
+    assert bills.periods.days.tolist() == [32]
+    assert any("One bill alone" in said for said in bills.cautions)
 
 
 @pytest.mark.parametrize("name", QUESTIONS)
@@ -201,7 +224,7 @@ NONSENSE: dict[str, tuple[bytes, str]] = {
     "broken zip": (b"PK\x03\x04garbage", "cannot be read"),
     "open quote": (H.encode() + b'2023-01-05,"' + b"x\n" * 90_000, "split into columns"),
     "a very long line": (H.encode() + b"x," * 60_000, "a line of more than"),
-    "very many lines": (H.encode() + b"\n" * 200_001, "more than 200,000 lines"),
+    "very many lines": (H.encode() + b"\n" * 1_000_001, "more than 1,000,000 lines"),
     "a very long cell": (H.encode() + b"2023-01-05,2023-02-06," + b"9" * 6000, "a cell"),
     "many columns": (H.encode() + b"," * 1000, "more than 500 columns"),
     "year 0 and month 13": (H.encode() + b"0000-01-01,2023-13-01,5\n", "the one bill there is"),

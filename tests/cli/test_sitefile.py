@@ -11,6 +11,7 @@ from hypothesis import strategies as st
 
 from normalize.days import day_of_iso
 from normalize.errors import MissingFile, NormalizeError, SiteError, UnknownKey
+from normalize.savings.components import KINDS, kind_of
 from normalize.sitefile import read_site_file, write_new_site
 
 GOOD = """\
@@ -294,6 +295,13 @@ def test_a_new_site_can_be_read_once_its_weather_is_there(tmp_path: Path) -> Non
     assert len(site.upgrades) == 1
 
 
+def blocks_of(lines: list[str]) -> list[tuple[int, int]]:
+    """Where each commented [[upgrade.component]] starts, and the line after its last."""
+    starts = [i for i, line in enumerate(lines) if line == "# [[upgrade.component]]"]
+    ends = [*starts[1:], next(i for i in range(starts[-1], len(lines)) if not lines[i])]
+    return list(zip(starts, ends, strict=True))
+
+
 def test_every_example_in_a_new_site_is_true_when_uncommented(tmp_path: Path) -> None:
     folder = tmp_path / "new"
     write_new_site(folder)
@@ -304,7 +312,10 @@ def test_every_example_in_a_new_site_is_true_when_uncommented(tmp_path: Path) ->
         i for i, line in enumerate(lines) if line.split()[:1] + line.split()[2:3] == ["#", "="]
     ]
     assert len(examples) >= 8
+    inside = blocks_of(lines)
     for i in examples:
+        if any(start < i < end for start, end in inside):
+            continue  # the lines of a component go together, below
         if lines[i].split()[1] in ("what", "since"):
             continue  # the two lines of [[change]] go together, below
         text = [*lines[:i], lines[i][2:], *lines[i + 1 :]]
@@ -313,6 +324,14 @@ def test_every_example_in_a_new_site_is_true_when_uncommented(tmp_path: Path) ->
             (folder / "typical_year.epw").write_text("")
         (folder / "site.toml").write_text("\n".join(text), encoding="utf-8")
         read_site_file(folder)
+    kinds = set()
+    for first, end in inside:
+        block = [line.removeprefix("# ") for line in lines[first:end]]
+        text = [*lines[:first], *block, *lines[end:]]
+        (folder / "site.toml").write_text("\n".join(text), encoding="utf-8")
+        (component,) = read_site_file(folder).upgrades[0].components
+        kinds.add(kind_of(component))
+    assert kinds == set(KINDS)
     start = next(i for i, line in enumerate(lines) if line == "# [[change]]")
     text = [*lines[:start]] + [line.removeprefix("# ") for line in lines[start:]]
     (folder / "site.toml").write_text("\n".join(text), encoding="utf-8")

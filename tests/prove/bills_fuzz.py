@@ -19,9 +19,9 @@ from pathlib import Path
 from normalize.bills.read import read_bills
 from normalize.bills.repair import reconcile
 from normalize.errors import NormalizeError
+from tests.bills.corpus import CORPUS
 from tests.bills.espi_makers import gas
 from tests.bills.hostile import workbook
-from tests.bills.test_read_corpus import CORPUS
 from tests.bills.test_read_espi import GOOD
 
 NASTY = (
