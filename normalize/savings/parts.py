@@ -115,6 +115,9 @@ def parts_of(
     the same bits.
     """
     savings = found.savings
+    if aligned.drivers is not None:
+        names = " and ".join(aligned.drivers.names)
+        return Parts(unavailable=f"use was fitted with {names} beside the weather")
     if savings.before is None:
         return Parts(unavailable=savings.before_unavailable or REASONS[NO_FIT])
     fits = np.full((1, 2, N_FORMS, WIDTH), np.nan)

@@ -60,34 +60,52 @@ def load_at(tau, cooling, temp, days, degrees):
 
 
 @kernel
-def _one_load(value, g1, g2, p, q, b1, b2, load1, load2):
-    """Writes the part of a slope (column p) and adds that of its balance temperature (q)."""
+def _one_load(value, g1, g2, p, q, drivers, b1, b2, load1, load2):
+    """Writes the part of a slope (p) and adds that of its balance temperature (q).
+
+    Their columns of θ stand that many drivers further right.
+    """
     l1, d1 = load1
     l2, d2 = load2
     mean_load = 0.5 * (l1 + l2)
     mean_slope = 0.5 * (b1 + b2)
     value[p] = (b1 - b2) * mean_load
-    g1[p, p] = mean_load
-    g2[p, p] = mean_load
-    g1[p, q] = 0.5 * (b1 - b2) * d1
-    g2[p, q] = -0.5 * (b1 - b2) * d2
+    slope = p + drivers
+    balance = q + drivers
+    g1[p, slope] = mean_load
+    g2[p, slope] = mean_load
+    g1[p, balance] = 0.5 * (b1 - b2) * d1
+    g2[p, balance] = -0.5 * (b1 - b2) * d2
     value[q] += mean_slope * (l1 - l2)
-    g1[q, p] = 0.5 * (l1 - l2)
-    g2[q, p] = -0.5 * (l1 - l2)
-    g1[q, q] += mean_slope * d1
-    g2[q, q] += mean_slope * d2
+    g1[q, slope] = 0.5 * (l1 - l2)
+    g2[q, slope] = -0.5 * (l1 - l2)
+    g1[q, balance] += mean_slope * d1
+    g2[q, balance] += mean_slope * d2
+
+
+@kernel
+def parts_in(form):
+    """How many parts a form's savings have: one for each parameter."""
+    if form in (HEATING, COOLING):
+        return 3
+    if form >= TWO_SLOPES:
+        return 4 if form == TWO_SLOPES else 5
+    return 2 if form == LINE else 1
 
 
 @kernel
 def parts_about(row1, row2, form, k, temp, days, degrees):
-    """(k,) parts, and their gradients on either side (k, k): part = g1·θ1 − g2·θ2 about the fit.
+    """(m,) parts, and their gradients on either side (m, k): part = g1·θ1 − g2·θ2 about the fit.
 
-    Parts stand in the order of the Jacobian's columns: base load, slopes, balance temperatures.
+    k : columns of the Jacobian: base load, drivers if there are any (no part is theirs: in a
+    normal year they stand at their normal level), slopes, balance temperatures.  Parts stand in
+    that order.
     """
     last = days.shape[0] - 1
-    value = np.zeros(k)
-    g1 = np.zeros((k, k))
-    g2 = np.zeros((k, k))
+    m = parts_in(form)
+    value = np.zeros(m)
+    g1 = np.zeros((m, k))
+    g2 = np.zeros((m, k))
     value[0] = days[last] * (row1[BASE] - row2[BASE])
     g1[0, 0] = days[last]
     g2[0, 0] = days[last]
@@ -96,8 +114,8 @@ def parts_about(row1, row2, form, k, temp, days, degrees):
         from_shift = degrees[last] - SHIFT_F * days[last]
         value[0] += days[last] * SHIFT_F * slope
         value[1] = slope * from_shift
-        g1[1, 1] = from_shift
-        g2[1, 1] = from_shift
+        g1[1, k - 1] = from_shift
+        g2[1, k - 1] = from_shift
         return value, g1, g2
     heating = form == HEATING or form >= TWO_SLOPES
     cooling = form == COOLING or form >= TWO_SLOPES
@@ -105,7 +123,7 @@ def parts_about(row1, row2, form, k, temp, days, degrees):
     q = 3 if heating and cooling else 2
     if heating:
         _one_load(
-            value, g1, g2, p, q, row1[SLOPE_H], row2[SLOPE_H],
+            value, g1, g2, p, q, k - m, row1[SLOPE_H], row2[SLOPE_H],
             load_at(row1[TAU_H], False, temp, days, degrees),
             load_at(row2[TAU_H], False, temp, days, degrees),
         )  # fmt: skip
@@ -113,7 +131,7 @@ def parts_about(row1, row2, form, k, temp, days, degrees):
         q += 1 if form > TWO_SLOPES else 0
     if cooling:
         _one_load(
-            value, g1, g2, p, q, row1[SLOPE_C], row2[SLOPE_C],
+            value, g1, g2, p, q, k - m, row1[SLOPE_C], row2[SLOPE_C],
             load_at(row1[TAU_C], True, temp, days, degrees),
             load_at(row2[TAU_C], True, temp, days, degrees),
         )  # fmt: skip
@@ -209,8 +227,9 @@ def take_apart(parts, slopes, row1, form1, side1, row2, form2, side2, year, hold
     g1 = none
     g2 = np.zeros((0, k2))
     if why == KNOWN:
-        m = k
-        value, g1, g2 = parts_about(row1, row2, form1, k, temp, days, degrees)
+        m = parts_in(form1)
+        value, g1, _ = parts_about(row1, row2, form1, k, temp, days, degrees)
+        _, _, g2 = parts_about(row1, row2, form1, k2, temp, days, degrees)
     heating2 = _has_heating(form2)
     like, sh, sc = _through(jac, resid, w, s, e, _targets(g1, m, k, heating1))
     like2, sh2, sc2 = _through(jac2, resid2, w2, s2, e2, _targets(g2, m, k2, heating2))

@@ -150,6 +150,23 @@ def test_every_gradient_is_the_derivative_of_its_part(form: str) -> None:
 
 
 @pytest.mark.parametrize("form", PARTS)
+def test_drivers_stand_aside(form: str) -> None:
+    """Columns of drivers lie between base load and slopes and have no part."""
+    rng = np.random.default_rng(3)
+    one, two = parameters(form, rng), parameters(form, rng)
+    value, *plain = about(form, one, two)
+    code, k = f.form_named(form).code, one.shape[0]
+    wide, *more = parts_about(
+        row_of(form, one), row_of(form, two), code, k + 2,
+        YEAR.temp_f, YEAR.cum_days, YEAR.cum_degrees,
+    )  # fmt: skip
+    assert wide.tobytes() == value.tobytes()
+    for gradient, wider in zip(plain, more, strict=True):
+        assert not wider[:, 1:3].any()
+        assert np.delete(wider, [1, 2], axis=1).tobytes() == gradient.tobytes()
+
+
+@pytest.mark.parametrize("form", PARTS)
 @given(seed=st.integers(0, 2**32 - 1))
 @settings(max_examples=60, deadline=None)
 def test_the_parts_and_their_gradients_add_up_exactly(form: str, seed: int) -> None:
