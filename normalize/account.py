@@ -11,7 +11,7 @@ from normalize.errors import NormalizeError
 from normalize.fitting.align import Aligned, align
 from normalize.savings.again import Asked
 from normalize.savings.cautions import Circumstances, cautions_of
-from normalize.savings.checks import checks_of
+from normalize.savings.checks import checks_of, moved_before
 from normalize.savings.compare import Comparison, compare
 from normalize.savings.components import Equipment
 from normalize.savings.expectation import House, expectation_of
