@@ -10,6 +10,8 @@ from normalize.bills.deliveries import k_factor
 from normalize.errors import NormalizeError
 from normalize.fitting.align import Aligned, align
 from normalize.savings.again import Asked
+from normalize.savings.break_words import caution_sentences
+from normalize.savings.breaks import breaks_of
 from normalize.savings.cautions import Circumstances, cautions_of
 from normalize.savings.checks import checks_of, moved_before
 from normalize.savings.compare import Comparison, compare
@@ -31,6 +33,7 @@ from normalize.units import FUELS, Factor, co2_kg_per_unit, mmbtu_per_unit
 if TYPE_CHECKING:
     from normalize.bills.periods import Bills
     from normalize.fitting.results import Fit
+    from normalize.savings.break_results import Breaks
 
 NEAR_WORK_DAYS = 60
 DEALERS_BASE_F = 65.0  # of the degree-days in a dealer's K factor (common practice, no source)
@@ -89,6 +92,7 @@ def assess_account(
     if closely and not bills.unfit:
         asked = Asked(aligned, site.year, forms, confidence, net, found.stated_f is not None)
         close = scrutinise(asked, found, work_start=work.start, delivered=bills.kind == "delivery")
+    changed = None if bills.unfit or not closely else _breaks(site, plan, aligned, found, work, net)
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
     rows = period_rows(bills, aligned, found)
     unavailable = ""
@@ -116,16 +120,39 @@ def assess_account(
             without=close.without,
             placebo=close.placebo,
         ),
-        cautions=cautions_of(savings, price, _circumstances(site, plan, bills, found, work, rows)),
+        cautions=(
+            *caution_sentences(changed, work.start, work.end, bills.unit),
+            *cautions_of(savings, price, _circumstances(site, plan, bills, found, work, rows)),
+            *moved_before(close.placebo),
+        ),
         k_factors=_k_factors(bills, aligned, found),
         work_start=work.start,
         work_end=work.end,
         evidence=close.evidence,
         without=close.without,
         placebo=close.placebo,
+        breaks=changed,
         **(
             _read_closely(site, plan, bills, aligned, found, savings, confidence) if closely else {}
         ),
+    )
+
+
+def _breaks(
+    site: Site, plan: AccountPlan, aligned: Aligned, found: Comparison, work: Work, net: bool
+) -> Breaks:
+    """When use changed, over the account's whole history."""
+    fits = (found.savings.before, found.savings.after)
+    return breaks_of(
+        aligned,
+        found.labels,
+        work,
+        site.year,
+        forms=forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms),
+        chosen=[fit.form for fit in fits if fit is not None],
+        net=net,
+        stated_f=found.stated_f,
+        declared=[(c.what, c.since, c.until) for c in site.changes],
     )
 
 

@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from normalize.bills.periods import Bills
     from normalize.fitting.drivers import DailyAmounts
     from normalize.fitting.results import FormTried
+    from normalize.savings.break_results import Breaks
     from normalize.savings.evidence import SideEvidence
     from normalize.savings.expectation import Expectation
     from normalize.savings.heat_loss import HeatLoss
@@ -140,6 +141,7 @@ class AccountResult:
     without: tuple[Without, ...] = ()  # the answer without each bill in use
     placebo: Placebo | None = None  # invented work dates before the work, or why there are none
     drivers: DriverReport | None = None  # None where site.toml names no driver for the account
+    breaks: Breaks | None = None  # when use changed; None where it was not asked
 
     @property
     def has_answer(self) -> bool:

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any, Final, NamedTuple
 from normalize.errors import UnwritableReport
 from normalize.fitting.forms import FORMS
 from normalize.report import (
+    breaks,
     drivers,
     look,
     parts,
@@ -22,6 +23,7 @@ from normalize.report import (
     words,
 )
 from normalize.report import numbers as n
+from normalize.report.figure_breaks import breaks_figure
 from normalize.report.figure_placebo import placebo_figure
 from normalize.report.figure_spread import spread_figure
 from normalize.report.figures import figures_of
@@ -155,6 +157,7 @@ def _account(
         **_firm(account, result, number, say, classes),
         **_placebo(account, number, say, classes),
         **_drivers(account, say),
+        **_breaks(account, number, say, classes),
         **_close(account, say),
         **_behind(account, result, say),
     }
@@ -187,6 +190,18 @@ def _placebo(
         "placebo": [say(s) for s in placebo_words.sentences(account)],
         "placebo_figure": _shown(placebo_figure(account, f"a{number}-placebo"), classes),
         "placebo_table": _hidden(table, say) if table is not None else None,
+    }
+
+
+def _breaks(
+    account: AccountResult, number: int, say: Callable[[str], str], classes: dict[str, str]
+) -> dict[str, Any]:
+    """When use changed: sentences, picture and table."""
+    table = breaks.table_of(account)
+    return {
+        "breaks": [say(s) for s in breaks.sentences(account)],
+        "breaks_figure": _shown(breaks_figure(account, f"a{number}-breaks"), classes),
+        "breaks_table": _hidden(table, say) if table is not None else None,
     }
 
 

@@ -11,6 +11,7 @@ import math
 from typing import TYPE_CHECKING, Any, Final
 
 from normalize.days import iso
+from normalize.report import breaks
 from normalize.report.drivers import drivers_json
 from normalize.report.parts_json import close_reading
 
@@ -172,6 +173,7 @@ def _account(account: AccountResult) -> Json:
         ],
         **close_reading(account, _estimate),
         "drivers": drivers_json(account, _estimate),
+        "breaks": breaks.as_json(account.breaks),
         "cautions": list(account.cautions),
     }
 

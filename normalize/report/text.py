@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
 
 from normalize.report import (
+    breaks,
     checks_words,
     drivers,
     parts,
@@ -231,10 +232,23 @@ def _drivers(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
     yield from ["", *sheet.table(told.answers, keep=range(4))]
 
 
+def _breaks(account: AccountResult, sheet: _Sheet) -> Iterator[str]:
+    """When use changed."""
+    told = breaks.sentences(account)
+    if told:
+        yield from ["", "When did it change?"]
+    for sentence in told:
+        yield from sheet.wrap(n.clean(sentence))
+    table = breaks.table_of(account)
+    if table is not None:
+        yield from ["", *sheet.table(table)]
+
+
 def _behind(account: AccountResult, result: SiteResult, sheet: _Sheet) -> Iterator[str]:
     """Statistics, checks, factors and the ledger of one account."""
     save = account.savings
     yield from _drivers(account, sheet)
+    yield from _breaks(account, sheet)
     yield from _close(account, sheet)
     if save.before is not None or save.after is not None:
         yield from ["", *sheet.table(tables.statistics_table(account))]
