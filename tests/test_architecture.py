@@ -14,7 +14,7 @@ PACKAGE = Path(__file__).parents[1] / "normalize"
 FLOORS = (
     ("errors",),
     ("days", "defaults"),
-    ("jit", "units"),
+    ("jit", "units", "text_files"),
     ("bills", "weather"),
     ("fitting",),
     ("savings",),
@@ -36,8 +36,8 @@ ENTRANCES = {"__init__", "__main__"}  # of the package itself: doors to everythi
 MAX_LINES = 600  # the aim is 400
 FAR_TOO_HEAVY = {"statsmodels"}  # 0.7 s and more: only inside the functions that need it
 HEAVY = {"pandas", "statsmodels", "matplotlib", "openpyxl", "jinja2", "fpdf", "scipy"}
-SAVINGS_PATH = ("errors", "days", "defaults", "jit", "units", "bills", "weather", "fitting",
-                "savings", "sitefile", "site")  # fmt: skip
+SAVINGS_PATH = ("errors", "days", "defaults", "jit", "units", "text_files", "bills", "weather",
+                "fitting", "savings", "sitefile", "site")  # fmt: skip
 LIGHT = ("cli", "sitefile", "errors", "days", "defaults", "units")  # no science when imported
 SCIENCE = HEAVY | {"numpy", "numba"}
 

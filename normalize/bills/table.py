@@ -11,13 +11,13 @@ import csv
 import hashlib
 import io
 import os
-import stat
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
 
-from normalize.errors import AmbiguousBills, MissingFile, UnreadableBills
+from normalize.errors import AmbiguousBills, UnreadableBills
+from normalize.text_files import GZIP, UTF16_MARKS, decoded, encoding_of, kind_of, read_bytes
 
 Cell = str | int | float | date | None
 Score = Callable[[Sequence[Cell]], float]
@@ -32,15 +32,13 @@ LIKELY_HEADER = 10.0  # score of a line with a date and an amount heading (our o
 COUNTED_BYTES = 1_000_000  # in which lines are counted, to tell a long file from a short one
 HEADER_LINES = 60  # a header is looked for in this many rows from the top
 
-_UTF16 = (b"\xff\xfe", b"\xfe\xff")
 _DELIMITERS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "bar"}
-_NOT_TABLES = (
-    (b"\xd0\xcf\x11\xe0", "an old Excel workbook (.xls)", "Save it as .xlsx or CSV."),
-    (b"%PDF", "a PDF", "Type the bills into a template (normalize new) or ask for a CSV export."),
-    (b"\x89PNG", "a picture", "Type the bills into a template (normalize new)."),
-    (b"\xff\xd8\xff", "a picture", "Type the bills into a template (normalize new)."),
-    (b"\x1f\x8b", "a compressed file", "Unpack it first."),
-)
+_CURES = {
+    "an old Excel workbook (.xls)": "Save it as .xlsx or CSV.",
+    "a PDF": "Type the bills into a template (normalize new) or ask for a CSV export.",
+    "a picture": "Type the bills into a template (normalize new).",
+    "a compressed file": "Unpack it first.",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -124,36 +122,15 @@ def read_tables(file: BillFile, *, score: Score, sheet: str | None = None) -> li
 
 
 def _bytes_of(file: Path) -> bytes:
-    try:
-        info = file.stat()
-        if stat.S_ISDIR(info.st_mode):
-            raise UnreadableBills(
-                "this is a folder", where=file.name, wanted="one CSV or XLSX file of bills"
-            )
-        if not stat.S_ISREG(info.st_mode):
-            raise UnreadableBills("this is not an ordinary file", where=file.name)
-        if info.st_size > MAX_BYTES:
-            raise UnreadableBills(
-                f"the file has {info.st_size / 1e6:,.0f} MB",
-                where=file.name,
-                wanted=f"at most {MAX_BYTES / 1e6:.0f} MB",
-                next_step="Check that it is a file of bills.",
-            )
-        data = file.read_bytes()
-    except FileNotFoundError:
-        raise MissingFile(
-            "there is no such file", where=file.name, next_step="Check the name and the folder."
-        ) from None
-    except (OSError, ValueError) as err:  # ValueError: a NUL in the path
-        reason = err.strerror if isinstance(err, OSError) and err.strerror else "its name is odd"
-        raise UnreadableBills(f"the file cannot be opened ({reason})", where=file.name) from None
-    if not data or data.isspace():
+    data = read_bytes(file, most=MAX_BYTES, wanted="a table of bills", error=UnreadableBills)
+    if data.isspace():
         raise UnreadableBills("the file is empty", where=file.name, wanted="a table of bills")
-    for magic, what, cure in _NOT_TABLES:
-        if data.startswith(magic):
-            raise UnreadableBills(
-                f"this is {what}", where=file.name, wanted="a CSV or XLSX table", next_step=cure
-            )
+    what = "a compressed file" if data.startswith(GZIP) else kind_of(data)
+    if what:
+        raise UnreadableBills(
+            f"this is {what}", where=file.name, wanted="a CSV or XLSX table",
+            next_step=_CURES.get(what, "Look for a CSV export at the same place."),
+        )  # fmt: skip
     return data
 
 
@@ -170,13 +147,13 @@ class CsvHead:
 def csv_head(file: BillFile, score: Score) -> CsvHead | None:
     """The first lines of a CSV file without reading the rest; None if it is none."""
     data = file.data
-    if data.startswith(b"PK") or (b"\0" in data[:4000] and not data.startswith(_UTF16)):
+    if data.startswith(b"PK") or (b"\0" in data[:4000] and not data.startswith(UTF16_MARKS)):
         return None
     lines = data.count(b"\n", 0, COUNTED_BYTES)
     sample = data[: 32 * 1024]
     if lines < 2 or b"\n" not in sample:
         return None
-    encoding = _encoding_of(data)
+    encoding = encoding_of(data)
     cut = sample.rfind(b"\n")
     text = sample[:cut].decode(encoding, errors="replace").lstrip("\ufeff")
     if "\0" in text:
@@ -189,21 +166,9 @@ def csv_head(file: BillFile, score: Score) -> CsvHead | None:
     return CsvHead(rows, delimiter, lines, encoding) if rows else None
 
 
-def _encoding_of(data: bytes) -> str:
-    if data.startswith(_UTF16):
-        return "utf-16"
-    if data.isascii():
-        return "ascii"
-    try:
-        data.decode("utf-8")
-    except UnicodeDecodeError:
-        return "cp1252"
-    return "utf-8-sig"
-
-
 def _text_of(data: bytes, name: str) -> str:
     """Decoded text: by its byte order mark, else UTF-8, UTF-16 without a mark, cp1252."""
-    text = _decoded(data)
+    text = decoded(data)
     if "\0" in text:
         raise UnreadableBills(
             "the file holds bytes that are no text", where=name, wanted="a CSV or XLSX table"
@@ -223,20 +188,6 @@ def _text_of(data: bytes, name: str) -> str:
     if any(len(line) > MAX_LINE for line in text.split("\n")):
         raise _too_big(name, f"a line of more than {MAX_LINE:,} characters")
     return text
-
-
-def _decoded(data: bytes) -> str:
-    if data.startswith(_UTF16):
-        return data.decode("utf-16", errors="replace")
-    sample = data[:4000]
-    if len(sample) > 8 and sample[1::2].count(0) > 0.4 * len(sample[1::2]):
-        return data.decode("utf-16-le", errors="replace")
-    if len(sample) > 8 and sample[0::2].count(0) > 0.4 * len(sample[0::2]):
-        return data.decode("utf-16-be", errors="replace")
-    try:
-        return data.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        return data.decode("cp1252", errors="replace")
 
 
 def _delimiter_of(text: str, score: Score) -> str:

@@ -10,21 +10,13 @@ from pathlib import Path
 from typing import Final
 
 from normalize.errors import UnreadableWeather
+from normalize.text_files import GZIP, WORKBOOK, encoding_of, kind_of, read_bytes
 
 MAX_BYTES: Final = 300 * 1024 * 1024  # 30 years of hourly rows are about 30 MB
 HEAD_BYTES: Final = 64 * 1024  # what a recogniser may look at
 MAX_NAME: Final = 80  # characters of a station's name that are kept
 
-GZIP: Final = b"\x1f\x8b"  # how a compressed file begins
-
-# What a file that is not text starts with, and what to do about it.
-_NOT_TEXT: Final = (
-    (b"PK\x03\x04", "is a workbook or a zip archive", "Save the table as CSV, or unpack it."),
-    (b"%PDF", "is a PDF", "Download the data as CSV."),
-    (b"\xd0\xcf\x11\xe0", "is an old Excel workbook", "Save the table as CSV."),
-    (b"\x89HDF", "is a binary data file", "Export the daily temperatures as CSV."),
-    (b"CDF", "is a binary data file", "Export the daily temperatures as CSV."),
-)
+_CSV: Final = "Save the table, or download the data, as CSV."
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,33 +46,10 @@ class SourceFile:
 def read_source(path: str | Path) -> SourceFile:
     """Read a file's bytes; UnreadableWeather when there is no readable text in it."""
     path = Path(path)
-    try:
-        size = path.stat().st_size
-        if path.is_dir():
-            raise UnreadableWeather(
-                "is a folder",
-                where=path.name,
-                wanted="one weather file",
-                next_step="Name the file.",
-            )
-        if size > MAX_BYTES:
-            raise UnreadableWeather(
-                f"is {size / 1024**2:.0f} MB",
-                where=path.name,
-                wanted=f"at most {MAX_BYTES // 1024**2} MB",
-                next_step="Keep the years and the columns that are needed.",
-            )
-        data = path.read_bytes()
-    except FileNotFoundError:
-        raise UnreadableWeather(
-            "there is no such file", where=str(path), next_step="Check the name and the folder."
-        ) from None
-    except (OSError, ValueError) as err:
-        raise UnreadableWeather(
-            f"cannot be opened ({type(err).__name__})",
-            where=path.name,
-            next_step="Check that it is a readable file.",
-        ) from None
+    data = read_bytes(
+        path, most=MAX_BYTES, wanted="a weather file", error=UnreadableWeather,
+        missing=UnreadableWeather,
+    )  # fmt: skip
     sha256 = hashlib.sha256(data).hexdigest()
     if data.startswith(GZIP):
         data = unpacked(data, path.name)
@@ -132,9 +101,10 @@ def _refuse_empty_or_binary(name: str, data: bytes) -> None:
             wanted="a table of daily or hourly temperatures",
             next_step="Download it again.",
         )
-    for magic, what, do in _NOT_TEXT:
-        if data.startswith(magic):
-            raise UnreadableWeather(f"the file {what}", where=name, wanted="text", next_step=do)
+    what = "a workbook or a zip archive" if data.startswith(WORKBOOK) else kind_of(data)
+    if what:
+        cure = "Save the table as CSV, or unpack it." if data.startswith(WORKBOOK) else _CSV
+        raise UnreadableWeather(f"the file is {what}", where=name, wanted="text", next_step=cure)
 
 
 def decode(source: SourceFile) -> str:
@@ -154,30 +124,15 @@ def decode(source: SourceFile) -> str:
 
 
 def _decode(name: str, data: bytes) -> str:
-    if data.startswith((b"\xff\xfe", b"\xfe\xff")):
-        return data.decode("utf-16", errors="replace")
-    if b"\x00" in data:
-        return _decode_nul(name, data)
-    try:
-        return data.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        # Windows-1252 is what spreadsheets write; only the degree sign and names depend on it.
-        return data.decode("cp1252", errors="replace")
-
-
-def _decode_nul(name: str, data: bytes) -> str:
-    """UTF-16 without a mark shows as a NUL in every other byte; anything else is not text."""
-    sample = data[:4096]
-    for start, codec in ((1, "utf-16-le"), (0, "utf-16-be")):
-        every_other = sample[start::2]
-        if every_other.count(0) > 0.9 * len(every_other):
-            return data.decode(codec, errors="replace")
-    raise UnreadableWeather(
-        "holds NUL bytes, so it is damaged or not text",
-        where=name,
-        wanted="text (CSV)",
-        next_step="Download it again or save it as CSV.",
-    )
+    encoding = encoding_of(data)
+    if b"\x00" in data and not encoding.startswith("utf-16"):
+        raise UnreadableWeather(
+            "holds NUL bytes, so it is damaged or not text",
+            where=name,
+            wanted="text (CSV)",
+            next_step="Download it again or save it as CSV.",
+        )
+    return data.decode(encoding, errors="replace")
 
 
 def clean_name(text: str) -> str:

@@ -363,7 +363,8 @@ def damage(data: bytes, path: str) -> str:
     >>> damage(b"<html>Maintenance</html>", "a.csv")
     'a web page came instead of data'
     """
-    from normalize.weather.source import GZIP, unpacked
+    from normalize.text_files import GZIP
+    from normalize.weather.source import unpacked
 
     if path.endswith(".gz"):
         if not data.startswith(GZIP):
