@@ -154,12 +154,8 @@ def _accounts(table: Table, accounts: Sequence[AccountPlan]) -> tuple[str, ...]:
     return named
 
 
-def read_day_types(
-    table: Table, folder: Path, accounts: Sequence[AccountPlan]
-) -> DayTypesPlan | None:
-    """[day_types], or None where site.toml has none."""
-    if not table.values:
-        return None
+def read_day_types(table: Table, folder: Path, accounts: Sequence[AccountPlan]) -> DayTypesPlan:
+    """[day_types]; an empty one asks for weekends.  Raises SiteError, UnknownKey, MissingFile."""
     table.check_keys(DAY_TYPE_KEYS)
     file, holidays = _holidays(table, folder)
     terms = _terms(table)

@@ -79,6 +79,21 @@ end = 2023-09-22
 # degrees_f = 6
 # hours_a_day = 8
 
+# Does use answer to more than the weather? Each must earn its place, and the answer is shown
+# with and without it.
+# [[driver]]
+# name = "occupied units"
+# file = "occupied_units.csv"      # columns Month (or Date, or Start and End) and the amount
+# column = "occupied units"        # or, without a file, a column of the bill file itself
+# values = "level"                 # "level" of a typical day, or "total" of all the row's days
+# normal = 28                      # in a normal year; of totals: normal_per_year = 180
+#
+# For readings a day, and school days for bills too:
+# [day_types]
+# weekend = ["saturday", "sunday"]
+# holidays = [2023-07-04, 2023-12-25]              # or a file of dates, "holidays.csv"
+# school_terms = [{ start = 2022-08-29, end = 2023-06-16 }]
+
 # What else changed? It is shown beside the answer, because bills cannot tell causes apart.
 # [[change]]
 # what = "second adult works from home"

@@ -80,6 +80,12 @@ def _above_zero(table: Table, key: str) -> object:
     return table.number(key, low=1e-9, high=1e9, unit="above zero")
 
 
+def _first_day(table: Table, key: str) -> object:
+    """The first day of a date, or of a month."""
+    days = table.days(key)
+    return days[0] if days else None
+
+
 # Answers to the readers' questions: passed on as their keywords, under the same names.
 BILL_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "dates": Table.text,
@@ -105,7 +111,9 @@ BILL_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "multiplier": _above_zero,
     "tank_size": _above_zero,
     "tank_percent": Table.text,
+    "solar_since": _first_day,
 }
+BILL_FILE_KEYS: Final = ("periods_from", "generation")  # further files of an account
 WEATHER_READER_KEYS: Final[dict[str, Callable[[Table, str], object]]] = {
     "unit": Table.text,
     "date_column": Table.text,
@@ -143,7 +151,9 @@ def read_site_file(folder: str | os.PathLike[str]) -> SiteFile:
     accounts = tuple(_account(t, folder) for t in _several(values, "account", lines))
     _check_accounts(accounts)
     upgrades = _upgrades(_several(values, "upgrade", lines), accounts)
-    day_types = read_day_types(_single(values, "day_types", lines), folder, accounts)
+    day_types = None
+    if "day_types" in values:
+        day_types = read_day_types(_single(values, "day_types", lines), folder, accounts)
     return SiteFile(
         name=site.text("name") or folder.resolve().name or "site",
         folder=folder,
@@ -323,7 +333,7 @@ def _long_term(weather: Table, folder: Path) -> tuple[Path | None, int]:
 
 
 def _account(table: Table, folder: Path) -> AccountPlan:
-    table.check_keys((*ACCOUNT_KEYS, *BILL_READER_KEYS))
+    table.check_keys((*ACCOUNT_KEYS, *BILL_READER_KEYS, *BILL_FILE_KEYS))
     fuel = canonical_fuel(table.required_text("fuel"), where=table.where("fuel"))
     unit = table.text("unit")
     since = table.days("occupied_since")
@@ -344,7 +354,7 @@ def _account(table: Table, folder: Path) -> AccountPlan:
         heating_share=table.number(
             "heating_share", low=0.01, high=1.0, unit="share of the house's heat"
         ),
-        reader=_reader(table, BILL_READER_KEYS),
+        reader={**_reader(table, BILL_READER_KEYS), **_further_files(table, folder)},
     )
 
 
@@ -360,6 +370,17 @@ def _forms(table: Table) -> tuple[str, ...] | None:
                 f"Did you mean {guess!r}?" if guess else "",
             )
     return forms
+
+
+def _further_files(table: Table, folder: Path) -> dict[str, object]:
+    """Files that an account's bills are read with, all of them there."""
+    files: dict[str, object] = {}
+    for key in BILL_FILE_KEYS:
+        path = table.path(key, folder)
+        if path is not None:
+            must_exist(path, table.where(key))
+            files[key] = path
+    return files
 
 
 def _reader(table: Table, keys: Mapping[str, Callable[[Table, str], object]]) -> dict[str, object]:
