@@ -16,7 +16,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING, Any, cast
 
 from normalize.bills.answers import Answers, Understood, answers_of
-from normalize.bills.columns import find_columns, fuels_of_columns
+from normalize.bills.columns import answer, find_columns, fuels_of_columns
 from normalize.bills.espi_xml import looks_like_xml
 from normalize.bills.groups import (
     Group,
@@ -162,6 +162,12 @@ def read_accounts(path: str | os.PathLike[str], **answers: Any) -> FileAccounts:
         return _Result(bills, understood.settled)
 
     names = _labels(found.parts)
+    if said.generation is not None:
+        raise AmbiguousBills(
+            f"the file holds {len(names)} accounts, and generation belongs to one of them",
+            where=file.name,
+            next_step=answer("rows", *names[:3]),
+        )
     results = [read(part, name, said) for part, name in zip(found.parts, names, strict=True)]
     others = _settled_by_most(results, said)
     for k, result in enumerate(results):

@@ -62,10 +62,11 @@ def add_generation(records: Sequence[Record], found: Found, answers: Answers) ->
     """
     columns = found.columns
     has_out, has_made = columns.get("export") is not None, columns.get("generation") is not None
-    if answers.gross or not (has_out or has_made):
-        return Solar(generation=answers.gross)
     heading = columns.heading("usage")
-    net = "net" in heading.words or any((r.use or 0.0) < 0 for r in records)
+    below = any((r.use or 0.0) < 0 for r in records)
+    if answers.gross or not (has_out or has_made):
+        return Solar(sent="net" in heading.words and below, generation=answers.gross)
+    net = "net" in heading.words or below
     notes = []
     sent = net
     if has_out and not net:

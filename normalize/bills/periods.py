@@ -91,6 +91,7 @@ class Spans:
 
     start, end : (n,) int64 day numbers, half-open, in order, never overlapping.  use, cost : (n,)
     as billed, NaN where not known; use in the unit of the days.  source : whose periods they are.
+    files : (name, SHA-256) of the file that told of them, where it is another.
     """
 
     start: NDArray[np.int64]
@@ -98,6 +99,7 @@ class Spans:
     use: NDArray[np.float64]
     cost: NDArray[np.float64]
     source: str
+    files: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -184,6 +184,8 @@ def bills_of(
     solar = answers.generation is not None
     bills = _repaired(file, found, account, net_metered=net_metered or solar, currency=currency)
     reconcile(bills)
+    if spans is not None and spans.files:
+        bills = replace(bills, source=(*bills.source, *spans.files))
     return _with_generation(bills, found, answers) if solar else bills
 
 
@@ -219,7 +221,8 @@ def _spans_of_file(path: str, found: Understood, answers: Answers) -> Spans:
     periods, _ = repair(rows, kind=other.kind, net_metered=True)
     if periods.n == 0:
         raise NoBills("it holds no bill whose dates can be used", where=file.name)
-    return spans_of_bills(periods, f"the bills of {file.name}", known=other.unit == found.unit)
+    spans = spans_of_bills(periods, f"the bills of {file.name}", known=other.unit == found.unit)
+    return replace(spans, files=((file.name, file.sha256),))
 
 
 def _named(file: BillFile, path: str, answers: Answers) -> dict[str, str]:

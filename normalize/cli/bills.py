@@ -66,7 +66,24 @@ ANSWERS: Final = (
         metavar="ZONE",
         help="Where readings are in UTC: America/New_York or -05:00.",
     ),
-    click.option("--sum-to", type=click.Choice(["day", "month"]), help="For interval data."),
+    click.option(
+        "--sum-to",
+        type=click.Choice(["day", "month", "bill"]),
+        help="Interval data to days, months, or the bills that the file itself tells of.",
+    ),
+    click.option(
+        "--periods-from",
+        metavar="FILE",
+        type=FILE,
+        help="Interval data to the periods of the bills in another FILE.",
+    ),
+    click.option(
+        "--generation",
+        metavar="FILE",
+        type=FILE,
+        help="What solar panels made, to be added to net use; by days or by the same periods.",
+    ),
+    click.option("--solar-since", metavar="DATE", help="The panels' first day."),
     click.option(
         "--interval-times",
         type=click.Choice(["start", "end"]),
@@ -216,6 +233,7 @@ def lines_to_keep(answers: dict[str, Any], *, net_metered: bool) -> list[str]:
             continue
         number = isinstance(value, float) or (key == "read_day" and str(value).isdigit())
         text = f"{value:g}" if isinstance(value, float) else str(value)
+        text = value.name if isinstance(value, Path) else text  # in the site's folder
         quoted = text.replace("\\", "\\\\").replace('"', '\\"')
         lines.append(f"{key} = {text}" if number else f'{key} = "{quoted}"')
     return [*lines, "net_metered = true"] if net_metered else lines

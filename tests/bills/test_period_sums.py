@@ -228,3 +228,56 @@ def test_a_large_share_of_estimates_is_in_the_ledger(tmp_path: Path) -> None:
     assert any("used as they are: 87 readings" in text for text in bills.reading)
     whole = read_bills(data, periods_from=put(tmp_path, "bills.csv", BILLS))
     assert all(not e.note for e in whole.ledger)
+
+
+def test_net_use_below_zero_is_no_fault_of_a_bill(tmp_path: Path) -> None:
+    bills = read_bills(put(tmp_path, "net.csv", NET))
+    assert [s[2] for s in sums(bills)] == [100.0, -20.0, 50.0]
+    assert "generated is not known" in bills.unfit
+
+
+def test_generation_beside_several_accounts_is_asked_about(tmp_path: Path) -> None:
+    from normalize.bills.accounts import read_accounts
+
+    lines = ["Account,Start,End,kWh"]
+    lines += [f"{name},2023-0{m}-05,2023-0{m + 1}-05,100" for name in ("A1001", "A2002")
+              for m in range(1, 5)]  # fmt: skip
+    file = put(tmp_path, "two.csv", lines)
+    made = put(tmp_path, "solar.csv", solar("2023-01-01", 150))
+    with pytest.raises(AmbiguousBills, match="rows"):
+        read_accounts(file, generation=made)
+    one = read_accounts(file, generation=made, rows="A2002").accounts[0].bills
+    assert one is not None
+    assert [s[2] for s in sums(one)] == [100 + 31 * 4, 100 + 28 * 4, 100 + 31 * 4, 100 + 30 * 4]
+
+
+def test_files_are_named_in_site_toml(tmp_path: Path) -> None:
+    from normalize.days import day_of_iso
+    from normalize.errors import MissingFile
+    from normalize.site import read_site
+
+    put(tmp_path, "net.csv", hours("2023-01-01T00:00", 24 * 95, use="-0.1"))
+    put(tmp_path, "solar.csv", solar("2023-02-03", 80))
+    put(tmp_path, "bills.csv", BILLS)
+    begin = datetime.fromisoformat("2022-12-01")
+    put(tmp_path, "weather.csv", ["date,mean_f", *(
+        f"{begin + timedelta(days=k):%Y-%m-%d},40" for k in range(200))])  # fmt: skip
+    text = [
+        "[weather]", 'observed = "weather.csv"', "[[account]]", 'fuel = "electricity"',
+        'bills = "net.csv"', 'periods_from = "bills.csv"', 'generation = "solar.csv"',
+        "solar_since = 2023-02-03",
+    ]  # fmt: skip
+    put(tmp_path, "site.toml", text)
+    site = read_site(tmp_path)
+    bills = site.bills[0]
+    assert bills is not None
+    found = sums(bills)
+    assert [s[:2] for s in found] == [
+        ("2023-01-05", "2023-02-03"), ("2023-02-03", "2023-03-07"), ("2023-03-07", "2023-04-04"),
+    ]  # fmt: skip
+    assert [s[2] for s in found] == pytest.approx([29 * -2.4, 32 * 1.6, 28 * 1.6])
+    assert site.accounts[0].reader["solar_since"] == day_of_iso("2023-02-03")
+    assert {name for name, _ in bills.source} == {"net.csv", "bills.csv", "solar.csv"}
+    put(tmp_path, "site.toml", [t.replace("solar.csv", "sollar.csv") for t in text])
+    with pytest.raises(MissingFile, match="sollar"):
+        read_site(tmp_path)
