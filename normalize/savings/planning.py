@@ -24,9 +24,10 @@ from normalize.defaults import (
 from normalize.fitting import forms as f
 from normalize.fitting.align import Aligned
 from normalize.fitting.correlation import positions, through_rho, weights_of
-from normalize.fitting.mixture import difference_range, mixture_range
+from normalize.fitting.mixture import difference_range_with, mixture_range_with
 from normalize.fitting.results import Fit
 from normalize.fitting.rho import RHO
+from normalize.fitting.student import no_tables
 from normalize.savings.evidence import MIDDLE_F, days_of, jacobian_of
 from normalize.weather.year import LongTermYear
 
@@ -150,7 +151,9 @@ def prospects(
         baseline.jac, baseline.resid, w, baseline.place, target
     )
     weight = weights_of(like)
-    seen = _Seen(like, weight, shift, scale2, innovation, baseline.spare, float(w.mean()))
+    seen = _Seen(
+        like, weight, shift, scale2, innovation, baseline.spare, float(w.mean()), no_tables()
+    )
     out = []
     for at, n in enumerate(counts, start=1):
         lacking = "" if year is not None else "there is no long-term year"
@@ -183,6 +186,7 @@ class _Seen:
     innovation: NDArray[np.float64]
     spare: int
     mean_days: float
+    tables: tuple[NDArray[np.float64], ...]  # of the t distribution, made once for all calls
 
 
 def _avoided(
@@ -196,7 +200,7 @@ def _avoided(
     shift, scale = np.ascontiguousarray(seen.shift[:, at]), np.sqrt(total)
 
     def quantiles(level: float) -> tuple[float, float]:
-        low, high = mixture_range(seen.weight, shift, scale, seen.spare, level)
+        low, high = mixture_range_with(seen.weight, shift, scale, seen.spare, level, seen.tables)
         return float(low), float(high)
 
     low = quantiles(confidence)[0]
@@ -230,16 +234,17 @@ def _normalized(
         noise = trace / (n - k)
         joint = weights_of(seen.like + later.level - 0.5 * (n - k) * np.log(trace))
         sure = seen.innovation[true] * ratio
-        low, _ = difference_range(
+        low, _ = difference_range_with(
             joint, shift, np.sqrt(before2), seen.spare,
             np.zeros(RHO.shape[0]), np.sqrt(later.unit2 * noise * sure), n - k, confidence,
+            seen.tables,
         )  # fmt: skip
         weight.append(share)
         centre.append(shift[true] - low)
         scale.append(np.sqrt(before2[true] + later.unit2[true] * sure))
     mixture = np.array(weight), np.array(centre), np.array(scale)
-    even = mixture_range(*mixture, seen.spare, 0.0)[1]
-    likely = mixture_range(*mixture, seen.spare, 2.0 * LIKELY - 1.0)[1]
+    even = mixture_range_with(*mixture, seen.spare, 0.0, seen.tables)[1]
+    likely = mixture_range_with(*mixture, seen.spare, 2.0 * LIKELY - 1.0, seen.tables)[1]
     return Smallest(float(even), float(likely), nac)
 
 

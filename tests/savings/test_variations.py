@@ -86,9 +86,7 @@ def test_weights_and_criterion_are_those_of_a_fit_asked_so() -> None:
     al = asked.aligned
     before = al.only(al.end <= work.start, "after")
     after = al.only(al.start >= work.end, "before")
-    sides = [
-        chosen_of(fit_periods(side, forms=FORMS, weights="equal")) for side in (before, after)
-    ]
+    sides = [chosen_of(fit_periods(side, forms=FORMS, weights="equal")) for side in (before, after)]
     assert sides[0] is not None
     assert sides[1] is not None
     (equal,) = kinds(rows, WEIGHTS)
