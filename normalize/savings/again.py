@@ -14,8 +14,9 @@ from numpy.typing import NDArray
 
 from normalize.fitting import forms as f
 from normalize.fitting.align import Aligned
-from normalize.fitting.batch import Batch, Stations, stations, wanted_mask
-from normalize.fitting.columns import UNUSED
+from normalize.fitting.batch import Batch, Stations, wanted_mask
+from normalize.fitting.columns import BEFORE, UNUSED
+from normalize.fitting.fit import batch_of_one
 from normalize.savings.compare import run_batch
 from normalize.savings.estimates import estimate_at, normalized_of
 from normalize.savings.kernel import AVOIDED, HELD_AFTER, HELD_BEFORE, NORMALIZED, PREDICTED
@@ -102,21 +103,20 @@ def ask_again(asked: Asked, sides: NDArray[np.uint8], *, also: Sequence[str] = (
 def _batch(
     asked: Asked, codes: NDArray[np.uint8], keep: NDArray[np.bool_]
 ) -> tuple[Batch, Stations]:
-    aligned = asked.aligned
     times, n = codes.shape
-    start, end = aligned.start[keep], aligned.end[keep]
-    weather = (aligned.weather.first_day, aligned.weather.temp_f)
-    first, last = (int(start.min()), int(end.max())) if n else (0, 0)
-    table = stations([weather], first, last)
+    used = np.where(keep, BEFORE, UNUSED).astype(np.uint8)
+    one, table = batch_of_one(asked.aligned, used, asked.forms, asked.net)
     batch = Batch(
-        start=np.tile(start, times),
-        end=np.tile(end, times),
-        use=np.tile(aligned.use[keep], times),
+        start=np.tile(one.start[keep], times),
+        end=np.tile(one.end[keep], times),
+        use=np.tile(one.use[keep], times),
         side=codes.ravel(),
         offsets=n * np.arange(times + 1, dtype=np.int64),
         station=np.zeros(times, dtype=np.int32),
-        wanted=np.tile(wanted_mask(asked.forms), (times, 1)),
-        net=np.full(times, asked.net),
+        wanted=np.tile(one.wanted, (times, 1)),
+        net=np.tile(one.net, times),
+        drivers=None if one.drivers is None else np.tile(one.drivers[keep], (times, 1)),
+        n_drivers=None if one.n_drivers is None else np.tile(one.n_drivers, times),
     )
     return batch, table
 

@@ -190,7 +190,8 @@ def _named(bills: Sequence[Without]) -> str:
 
 def _now(answer: Estimate, whole: Estimate) -> str:
     if answer.fraction is None or whole.fraction is None:
-        return "the change would be another by the value shown"
+        unit = "in the bills' unit"
+        return f"the change would be {answer.value:.4g} instead of {whole.value:.4g}, {unit}"
     return f"the change would be {_told(answer.fraction)} instead of {_told(whole.fraction)}"
 
 

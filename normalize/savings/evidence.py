@@ -76,6 +76,8 @@ def _side(
     jac = jacobian_of(fit, days, owner, lengths, with_tau=not (held or fit.on_bound))
     fitted = np.bincount(owner, fit.predict(days), lengths.shape[0]) / lengths
     resid = per_day - fitted
+    if aligned.drivers is not None and aligned.drivers.k:
+        jac, resid = _with_drivers(fit, days, owner, lengths, per_day, jac, aligned, mine)
     means = aligned.mean_temp_f[mine]
     return SideEvidence(
         side=side,
@@ -90,6 +92,24 @@ def _side(
         seen=extrapolation_of(fit, year, days) if year is not None else None,
         held=held,
     )
+
+
+def _with_drivers(
+    fit: Fit,
+    days: NDArray[np.float64],
+    owner: NDArray[np.intp],
+    lengths: NDArray[np.float64],
+    per_day: NDArray[np.float64],
+    jac: NDArray[np.float64],
+    aligned: Aligned,
+    mine: NDArray[np.intp],
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Jacobian with the drivers' columns, and the residuals of least squares at the τ found."""
+    drivers = aligned.drivers.values[mine] if aligned.drivers is not None else jac[:, :0]
+    x = np.column_stack([jacobian_of(fit, days, owner, lengths, with_tau=False), drivers])
+    root = np.sqrt(lengths)
+    coef = np.linalg.lstsq(x * root[:, None], per_day * root, rcond=None)[0]
+    return np.column_stack([jac, drivers]), per_day - x @ coef
 
 
 def days_of(

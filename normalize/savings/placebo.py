@@ -177,20 +177,23 @@ def invented_dates(
     mine : (n,) the periods that may take part.  Returns days (k,) and sides (k, n).  Either
     side has at least 270 days within ``window_days`` of the date, as the real work needs.
     """
-    length = np.where(mine, end - start, 0).astype(np.int64)
+    days = np.unique(end[mine]).astype(np.int64)
     middle = 0.5 * (start + end)
-    days = np.unique(end[mine]).astype(np.int64)[:, None]
-    before = mine & (end <= days) & (middle >= days - window_days)
-    after = mine & (start >= days) & (middle < days + window_days)
-    enough = ((before * length).sum(axis=1) >= MIN_DAYS_A_SIDE) & (
-        (after * length).sum(axis=1) >= MIN_DAYS_A_SIDE
-    )
+    total = np.concatenate([[0], np.cumsum(np.where(mine, end - start, 0).astype(np.int64))])
+    # Periods stand in order of time and never overlap, so either side is one stretch of them.
+    first = np.searchsorted(middle, days - window_days, side="left")
+    turn = np.searchsorted(end, days, side="right")
+    last = np.searchsorted(middle, days + window_days, side="left")
+    enough = np.minimum(total[turn] - total[first], total[last] - total[turn]) >= MIN_DAYS_A_SIDE
     kept = np.flatnonzero(enough)
     if kept.shape[0] > most:
         # Evenly, the middle of each of so many equal parts.
         kept = kept[((np.arange(most) + 0.5) * kept.shape[0] / most).astype(np.intp)]
-    sides = np.where(before[kept], BEFORE, np.where(after[kept], AFTER, UNUSED))
-    return days[kept, 0], sides.astype(np.uint8)
+    place = np.arange(start.shape[0])
+    before = (place >= first[kept, None]) & (place < turn[kept, None]) & mine
+    after = (place >= turn[kept, None]) & (place < last[kept, None]) & mine
+    sides = np.where(before, BEFORE, np.where(after, AFTER, UNUSED))
+    return days[kept], sides.astype(np.uint8)
 
 
 def believed(
@@ -295,6 +298,10 @@ def _count(
         station=batch.station[owner],
         wanted=batch.wanted[owner],
         net=batch.net[owner],
+        drivers=None
+        if batch.drivers is None
+        else np.concatenate([np.tile(batch.drivers[c], (s.shape[0], 1)) for _, c, s in pieces]),
+        n_drivers=None if batch.n_drivers is None else batch.n_drivers[owner],
     )
     line = np.zeros_like(many.wanted)
     line[:, LINE] = True

@@ -371,3 +371,22 @@ def test_periods_are_not_needed_to_be_without_gaps() -> None:
 def test_the_year_of_the_doctest_is_a_year() -> None:
     made = year_from_sample("x", [10.0, 30.0, 70.0], [65.0, 150.0, 150.0])
     assert made.heating(60.0) == pytest.approx(7750.0)
+
+
+def test_a_drivers_column_is_among_those_of_the_fit() -> None:
+    """Leverage and Cook's distance with an occupancy column: statsmodels 0.15, OLS, rows √w."""
+    from normalize.fitting.drivers import Drivers
+
+    bills, work = house(24, 18, noise=0.08)
+    aligned = align(bills.periods, STATION)
+    found = compare(aligned, work, year(), forms=GAS)
+    values = np.cos(np.arange(aligned.n))[:, None]
+    driven = replace(aligned, drivers=Drivers(("units",), values, (0.0,), ("made up",)))
+    fit, x, jac, y, w = side_of(aligned, found, "before")
+    assert fit.heating_slope is not None
+    evidence = evidence_of(driven, found, year())[0]
+    full = scaled(y, np.column_stack([jac, values[:24]]), w).get_influence()
+    assert [b.leverage for b in evidence.weights] == pytest.approx(full.hat_matrix_diag, rel=1e-9)
+    resid = scaled(y, np.column_stack([x, values[:24]]), w).resid / np.sqrt(w)
+    ours = weigh(np.column_stack([jac, values[:24]]), resid, w)
+    assert [b.cook for b in evidence.weights] == pytest.approx([b.cook for b in ours], rel=1e-8)
