@@ -130,12 +130,11 @@ def heat_loss_sentences(heat: HeatLoss) -> tuple[str, ...]:
     text = f"The heating slope before the work amounts to {_around(before)} {HEAT_LOSS}"
     if after is not None:
         text += f", after it to {_around(after)}"
-    told = [
+    first = (
         f"{text}: the rate at which this account's fuel makes up for heat lost, its heating "
         "efficiency not taken out."
-    ]
-    if change is not None:
-        told.append(f"{_changed(change, HEAT_LOSS)}.")
+    )
+    told = [first if change is None else f"{first} {_changed(change, HEAT_LOSS)}."]
     if heat.ua_before is not None and heat.efficiency is not None:
         ua = (
             f"With the stated efficiency of {heat.efficiency:.2f} the heat lost was "
