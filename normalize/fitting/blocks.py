@@ -1,8 +1,8 @@
-"""Daily data in fortnights: days err too much alike for one correlation to describe.
+"""Daily data in blocks of four weeks: days err too much alike for one correlation to describe.
 
-Neighbouring days share weather, habits and the week's rhythm.  Over whole fortnights the
+Neighbouring days share habits, the week's rhythm and slow drifts.  Over four whole weeks the
 rhythm cancels and what is left is like the error of bills, so the form is chosen and the
-range is made from fortnights, while the fit itself keeps its days (docs/method.md §5).
+range is made from such blocks, while the fit itself keeps its days (docs/method.md §5).
 """
 
 from __future__ import annotations
@@ -27,9 +27,9 @@ from normalize.fitting.forms import FITTED, N_FORMS
 from normalize.fitting.side import fit_side
 from normalize.jit import kernel
 
-BLOCK_DAYS: Final = 14  # two whole weeks
+BLOCK_DAYS: Final = 28  # four whole weeks
 BLOCK_BELOW_DAYS: Final = 7  # periods typically shorter than this are put into blocks
-MIN_BLOCKS: Final = 12  # with fewer, days stay days
+MIN_BLOCKS: Final = 8  # with fewer, days stay days
 
 
 @kernel
@@ -74,7 +74,7 @@ def in_blocks(columns, d, which, count):
 
 @kernel
 def judge_in_blocks(rows, ts, ps, y, d, w, drivers, start, end, wanted, net, settings):
-    """For daily data: what decides a form (screens, criteria, errors) taken from fortnights."""
+    """For daily data: what decides a form (screens, criteria, errors) taken from the blocks."""
     which, place = block_of(start, end)
     count = place.shape[0]
     if count == y.shape[0]:
