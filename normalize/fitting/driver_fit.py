@@ -84,8 +84,7 @@ def fortnights(side: SideData, columns: NDArray[np.float64]) -> NDArray[np.float
 def fortnight_days(side: SideData) -> NDArray[np.float64]:
     """Days of each fortnight, or of each period where data are no days."""
     which, place = block_of(side.start, side.end)
-    days: NDArray[np.float64] = np.bincount(which, side.d, place.shape[0])
-    return days
+    return np.bincount(which, side.d, place.shape[0]).astype(np.float64)
 
 
 def _in_fortnights(
@@ -97,7 +96,7 @@ def _in_fortnights(
     means, days = in_blocks(
         np.ascontiguousarray(np.column_stack([side.y, drivers])), side.d, which, place.shape[0]
     )
-    weight: NDArray[np.float64] = np.bincount(which, side.w, place.shape[0])
+    weight = np.bincount(which, side.w, place.shape[0]).astype(np.float64)
     joined = SideData(
         side.ts, which[side.ps].astype(np.int32), np.ascontiguousarray(means[:, 0]), days,
         weight, side.start, side.end,

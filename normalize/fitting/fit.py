@@ -61,11 +61,12 @@ def side_data(batch: Batch, table: Stations, code: int, weights: str = "days") -
 
     start, end, use, side, _, _ = gate(batch)
     drivers, _ = driver_gate(batch)
-    arrays = take_side(
+    ts, ps, y, d, w, first, last = take_side(
         start, end, use, side, code, table.temp, table.first_day[0], table.order,
         weights == "equal",
     )  # fmt: skip
-    return SideData(*arrays, np.ascontiguousarray(drivers[side == code]))
+    own = np.ascontiguousarray(drivers[side == code])
+    return SideData(ts, ps, y, d, w, first, last, own)
 
 
 def also_tried() -> NDArray[np.bool_]:
