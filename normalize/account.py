@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from normalize.bills.deliveries import k_factor
+from normalize.bills.deliveries import fill_words, k_factor
 from normalize.errors import NormalizeError
 from normalize.fitting.align import Aligned, align
 from normalize.savings.again import Asked
@@ -305,7 +305,7 @@ def _circumstances(
         delivered=bills.kind == "delivery",
         estimated_near_work=near,
         changes=tuple(c.what for c in site.changes),
-        held=found.held,
+        unsure=found.unsure,
         stated_f=found.stated_f,
         works=len(work.windows),
         between=found.labels.count("between"),
@@ -313,7 +313,19 @@ def _circumstances(
         tried_before=found.tried_before,
         used_nothing=_used_nothing(bills, found),
         bill_cautions=(*_guesses(bills, found, rows), *bills.cautions),
+        fill_words=_fills(bills, rows),
     )
+
+
+def _fills(bills: Bills, rows: tuple[PeriodRow, ...]) -> str:
+    """How far fills that are not quite full can move the use of either side."""
+    if bills.kind != "delivery":
+        return ""
+    before, after = (sum(r.use for r in rows if r.side == s) for s in ("before", "after"))
+    left_out = {(e.file, e.line) for e in bills.ledger if e.fate == "left out"}
+    kept = (r.use for r in bills.rows if (r.file, r.line) not in left_out)
+    largest = max((use for use in kept if use is not None), default=0.0)
+    return fill_words(largest, bills.unit, before, after)
 
 
 def _guesses(bills: Bills, found: Comparison, rows: tuple[PeriodRow, ...]) -> tuple[str, ...]:

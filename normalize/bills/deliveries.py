@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from normalize.bills.layouts import Record
 
 FILLS_BEYOND_PARAMETERS = 3  # a fit needs its parameters and so many more (design.md, Defaults)
+FULL_WITHIN = 0.05  # of the tank: how full a "full" one is (common practice, no source)
 NUMBER_WORDS = ("no", "one", "two", "three", "four", "five", "six", "seven", "eight", "nine")
 
 
@@ -63,6 +64,40 @@ def fills_sentence(periods: int, *, parameters: int = 3) -> str:
         return ""
     word = NUMBER_WORDS[missing] if missing < len(NUMBER_WORDS) else str(missing)
     return f"{word} more full {'fill is' if missing == 1 else 'fills are'} needed"
+
+
+def fill_error(tank: float, used: float) -> float:
+    """The most by which use over a run of full fills can be off, as a fraction of it.
+
+    tank : what the tank holds, or at least its largest delivery.  used : over the whole run.
+    What one fill lacks the next one adds, so that only the first and the last fill count, each
+    off by ``FULL_WITHIN`` of the tank, however many lie between.
+
+    >>> round(fill_error(250.0, 1250.0), 3)
+    0.02
+    """
+    return 2.0 * FULL_WITHIN * tank / used if used > 0.0 else float("inf")
+
+
+def fill_words(tank: float, unit: str, before: float, after: float) -> str:
+    """What a fill that is not quite full can do, with numbers; "" where nothing is known.
+
+    before, after : use of either side, 0 where there is none.
+    """
+    sides = [
+        f"{100 * fill_error(tank, used):.1f} % of all use {name} the work"
+        for name, used in (("before", before), ("after", after))
+        if used > 0.0
+    ]
+    if not sides or not tank > 0.0:
+        return ""
+    return (
+        f"Fuel was delivered, not metered, and a \u201cfull\u201d tank is full to within about "
+        f"{FULL_WITHIN:.0%} of what it holds. Taking the largest delivery ({tank:,.0f} {unit}) for "
+        f"the tank, use between two fills can be off by {2 * FULL_WITHIN * tank:,.0f} {unit}; as "
+        f"what one fill lacks the next one adds, that comes to at most {' and '.join(sides)}. The "
+        "range holds the scatter of the fills, not this."
+    )
 
 
 @dataclass(slots=True)

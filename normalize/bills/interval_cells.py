@@ -217,6 +217,21 @@ def three_numbers(data: Bytes, a: int, b: int, parts: Small) -> None:
 
 
 @kernel
+def _seconds(count: int, hour: int, minute: int, second: int, half: int, empty: bool) -> int:
+    """Seconds of the day of so many numbers, or a code. half : 1 AM, 2 PM, 0 neither."""
+    if count == 0 or count > 3 or minute > 59 or second > 60:
+        return _NO_TIME if empty else _BAD_TIME
+    if half > 0:
+        if not 1 <= hour <= 12:
+            return _BAD_TIME
+        hour = hour % 12 + (12 if half == 2 else 0)
+    elif count == 1:
+        return _BARE_HOUR - hour if hour <= 240000 else _BAD_TIME
+    total = hour * 3600 + minute * 60 + second
+    return total if total <= 86400 else _BAD_TIME
+
+
+@kernel
 def patient_clock(data: Bytes, a: int, b: int) -> tuple[int, int]:
     """A time in any of the ways people write it, and its offset from UTC."""
     count, hour, minute, second, zone, zone_digits = 0, 0, 0, 0, 0, 0
@@ -255,18 +270,8 @@ def patient_clock(data: Bytes, a: int, b: int) -> tuple[int, int]:
             c <= 34 or c == 39 or 44 <= c <= 47 or up == 84 or up == 77 or up == 69 or up == 72
         ):  # fmt: skip  (T, M, HE)
             return _BAD_TIME, _NO_OFFSET
-    if count == 0 or count > 3 or minute > 59 or second > 60:
-        return (_NO_TIME if a == b else _BAD_TIME), _NO_OFFSET
-    if half > 0:
-        if not 1 <= hour <= 12:
-            return _BAD_TIME, _NO_OFFSET
-        hour = hour % 12 + (12 if half == 2 else 0)
-    elif count == 1:
-        return (_BARE_HOUR - hour if hour <= 240000 else _BAD_TIME), _NO_OFFSET
-    total = hour * 3600 + minute * 60 + second
-    if total > 86400:
-        return _BAD_TIME, _NO_OFFSET
-    if sign == 0:
+    total = _seconds(count, hour, minute, second, half, a == b)
+    if sign == 0 or total < 0:
         return total, _NO_OFFSET
     if zone_digits <= 2:
         zone *= 100

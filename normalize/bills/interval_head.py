@@ -6,6 +6,7 @@ each day), from tables of bills.  Reading them is in intervals.py.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from datetime import date, datetime, time, timedelta
@@ -34,6 +35,7 @@ from normalize.errors import NormalizeError
 MANY_DAYS = 5_000  # daily lines: more than that are read here, for speed
 WIDE_SCORE = 100.0  # of a header that no other can be taken for
 SAMPLE = 200  # lines looked at to tell what kind of file it is
+_BEFORE_TIME = re.compile(r"[T ]|(?<=\d{4}):")  # 13-JAN-2023:00:15, too
 _EXCEL_ZERO = datetime.combine(date(1899, 12, 30), time())  # moments of a sheet have no zone
 _EXCEL_1904 = datetime.combine(date(1904, 1, 1), time())
 
@@ -192,7 +194,7 @@ def _has_time(value: object, beside: object) -> bool:
 
 def _within_days(rows: Sequence[RawRow], when: int) -> bool:
     """Whether several lines share their day, as intervals do and bills do not."""
-    days = [as_text(cell(row, when)).replace("T", " ").split(" ")[0] for row in rows]
+    days = [_BEFORE_TIME.split(as_text(cell(row, when)), maxsplit=1)[0] for row in rows]
     return len(set(days)) <= 0.6 * len(days)
 
 

@@ -236,13 +236,10 @@ def sum_days(
     there = np.flatnonzero(count)
     days, covered = (there + first).astype(np.int64), covered[there]
     if offset is not None and clock is None:
-        full, early, late = (np.zeros(size, np.int64) for _ in range(3))
-        day_lengths(local, offset, keep, first, early, late, full)
-        full = full[there]
+        full = _by_offsets(local, offset, keep, first, size)[there]
     else:
         full = _lengths(days, covered, clock)
-    if room is not None:
-        full = np.minimum(full, room)
+    full = full if room is None else np.minimum(full, room)
     return DaySums(
         day=days,
         use=total[there],
@@ -253,6 +250,13 @@ def sum_days(
         missing=np.maximum(0, full - covered),
         twice=np.maximum(0, covered - full),
     )
+
+
+def _by_offsets(local: Long, offset: Int, keep: Byte, first: int, size: int) -> Long:
+    """Seconds of each day from ``first`` on, by the file's own offsets."""
+    full, early, late = (np.zeros(size, np.int64) for _ in range(3))
+    day_lengths(local, offset, keep, first, early, late, full)
+    return full
 
 
 def _lengths(days: Long, covered: Long, clock: Clock | None) -> Long:

@@ -34,7 +34,7 @@ from normalize.fitting.columns import (
     N,
 )
 from normalize.fitting.correlation import through_rho, weights_of, well_determined
-from normalize.fitting.linear import linearise
+from normalize.fitting.linear import linearise_with
 from normalize.fitting.profile import profile_gains
 from normalize.fitting.results import Fit, FormTried
 from normalize.fitting.rho import RHO
@@ -48,7 +48,7 @@ PROFILE_CONFIDENCE = 0.90
 
 @dataclass(frozen=True, slots=True)
 class SideData:
-    """One side's arrays as ``take_side`` returns them."""
+    """One side's arrays as ``take_side`` returns them, and the drivers of its periods (n, k)."""
 
     ts: NDArray[np.float64]
     ps: NDArray[np.int32]
@@ -57,6 +57,12 @@ class SideData:
     w: NDArray[np.float64]
     start: NDArray[np.float64]
     end: NDArray[np.float64]
+    drivers: NDArray[np.float64] | None = None
+
+    @property
+    def columns(self) -> NDArray[np.float64]:
+        """(n, k) drivers; (n, 0) where there are none."""
+        return self.drivers if self.drivers is not None else np.empty((self.y.shape[0], 0))
 
 
 def _number(value: float) -> float | None:
@@ -67,7 +73,11 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
     """A kernel's row as a Fit, with the diagnostics that one account deserves."""
     form = f.BY_CODE[form_code]
     n = int(row[N])
-    jac, resid, held = linearise(row, form_code, side.ts, side.ps, side.y, side.d, side.w, False)
+    drivers = side.columns
+    k = drivers.shape[1]
+    jac, resid, coef, held = linearise_with(
+        row, form_code, side.ts, side.ps, side.y, side.d, side.w, drivers, False
+    )
     both = np.column_stack([jac, resid])
     found, _, weight, place = rows_of(both, side.d, side.w, side.start, side.end)
     rows, errors = np.ascontiguousarray(found[:, :-1]), np.ascontiguousarray(found[:, -1])
@@ -75,7 +85,7 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
     root = resid * np.sqrt(side.w)
     square = float((root * root).sum())
     mean, rss, tss = float(row[MEAN]), float(row[RSS]), float(row[TSS])
-    df = n - form.parameters
+    df = n - form.parameters - k
     cv = np.sqrt(rss / side.w.mean() / df) / abs(mean) if mean != 0.0 else float("nan")
     se = _standard_errors(row, form_code)
     ranges = _profile_ranges(form_code, row, side, df)
@@ -95,7 +105,9 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
         bias=float((side.w * resid).sum() / (side.w * side.y).sum()) if mean != 0.0 else 0.0,
         terms=form.terms,
         se=se,
-        se_full=None if held else _full_errors(rows, errors, weight, len(form.terms), form_code),
+        se_full=None
+        if held
+        else _full_errors(rows, errors, weight, _places(len(form.terms), k), form_code),
         t=tuple(
             c / e if e > 0.0 else float("inf")
             for c, e in zip(_coefs(row, form_code), se, strict=True)
@@ -109,7 +121,13 @@ def as_fit(form_code: int, row: NDArray[np.float64], side: SideData, set_aside: 
         rho=float((weights_of(like) * RHO).sum()),
         durbin_watson=float((np.diff(root) ** 2).sum() / square) if square > 0.0 else float("nan"),
         set_aside=set_aside,
+        driver_effects=tuple(coef[1 : 1 + k].tolist()),
     )
+
+
+def _places(terms: int, k: int) -> tuple[int, ...]:
+    """Where the base load and the slopes stand among the columns, k drivers between them."""
+    return (0, *range(1 + k, terms + k))
 
 
 def _columns(form_code: int) -> tuple[tuple[int, int], ...]:
@@ -133,7 +151,7 @@ def _full_errors(
     jac: NDArray[np.float64],
     resid: NDArray[np.float64],
     w: NDArray[np.float64],
-    terms: int,
+    places: tuple[int, ...],
     form_code: int,
 ) -> tuple[float, ...] | None:
     """Standard errors of the coefficients with the balance temperatures' own included."""
@@ -147,11 +165,12 @@ def _full_errors(
     scale = float((w * resid * resid).sum()) / (n - k)
     if form_code == f.LINE:
         at_zero = np.array([1.0, -SHIFT_F])
+        line = cov[np.ix_(places, places)]
         return (
-            float(np.sqrt(at_zero @ cov @ at_zero * scale)),
-            float(np.sqrt(cov[1, 1] * scale)),
+            float(np.sqrt(at_zero @ line @ at_zero * scale)),
+            float(np.sqrt(line[1, 1] * scale)),
         )
-    return tuple(float(np.sqrt(max(cov[i, i], 0.0) * scale)) for i in range(terms))
+    return tuple(float(np.sqrt(max(cov[i, i], 0.0) * scale)) for i in places)
 
 
 def _profile_ranges(
@@ -177,15 +196,51 @@ def _range_of(
     best = float(row[TAU_C] if cooling else row[TAU_H])
     steps = np.arange(np.ceil(low / PROFILE_STEP_F), np.floor(high / PROFILE_STEP_F) + 1)
     taus = np.unique(np.append(steps * PROFILE_STEP_F, best))
+    t = t_quantile(0.5 + 0.5 * PROFILE_CONFIDENCE, df)
+    limit = float(row[RSS]) * (1.0 + t * t / df)
+    left = _rss_along(form_code, row, side, taus, cooling)
+    inside = taus[(left <= limit) | (taus == best)]
+    return float(inside.min()), float(inside.max())
+
+
+def _rss_along(
+    form_code: int,
+    row: NDArray[np.float64],
+    side: SideData,
+    taus: NDArray[np.float64],
+    cooling: bool,
+) -> NDArray[np.float64]:
+    """Sum of squares at each held τ.  With drivers and two balance temperatures, the drivers'
+    effects are held as found.
+    """
+    from normalize.fitting.columns import HIGH_C, HIGH_H, LOW_C, LOW_H
+
+    y, total = side.y, float(row[TSS])
+    if side.columns.shape[1]:
+        if form_code != f.HEATING_AND_COOLING:
+            return np.array([_rss_at(form_code, row, side, tau) for tau in taus.tolist()])
+        drivers = side.columns
+        _, _, coef, _ = linearise_with(
+            row, form_code, side.ts, side.ps, y, side.d, side.w, drivers, True
+        )
+        y = y - drivers @ coef[1 : 1 + drivers.shape[1]]
+        mean = float((side.w * y).sum() / side.w.sum())
+        total = float((side.w * (y - mean) ** 2).sum())
     gains = profile_gains(
-        form_code, side.ts, side.ps, side.y, side.d, side.w, taus - SHIFT_F, cooling,
+        form_code, side.ts, side.ps, y, side.d, side.w, taus - SHIFT_F, cooling,
         np.array([row[LOW_H], row[HIGH_H], row[LOW_C], row[HIGH_C]]) - SHIFT_F,
     )  # fmt: skip
-    t = t_quantile(0.5 + 0.5 * PROFILE_CONFIDENCE, df)
-    total = float(row[TSS])
-    limit = float(row[RSS]) * (1.0 + t * t / df)
-    inside = taus[(total - gains <= limit) | (taus == best)]
-    return float(inside.min()), float(inside.max())
+    return np.asarray(total - gains)
+
+
+def _rss_at(form_code: int, row: NDArray[np.float64], side: SideData, tau: float) -> float:
+    """Sum of squares with one τ held and drivers free."""
+    there = row.copy()
+    there[TAU_H] = there[TAU_C] = tau
+    _, resid, _, _ = linearise_with(
+        there, form_code, side.ts, side.ps, side.y, side.d, side.w, side.columns, True
+    )
+    return float((side.w * resid * resid).sum())
 
 
 def as_tried(

@@ -12,6 +12,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from normalize.fitting.batch import Batch, Stations, settings
+from normalize.fitting.blocks import block_of, in_blocks
 from normalize.fitting.columns import BIC, TAU_C, TAU_H
 from normalize.fitting.describe import SideData
 from normalize.fitting.fit import side_data
@@ -43,16 +44,24 @@ class DriverFit:
 
 
 def fit_with(
-    batch: Batch, table: Stations, code: int, drivers: NDArray[np.float64]
+    batch: Batch,
+    table: Stations,
+    code: int,
+    drivers: NDArray[np.float64],
+    *,
+    in_fortnights: bool = False,
 ) -> DriverFit | None:
     """The side's best form with these drivers, or None where none can be fitted.
 
-    batch : of one account.  drivers : (rows, k) of all its periods.
+    batch : of one account.  drivers : (rows, k) of all its periods.  in_fortnights : daily
+    data are put into fortnights first (fitting/blocks.py), where errors are less alike.
     """
     side = side_data(batch, table, code)
     mine = np.ascontiguousarray(drivers[batch.side == code], dtype=np.float64)
     if mine.shape[0] == 0:
         return None
+    if in_fortnights:
+        side, mine = _in_fortnights(side, mine)
     rows = fit_side(
         side.ts, side.ps, side.y, side.d, side.w, mine, batch.wanted[0],
         bool(batch.net[0]), settings(),
@@ -61,6 +70,38 @@ def fit_with(
     if form < 0:
         return None
     return _described(rows[form], form, side, mine)
+
+
+def fortnights(side: SideData, columns: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Means of columns (n, k) over fortnights; the columns themselves where data are no days."""
+    which, place = block_of(side.start, side.end)
+    means: NDArray[np.float64] = in_blocks(
+        np.ascontiguousarray(columns), side.d, which, place.shape[0]
+    )[0]
+    return means
+
+
+def fortnight_days(side: SideData) -> NDArray[np.float64]:
+    """Days of each fortnight, or of each period where data are no days."""
+    which, place = block_of(side.start, side.end)
+    return np.bincount(which, side.d, place.shape[0]).astype(np.float64)
+
+
+def _in_fortnights(
+    side: SideData, drivers: NDArray[np.float64]
+) -> tuple[SideData, NDArray[np.float64]]:
+    which, place = block_of(side.start, side.end)
+    if place.shape[0] == side.y.shape[0]:
+        return side, drivers
+    means, days = in_blocks(
+        np.ascontiguousarray(np.column_stack([side.y, drivers])), side.d, which, place.shape[0]
+    )
+    weight = np.bincount(which, side.w, place.shape[0]).astype(np.float64)
+    joined = SideData(
+        side.ts, which[side.ps].astype(np.int32), np.ascontiguousarray(means[:, 0]), days,
+        weight, side.start, side.end,
+    )  # fmt: skip
+    return joined, np.ascontiguousarray(means[:, 1:])
 
 
 def _described(

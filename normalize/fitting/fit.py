@@ -50,21 +50,23 @@ def batch_of_one(
         station=np.zeros(1, dtype=np.int32),
         wanted=wanted_mask(forms)[None, :],
         net=np.array([net]),
+        drivers=aligned.drivers.values if aligned.drivers is not None else None,
     )
     return batch, table
 
 
 def side_data(batch: Batch, table: Stations, code: int, weights: str = "days") -> SideData:
     """The arrays of one side of a batch of one, as the kernels see them."""
-    from normalize.fitting.batch import gate
+    from normalize.fitting.batch import driver_gate, gate
 
     start, end, use, side, _, _ = gate(batch)
-    return SideData(
-        *take_side(
-            start, end, use, side, code, table.temp, table.first_day[0], table.order,
-            weights == "equal",
-        )
+    drivers, _ = driver_gate(batch)
+    ts, ps, y, d, w, first, last = take_side(
+        start, end, use, side, code, table.temp, table.first_day[0], table.order,
+        weights == "equal",
     )  # fmt: skip
+    own = np.ascontiguousarray(drivers[side == code])
+    return SideData(ts, ps, y, d, w, first, last, own)
 
 
 def also_tried() -> NDArray[np.bool_]:

@@ -34,6 +34,8 @@ class Fit:
     on_bound : the balance temperature ended on the edge of its allowed range.
     rho : restricted-likelihood estimate of the lag-1 correlation; durbin_watson.
     set_aside : periods of this side that did not take part.
+    driver_effects : use a day for one more of each driver a day, in the drivers' order; the
+        base load, ``predict`` and ``nac`` belong to their normal levels.
     """
 
     form: str
@@ -62,6 +64,7 @@ class Fit:
     rho: float = 0.0
     durbin_watson: float = float("nan")
     set_aside: int = 0
+    driver_effects: tuple[float, ...] = ()
 
     def predict(self, temp_f: NDArray[np.float64]) -> NDArray[np.float64]:
         """Expected use of each day. temp_f : (n_days,) daily mean, °F; returns (n_days,)."""

@@ -19,7 +19,7 @@ from normalize.fitting.columns import BEFORE, UNUSED
 from normalize.fitting.fit import batch_of_one
 from normalize.savings.compare import run_batch
 from normalize.savings.estimates import estimate_at, normalized_of
-from normalize.savings.kernel import AVOIDED, HELD_AFTER, HELD_BEFORE, NORMALIZED, PREDICTED
+from normalize.savings.kernel import AVOIDED, NORMALIZED, PREDICTED, UNSURE_AFTER, UNSURE_BEFORE
 from normalize.savings.methods import Methods
 from normalize.savings.results import Estimate
 from normalize.savings.stated import STATED_F, STATED_RANGE_F, held_at, widen
@@ -79,8 +79,8 @@ class Answers:
         return estimate_at(row, AVOIDED, over, confidence, self._methods(i).avoided, self.asked.net)
 
     def _methods(self, i: int) -> Methods:
-        held = (self.answers[i, HELD_BEFORE] == 1.0, self.answers[i, HELD_AFTER] == 1.0)
-        return Methods.of(held, self.asked.stated)
+        unsure = (self.answers[i, UNSURE_BEFORE] == 1.0, self.answers[i, UNSURE_AFTER] == 1.0)
+        return Methods.of(unsure, self.asked.stated)
 
 
 def ask_again(asked: Asked, sides: NDArray[np.uint8], *, also: Sequence[str] = ()) -> Answers:

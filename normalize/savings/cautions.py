@@ -24,7 +24,7 @@ class Circumstances:
     by_bill : temperatures are the bills' own means.  delivered : dealer deliveries.
     estimated_near_work : an estimated reading ended within 60 days of the work.
     changes : what else the site file says changed.
-    held : balance temperature held (before, after).
+    unsure : the bills do not place the balance temperature (before, after).
     """
 
     fuel: str
@@ -32,7 +32,7 @@ class Circumstances:
     delivered: bool
     estimated_near_work: bool
     changes: tuple[str, ...]
-    held: tuple[bool, bool]
+    unsure: tuple[bool, bool]
     bill_cautions: tuple[str, ...] = ()
     stated_f: float | None = None
     works: int = 1  # upgrades that touch the account
@@ -40,6 +40,7 @@ class Circumstances:
     water_only: bool = False  # site.toml says that the account heats no rooms
     tried_before: tuple[FormTried, ...] = ()
     used_nothing: bool = False  # every bill after the work says zero
+    fill_words: str = ""  # of delivered fuel: what fills that are not quite full can do
 
 
 def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[str, ...]:
@@ -49,11 +50,11 @@ def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[s
     out += _water_only(savings, about)
     out += _forms(savings)
     out += _size(savings)
-    for which, fit, held in zip(
-        ("before", "after"), (savings.before, savings.after), about.held, strict=True
+    for which, fit, unsure in zip(
+        ("before", "after"), (savings.before, savings.after), about.unsure, strict=True
     ):
         if fit is not None:
-            out += _fit(which, fit, held and about.stated_f is None)
+            out += _fit(which, fit, unsure and about.stated_f is None)
     if about.estimated_near_work:
         out.append(
             "An estimated reading fell near the work: its error moves use from one side to the "
@@ -73,7 +74,8 @@ def cautions_of(savings: Savings, price: Price, about: Circumstances) -> tuple[s
         )
     if about.delivered:
         out.append(
-            "Fuel was delivered, not metered: use is known only between full fills, and a "
+            about.fill_words
+            or "Fuel was delivered, not metered: use is known only between full fills, and a "
             "“full” tank is full to within a few units."
         )
     if price.source == AVERAGE:
@@ -106,7 +108,12 @@ def _water_only(savings: Savings, about: Circumstances) -> list[str]:
         return []
     heating = next((t.fit for t in about.tried_before if t.form == "heating"), None)
     if heating is None or heating.r2 < FOLLOWS_COLD_R2 or savings.before.cv_rmse < UNEVEN_CV:
-        return []
+        return [
+            "As site.toml says, this account heats no rooms, so none of its use was taken for "
+            "heating: colder inlet water in winter would otherwise have passed for it. Nothing is "
+            "set right for cold weather; whole years on both sides keep winters and summers in "
+            "balance."
+        ]
     return [
         "Use follows the cold far more than hot water does, so this account seems to heat rooms: "
         "is space_heating = false right? With it, two unlike winters are not set right."
@@ -158,12 +165,12 @@ def _size(savings: Savings) -> list[str]:
     ]
 
 
-def _fit(which: str, fit: Fit, held: bool) -> list[str]:
+def _fit(which: str, fit: Fit, unsure: bool) -> list[str]:
     out = []
-    if held:
+    if unsure:
         out.append(
-            f"The bills {which} the work do not tell the balance temperature apart from the "
-            "rest, so it was held at its best value and the range is too narrow by that."
+            f"The bills {which} the work do not place the balance temperature well, so the range "
+            "allows for every value that it may have, and is the wider for it."
         )
     for kind, tau, span in (
         ("heating", fit.balance_heating_f, fit.balance_heating_range_f),

@@ -33,9 +33,11 @@ from normalize.savings.kernel import (
     NAC_AFTER,
     NAC_BEFORE,
     PREDICTED,
+    UNSURE_AFTER,
+    UNSURE_BEFORE,
     compare_batch,
 )
-from normalize.savings.methods import METHOD, METHOD_HELD, Methods
+from normalize.savings.methods import METHOD, METHOD_UNSURE, Methods
 from normalize.savings.results import Estimate, Savings
 from normalize.savings.sides import Moment, Work, codes, label_periods
 from normalize.savings.stated import STATED_F, at_stated, needs_stated
@@ -45,14 +47,20 @@ from normalize.weather.year import LongTermYear
 
 @dataclass(frozen=True, slots=True)
 class Comparison:
-    """Savings of one account with everything that was tried on the way."""
+    """Savings of one account with everything that was tried on the way.
+
+    held, unsure : on either side, the balance temperature could not be told from the rest;
+    the bills do not place it, so that the range tries all it may be.
+    """
 
     savings: Savings
     tried_before: tuple[FormTried, ...]
     tried_after: tuple[FormTried, ...]
     labels: tuple[str, ...]
     held: tuple[bool, bool]
+    unsure: tuple[bool, bool] = (False, False)
     stated_f: float | None = None  # balance temperature that was stated, not found
+    fits: NDArray[np.float64] | None = None  # (1, 2, forms, columns), for parts of the savings
 
 
 def run_batch(
@@ -141,12 +149,15 @@ def compare(
     if after_reason(facts[1], work)[0] and facts[1].n:
         own = _without_after(batch, table, year, confidence, tried[0], own)
     held = (answers[0, HELD_BEFORE] == 1.0, answers[0, HELD_AFTER] == 1.0)
+    unsure = (answers[0, UNSURE_BEFORE] == 1.0, answers[0, UNSURE_AFTER] == 1.0)
     savings = _assemble(
         own, tried, facts, work, year, year_unavailable, confidence,
         _same_form(batch, table, year, fits[0], chosen[0], confidence),
-        Methods.of(held, stated is not None), net_metered,
+        Methods.of(unsure, stated is not None), net_metered,
     )  # fmt: skip
-    return Comparison(savings, tried[0], tried[1], labels, held, STATED_F if stated else None)
+    return Comparison(
+        savings, tried[0], tried[1], labels, held, unsure, STATED_F if stated else None, fits
+    )
 
 
 def _without_after(
@@ -249,8 +260,8 @@ def _same_form(
         _, _, answers = run_batch(
             batch, table, [year], confidence=confidence, tried=mask, forced=(code, code)
         )
-        held = answers[0, HELD_BEFORE] == 1.0 or answers[0, HELD_AFTER] == 1.0
-        method = METHOD_HELD if held else METHOD
+        unsure = answers[0, UNSURE_BEFORE] == 1.0 or answers[0, UNSURE_AFTER] == 1.0
+        method = METHOD_UNSURE if unsure else METHOD
         out.append(
             (
                 f.BY_CODE[code].name,

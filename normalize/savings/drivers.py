@@ -25,16 +25,23 @@ from normalize.defaults import (
 from normalize.fitting.align import Aligned
 from normalize.fitting.batch import Batch, Stations
 from normalize.fitting.columns import AFTER, BEFORE, UNUSED
-from normalize.fitting.driver_fit import DriverFit, fit_with, shared_with
+from normalize.fitting.driver_fit import (
+    DriverFit,
+    fit_with,
+    fortnight_days,
+    fortnights,
+    shared_with,
+)
 from normalize.fitting.drivers import (
     DailyAmounts,
     as_drivers,
     normal_level,
     period_means,
 )
-from normalize.fitting.fit import batch_of_one
+from normalize.fitting.fit import batch_of_one, side_data
 from normalize.savings.sides import codes
 
+EVEN_SHARE: Final = 0.02  # of a driver's variance that is left between fortnights
 SIDES: Final = (("before", BEFORE), ("after", AFTER))
 
 
@@ -76,13 +83,21 @@ class Chosen:
     """The drivers that earned their place.
 
     trials : every driver, in the order of site.toml.  aligned : the periods with the drivers
-    kept, those without a known amount of one set aside.  amounts, normals : of every driver.
+    kept, those without a known amount of one set aside.  rhythm : (n, 2) use a day that was
+    taken off daily readings for kinds of days that come round every fortnight, by the effects
+    before and after the work; a period's own side's was taken off.
+    original : the periods as they came.  amounts, normals : of every driver.
     """
 
     trials: tuple[DriverTrial, ...]
     aligned: Aligned
+    rhythm: NDArray[np.float64]
+    original: Aligned
+    labels: tuple[str, ...]
     amounts: tuple[DailyAmounts, ...]
     normals: tuple[float, ...]
+    _days: _Bench
+    _fast: tuple[int, ...]
 
     @property
     def kept(self) -> tuple[str, ...]:
@@ -92,9 +107,11 @@ class Chosen:
     def with_only(self, names: Sequence[str]) -> Aligned:
         """The same periods with other drivers, in the order of site.toml."""
         at = [j for j, amounts in enumerate(self.amounts) if amounts.name in names]
-        return with_drivers(
-            self.aligned, [self.amounts[j] for j in at], [self.normals[j] for j in at]
-        )
+        fast = tuple(j for j in at if j in self._fast)
+        slow = [j for j in at if j not in self._fast]
+        aligned = replace(self.original, reason=self.aligned.reason)
+        calm, _ = _without_rhythm(self._days, aligned, self.labels, fast)
+        return with_drivers(calm, [self.amounts[j] for j in slow], [self.normals[j] for j in slow])
 
 
 def with_drivers(
@@ -115,13 +132,27 @@ class _Bench:
     table: Stations
     values: NDArray[np.float64]
     done: dict[tuple[int, ...], tuple[DriverFit | None, DriverFit | None]]
+    in_fortnights: bool = False
 
     def fits(self, names: tuple[int, ...]) -> tuple[DriverFit | None, DriverFit | None]:
         if names not in self.done:
             x = np.ascontiguousarray(self.values[:, list(names)])
-            before, after = (fit_with(self.batch, self.table, code, x) for _, code in SIDES)
+            before, after = (
+                fit_with(self.batch, self.table, code, x, in_fortnights=self.in_fortnights)
+                for _, code in SIDES
+            )
             self.done[names] = (before, after)
         return self.done[names]
+
+    def columns(self, code: int) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """(rows, drivers) of a side as its fits see them, and the days of each row."""
+        mine = self.batch.side == code
+        x = np.ascontiguousarray(self.values[mine])
+        days = (self.batch.end - self.batch.start)[mine].astype(np.float64)
+        if not self.in_fortnights:
+            return x, days
+        side = side_data(self.batch, self.table, code)
+        return fortnights(side, x), fortnight_days(side)
 
     def bic(self, names: tuple[int, ...]) -> float:
         """Of both sides together; of those that can be fitted without any driver."""
@@ -164,20 +195,94 @@ def choose_drivers(
     values = np.zeros((aligned.n, len(drivers)))
     if tried_on.drivers is not None:
         values[:, open_] = tried_on.drivers.values
-    bare = replace(tried_on, drivers=None)
-    bench = _Bench(*batch_of_one(bare, side, tuple(forms), net), values, {})
-    for j in open_:
-        earlier = [i for i in open_ if i < j and not refused[i]]
-        refused[j] = _collinear(bench, drivers, j, earlier)
-    able = [j for j in open_ if not refused[j]]
-    kept = _forward(bench, able)
-    trials = tuple(_trial(bench, d, j, refused[j], levels[j], kept) for j, d in enumerate(drivers))
+    days = _bench(tried_on, side, values, forms, net)
+    fast = tuple(j for j in open_ if _comes_round(days, j))
+    kept_fast = _screened(days, drivers, fast, refused)
+    calm, rhythm = _without_rhythm(days, tried_on, labels, kept_fast)
+    bench = _bench(calm, side, values, forms, net, in_fortnights=True)
+    kept_slow = _screened(bench, drivers, [j for j in open_ if j not in fast], refused)
+    trials = tuple(
+        _trial(days, d, j, refused[j], levels[j], kept_fast)
+        if j in fast
+        else _trial(bench, d, j, refused[j], levels[j], kept_slow)
+        for j, d in enumerate(drivers)
+    )
+    kept = sorted((*kept_fast, *kept_slow))
+    known = with_drivers(aligned, [drivers[j] for j in kept], [levels[j][0] for j in kept])
+    calm, rhythm = _without_rhythm(days, replace(known, drivers=None), labels, kept_fast)
     return Chosen(
         trials=trials,
-        aligned=with_drivers(aligned, [drivers[j] for j in kept], [levels[j][0] for j in kept]),
+        aligned=with_drivers(
+            calm, [drivers[j] for j in kept_slow], [levels[j][0] for j in kept_slow]
+        ),
+        rhythm=rhythm,
+        original=aligned,
+        labels=labels,
         amounts=tuple(drivers),
         normals=tuple(level for level, _ in levels),
+        _days=days,
+        _fast=fast,
     )
+
+
+def _bench(
+    aligned: Aligned,
+    side: NDArray[np.uint8],
+    values: NDArray[np.float64],
+    forms: Sequence[str],
+    net: bool,
+    *,
+    in_fortnights: bool = False,
+) -> _Bench:
+    bare = replace(aligned, drivers=None)
+    batch, table = batch_of_one(bare, side, tuple(forms), net)
+    return _Bench(batch, table, values, {}, in_fortnights)
+
+
+def _screened(
+    bench: _Bench, drivers: Sequence[DailyAmounts], tried: Sequence[int], refused: list[str]
+) -> tuple[int, ...]:
+    """The drivers kept; reasons against those refused are written down."""
+    for j in tried:
+        earlier = [i for i in tried if i < j and not refused[i]]
+        refused[j] = _collinear(bench, drivers, j, earlier)
+    return _forward(bench, [j for j in tried if not refused[j]])
+
+
+def _comes_round(bench: _Bench, j: int) -> bool:
+    """Whether a driver of daily readings comes round so evenly that fortnights all have as
+    much of it, as weekends do.  Its effect shows from day to day; a year's total hardly knows it.
+    """
+    side = side_data(bench.batch, bench.table, BEFORE)
+    x = bench.values[bench.batch.side == BEFORE][:, [j]]
+    means = fortnights(side, x) if x.shape[0] else x
+    if means.shape[0] == x.shape[0]:
+        return False
+    return float(means.var()) < EVEN_SHARE * float(x.var())
+
+
+def _without_rhythm(
+    days: _Bench, aligned: Aligned, labels: tuple[str, ...], fast: tuple[int, ...]
+) -> tuple[Aligned, NDArray[np.float64]]:
+    """Periods with the effect of evenly recurring kinds of days taken off, and (n, 2) what is
+    taken off a day, by the effects of either side.
+
+    About each side's own mean, so that a side's total stays what was billed.
+    """
+    rhythm = np.zeros((aligned.n, 2))
+    if not fast:
+        return aligned, rhythm
+    x = days.values[:, list(fast)]
+    own = np.zeros(aligned.n)
+    lengths = aligned.days.astype(np.float64)
+    for which, ((side, _), fit) in enumerate(zip(SIDES, days.fits(fast), strict=True)):
+        mine = np.array([label == side for label in labels], dtype=np.bool_) & aligned.usable
+        if fit is None or not mine.any():
+            continue
+        centre = np.average(x[mine], axis=0, weights=lengths[mine])
+        rhythm[:, which] = (x - centre) @ np.array(fit.coef)
+        own[mine] = rhythm[mine, which]
+    return replace(aligned, use=aligned.use - own * lengths), rhythm
 
 
 def _span(aligned: Aligned, labels: tuple[str, ...], side: str) -> tuple[int, int] | None:
@@ -217,9 +322,7 @@ def _collinear(
     for (side, code), bare in zip(SIDES, bench.fits(()), strict=True):
         if bare is None:
             continue
-        mine = bench.batch.side == code
-        days = (bench.batch.end - bench.batch.start)[mine].astype(np.float64)
-        x = bench.values[mine]
+        x, days = bench.columns(code)
         if shared_with(x[:, j], np.empty((x.shape[0], 0)), days) >= 1.0:
             return f"it is the same in every bill {side} the work"
         mean = float((days * x[:, j]).sum() / days.sum())

@@ -133,6 +133,7 @@ def _forms(asked: Asked, side: NDArray[np.uint8]) -> list[Variation]:
         station=np.zeros(len(pairs), dtype=np.int32),
         wanted=wanted,
         net=np.full(len(pairs), asked.net),
+        drivers=None if batch.drivers is None else np.tile(batch.drivers, (len(pairs), 1)),
     )
     found = Answers(
         asked,

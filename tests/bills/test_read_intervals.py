@@ -11,13 +11,18 @@ from datetime import UTC, datetime, timedelta
 from pathlib import Path
 
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
+from normalize.bills.answers import answers_of
 from normalize.bills.periods import Bills
-from normalize.bills.read import read_bills
+from normalize.bills.read import read_bills, understand_file
+from normalize.bills.table import open_file
 from normalize.days import iso
 from normalize.errors import AmbiguousBills, NormalizeError, UnreadableBills
 
 pytestmark = pytest.mark.kernel
+TMP_PATH_IS_SHARED = [HealthCheck.function_scoped_fixture]
 
 
 def read(lines: list[str], folder: Path, encoding: str = "utf-8", **options: object) -> Bills:
@@ -250,3 +255,66 @@ def test_no_more_lines_than_a_century_of_quarter_hours(
     monkeypatch.setattr(interval_file, "MAX_LINES", 50)
     with pytest.raises(UnreadableBills, match="more than 50 lines"):
         read(["Timestamp,kWh", *(f"{h:%Y-%m-%d %H:%M},0.5" for h in HOURS)], tmp_path)
+
+
+@settings(max_examples=40, deadline=None, suppress_health_check=TMP_PATH_IS_SHARED)
+@given(
+    first=st.datetimes(datetime.fromisoformat("2001-01-01"), datetime.fromisoformat("2030-01-01")),
+    uses=st.lists(st.integers(0, 10**7), min_size=50, max_size=200),
+    minutes=st.sampled_from([5, 15, 30, 60]),
+    shape=st.sampled_from(["%Y-%m-%d %H:%M", "%Y-%m-%dT%H:%M:%S", "%d-%b-%Y %I:%M %p",
+                           "%Y%m%d %H:%M", "%Y-%m-%d,%H%M", '"%Y-%m-%d %H:%M"']),
+    places=st.integers(0, 4),
+    pad=st.sampled_from(["", " "]),
+)  # fmt: skip
+def test_daily_sums_are_those_of_pandas(
+    first: datetime, uses: list[int], minutes: int, shape: str, places: int, pad: str,
+    tmp_path: Path,
+) -> None:  # fmt: skip
+    """Sums of every day, whole or not, against pandas, a reference library, on the same moments."""
+    import pandas as pd
+
+    begin = first.replace(minute=0, second=0, microsecond=0)
+    stamps = [begin + timedelta(minutes=minutes * k) for k in range(len(uses))]
+    numbers = [round(u / 10**places, places) for u in uses]
+    head = "Date,Time,kWh" if "," in shape else "Timestamp,kWh"
+    lines = [f"{s.strftime(shape)},{pad}{u:.{places}f}{pad}" for s, u in
+             zip(stamps, numbers, strict=True)]  # fmt: skip
+    file = tmp_path / "any.csv"
+    file.write_text("\n".join([head, *lines]) + "\n")
+    answers = answers_of(file.name, {"interval_times": "start"})
+    rows = understand_file(open_file(file), answers, None).rows
+    frame = pd.Series(numbers, index=[s.date() for s in stamps])
+    sums = frame.groupby(level=0).sum()
+    assert [iso(r.start or 0) for r in rows] == [f"{d}" for d in sums.index]
+    assert [r.use for r in rows] == pytest.approx(sums.tolist(), rel=1e-12, abs=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("head", "lines", "day"),
+    [
+        # Hours and minutes without a colon, whose noughts a spreadsheet has dropped.
+        ("Date,Time,kWh", [f"2023-01-13,{h * 100 + m},0.5" for h in range(24) for m in
+                           (0, 15, 30, 45)], 48.0),
+        ("Date,Time,kWh", [f"2023-01-13,{h:02}{m:02},0.5" for h in range(24) for m in
+                           (0, 15, 30, 45)], 48.0),
+        ("Date,Time,kWh", [f"2023-01-13,{h:02}:00 - {h + 1:02}:00,0.5" for h in range(24)], 12.0),
+        ("Time,Date,kWh", [f"{h}:00,2023-01-13,0.5" for h in range(24)], 12.0),
+        ("Date,Time,kWh", [f"2023-01-13 00:00,{h}:00,0.5" for h in range(24)], 12.0),
+        ("Timestamp,kWh", [f"13-JAN-2023:{h:02}:00,0.5" for h in range(24)], 12.0),
+        ("Timestamp,kWh", [f"2023-01-13 {h:02}:00:00.000 -0500,0.5" for h in range(24)], 12.0),
+        ("Timestamp,kWh", [f"  2023-01-13 {h:02}:00  , 0.5 " for h in range(24)], 12.0),
+        ("Timestamp,kWh,x", [f'"2023-01-13 {h:02}:00","0.5","a, b"' for h in range(24)], 12.0),
+        ("Timestamp,kWh", [f"2023-01-13 {h:02}:00,0.5\r" for h in range(24)], 12.0),
+        ("Timestamp,kWh", [f"2023-01-13 {h:02}:00,.5 kWh" for h in range(24)], 12.0),
+    ],
+)  # fmt: skip
+def test_more_ways_to_write(head: str, lines: list[str], day: float, tmp_path: Path) -> None:
+    bills = read([head, *lines], tmp_path)
+    assert days_of(bills) == {"2023-01-13": day}
+
+
+def test_a_date_beside_a_time_that_contradicts_it_is_not_used(tmp_path: Path) -> None:
+    lines = [f"2023-01-13 {h:02}:00,{(h + 1) % 24}:00,0.5" for h in range(24)]
+    with pytest.raises(NormalizeError):
+        read(["Date,Time,kWh", *lines], tmp_path)
