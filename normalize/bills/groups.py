@@ -29,12 +29,16 @@ MOST_LABEL = 60
 FEW_DIGITS = 2  # "Unit 12" is a name, not a number
 _OWN_NAME = re.compile(r"(?:meter|account) \d{1,6}")
 MOST_SHOWN = 5  # of them, to tell two numbers apart; then places in the file do
-NO_NUMBER = "the line does not say whose it is, and the file holds several accounts"
+NO_NUMBER = (
+    "the line does not say whose it is, and the file holds several accounts: fill in the number "
+    "on every line"
+)
 REPLACED = "the meter was replaced: one follows the other, without overlap"
 _SERVICE_WORDS = {
     "usage", "use", "service", "consumption", "delivery", "meter", "account", "billing",
 }  # fmt: skip
 
+_TOTAL_WORDS = ("total", "totals", "subtotal", "sum", "average")
 _TOTALS = {squeeze(word) for word in TOTALS}
 
 Key = tuple[str, ...]
@@ -260,7 +264,8 @@ def _names(columns: Columns, lines: Sequence[tuple[RawRow, str]]) -> tuple[str, 
 def _name(value: Cell) -> str:
     """An account's name for comparing; "" where there is none, or the word "Total"."""
     text = squeeze(plain(value))
-    return "" if text in _TOTALS else text
+    first = plain(value).lower().split(" ", 1)[0]
+    return "" if text in _TOTALS or first in _TOTAL_WORDS else text
 
 
 def named(groups: Iterable[Group], rows: str) -> list[Group]:

@@ -43,6 +43,7 @@ from normalize.bills.layouts import (
 from normalize.bills.records import Proven, settled_by_all
 from normalize.bills.registers import Register, difference
 from normalize.bills.repair import Kind
+from normalize.bills.sections import with_sections
 from normalize.bills.select import select_rows, without_remarks
 from normalize.bills.sum_rows import several
 from normalize.bills.table import RawRow, RawTable
@@ -72,13 +73,14 @@ class Head:
 def head_of(table: RawTable, answers: Answers) -> Head:
     """The header of a table for the fuel of the answers.  Raises as read_bills does."""
     columns, all_rows = find_columns(table, answers.named)
+    columns, all_rows, section_notes = with_sections(table, columns, all_rows)
     where = f"{table.name}:{columns.line}"
     header = [squeeze(c) for row in table.rows if row.line == columns.line for c in row.cells]
     columns, usage_notes = choose_usage(
         columns, fuel=answers.fuel, unit=answers.unit, where=table.name
     )
     body, totals, remark_notes = without_remarks(columns, header, all_rows)
-    notes = (*usage_notes, *remark_notes)
+    notes = (*usage_notes, *section_notes, *remark_notes)
     return Head(table, columns, body, frozenset(totals), notes, where)
 
 

@@ -300,3 +300,29 @@ def test_every_line_is_somewhere_once(
             whose = {(lines[r.line - 2][0], lines[r.line - 2][1]) for r in account.bills.rows}
             assert len({n for n, _ in whose} - {""}) <= 1
             assert len({s for _, s in whose} - {""}) <= 1
+
+
+def test_accounts_named_in_lines_above_their_bills(tmp_path: Path) -> None:
+    """Else the second account's bills pass for later versions of the first one's."""
+    text = (
+        "Usage report\nAccount: 7000112233\nStart,End,Therms\n2023-01-05,2023-02-06,81\n"
+        "2023-02-06,2023-03-07,70\nAccount No.,7000998877\nStart,End,Therms\n"
+        "2023-01-05,2023-02-06,11\n2023-02-06,2023-03-07,12\nTotal,,23\n"
+    )
+    found = accounts_of(tmp_path, text)
+    assert uses(found) == {"…2233": [81.0, 70.0], "…8877": [11.0, 12.0]}
+    with pytest.raises(AmbiguousBills, match='rows = "2233" or rows = "8877"'):
+        read_bills(tmp_path / "bills.csv")
+    assert read_bills(tmp_path / "bills.csv", rows="8877").periods.use.tolist() == [11.0, 12.0]
+    one = text.replace("7000998877", "7000112233").replace("2023-0", "2023-0")
+    assert len(accounts_of(tmp_path, one).accounts) == 1
+
+
+def test_totals_of_each_account_are_nobodys(tmp_path: Path) -> None:
+    text = "Account,Start,End,Therms\n" + "".join(
+        f"{n},{a},{b},10\n" for n in ("7000112233", "7000998877") for a, b in SPANS
+    )
+    text = text.replace("7000998877", "Total for 7000112233,,,30\n7000998877", 1)
+    found = accounts_of(tmp_path, text + "Total for 7000998877,,,30\nGrand total,,,60\n")
+    assert uses(found) == {"…2233": [10.0] * 3, "…8877": [10.0] * 3}
+    assert [e.note for e in found.nobodys] == ["a total, not a bill"] * 3
