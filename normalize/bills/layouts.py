@@ -124,19 +124,39 @@ def are_days(records: Sequence[Record]) -> bool:
     return len(steps) >= DAILY_LINES and steps.count(1) >= 0.9 * len(steps)
 
 
-def from_dates_alone(records: Sequence[Record], event: str) -> None:
+def read_with_others(records: Sequence[Record]) -> list[Record]:
+    """The readings of one fuel in a table that gives several side by side; blames the rest.
+
+    A blank beside another fuel's number may be a month in which this meter was not read, or a
+    bill that is missing.  Where hardly two numbers follow each other the meter is read at every
+    other date, and the blank ones are passed over; else what follows a blank began at an unknown
+    date (from_dates_alone with ``blanks_break``).
+    """
+    filled = [r.use is not None for r in records]
+    both = sum(1 for a, b in pairwise(filled) if a and b)
+    apart = sum(1 for a, b in pairwise(filled) if a and not b)
+    if not apart or apart < 4 * both:
+        return list(records)
+    for record in records:
+        if record.use is None:
+            record.blame("the meter of this fuel was not read on this date")
+    return [r for r in records if r.use is not None]
+
+
+def from_dates_alone(records: Sequence[Record], event: str, *, blanks_break: bool = False) -> None:
     """Each period runs from the reading (or full fill) before to this one.
 
     event : "reading" or "delivery".  The first opens the record; so does the first after a
-    line whose date, or whose delivered amount, cannot be used.
+    line whose date, or whose delivered amount, cannot be used; blanks_break : or whose use.
     """
+    blanks_break = blanks_break or event == "delivery"
     opened, broken_by = False, 0
     before = this = -(2**31)
     for record in _in_time(records):
-        if record.end is None or (event == "delivery" and record.use is None):
+        if record.end is None or (blanks_break and record.use is None):
             opened, broken_by = False, record.line
             if record.end is not None:
-                record.blame("no amount given")
+                record.blame("no amount given" if event == "delivery" else "no usage given")
             continue
         if opened and record.end != this:
             before, this = this, record.end

@@ -38,6 +38,7 @@ from normalize.bills.layouts import (
     from_days,
     from_months,
     from_start_days,
+    read_with_others,
     settle_ends,
 )
 from normalize.bills.records import Proven, settled_by_all
@@ -380,7 +381,9 @@ def _put_periods(records: Sequence[Record], found: Found, answers: Answers) -> t
     event: Literal["delivery", "reading"] = "delivery" if found.kind == "delivery" else "reading"
     tanks = tanks_of(records, found, answers) if found.kind == "delivery" else []
     open_by_levels(tanks)
-    from_dates_alone(records, event)
+    beside = found.kind == "meter" and len(found.columns.usage) > 1  # another fuel's numbers
+    readings = read_with_others(records) if beside else records
+    from_dates_alone(readings, event, blanks_break=beside)
     if use_by_levels(tanks):
         return ("use between deliveries by the levels of the tank",)
     return (f"a bill runs from the {event} before to its own",)

@@ -326,3 +326,29 @@ def test_totals_of_each_account_are_nobodys(tmp_path: Path) -> None:
     found = accounts_of(tmp_path, text + "Total for 7000998877,,,30\nGrand total,,,60\n")
     assert uses(found) == {"…2233": [10.0] * 3, "…8877": [10.0] * 3}
     assert [e.note for e in found.nobodys] == ["a total, not a bill"] * 3
+
+
+def side_by_side(gas: list[str]) -> str:
+    dates = ["2022-12-20", "2023-01-20", "2023-02-19", "2023-03-21", "2023-04-20", "2023-05-20"]
+    lines = [f"{day},900,{use}" for day, use in zip(dates, gas, strict=True)]
+    return "\n".join(["Read date,Electric kWh,Gas therms", *lines]) + "\n"
+
+
+def test_gas_read_every_second_month_beside_power_read_every_month(tmp_path: Path) -> None:
+    """A blank is no reading: the gas bill that follows covers two months, not one."""
+    found = accounts_of(tmp_path, side_by_side(["", "110", "", "160", "", "60"]))
+    gas = next(b for b in found.bills if b.fuel == "natural gas")
+    assert gas.periods.use.tolist() == [160.0, 60.0]
+    assert gas.periods.days.tolist() == [60, 60]
+    assert any("not read on this date" in e.note for e in gas.ledger)
+    power = next(b for b in found.bills if b.fuel == "electricity")
+    assert power.periods.n == 5
+
+
+def test_one_blank_beside_another_fuel_is_no_reading_to_count_from(tmp_path: Path) -> None:
+    """Missing bill or no reading: nobody knows, so what follows is not given a length by guess."""
+    found = accounts_of(tmp_path, side_by_side(["9", "110", "", "160", "100", "60"]))
+    gas = next(b for b in found.bills if b.fuel == "natural gas")
+    assert gas.periods.use.tolist() == [110.0, 100.0, 60.0]
+    assert [e.line for e in gas.ledger if e.fate == "left out"] == [2, 4, 5]
+    assert any("began at an unknown date" in e.note for e in gas.ledger)
