@@ -14,11 +14,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from normalize.fitting.align import Aligned
-from normalize.fitting.batch import Batch, Stations, gate
-from normalize.fitting.columns import BASE, SLOPE_C, SLOPE_H, SLOPE_LINE, TAU_C, TAU_H, WIDTH
+from normalize.fitting.batch import Batch, Stations, driver_gate, gate
 from normalize.fitting.fit import batch_of_one
-from normalize.fitting.forms import N_FORMS, form_named
-from normalize.fitting.results import Fit
+from normalize.fitting.forms import form_named
 from normalize.savings.cautions import POOR_TAU_F
 from normalize.savings.compare import Comparison
 from normalize.savings.estimates import estimate_at
@@ -92,6 +90,7 @@ def run_parts(
     degrees = [y.cum_degrees if y else np.zeros(1) for y in years]
     found: Arrays = parts_batch(
         *gate(batch),
+        *driver_gate(batch),
         np.ascontiguousarray(fits, dtype=np.float64),
         np.ascontiguousarray(chosen, dtype=np.int8),
         table.temp, table.order, table.offsets, table.first_day,
@@ -115,21 +114,15 @@ def parts_of(
     the same bits.
     """
     savings = found.savings
-    if aligned.drivers is not None:
-        names = " and ".join(aligned.drivers.names)
-        return Parts(unavailable=f"use was fitted with {names} beside the weather")
-    if savings.before is None:
+    if savings.before is None or found.fits is None:
         return Parts(unavailable=savings.before_unavailable or REASONS[NO_FIT])
-    fits = np.full((1, 2, N_FORMS, WIDTH), np.nan)
     chosen = np.full((1, 2), np.int8(-1))
     for side, fit in enumerate((savings.before, savings.after)):
         if fit is not None:
-            code = form_named(fit.form).code
-            fits[0, side, code] = _row(fit)
-            chosen[0, side] = code
+            chosen[0, side] = form_named(fit.form).code
     batch, table = batch_of_one(aligned, codes(found.labels), (savings.before.form,))
     parts, slopes, why = run_parts(
-        batch, table, [year], fits, chosen, confidence=confidence,
+        batch, table, [year], found.fits, chosen, confidence=confidence,
         hold=found.stated_f is not None,
     )  # fmt: skip
     return _assembled(found, parts[0], slopes[0], int(why[0]), confidence)
@@ -195,19 +188,3 @@ def _rough(savings: Savings) -> str:
         f"The bills place the balance temperature only roughly ({'; '.join(told)}), so the parts "
         "are rough, and so are their ranges: trust the whole more than its parts."
     )
-
-
-def _row(fit: Fit) -> NDArray[np.float64]:
-    """A fit as the kernel's row: the numbers that parts need."""
-    row = np.full(WIDTH, np.nan)
-    row[BASE] = fit.base_load
-    for at, value in (
-        (SLOPE_LINE, fit.line_slope),
-        (SLOPE_H, fit.heating_slope),
-        (SLOPE_C, fit.cooling_slope),
-        (TAU_H, fit.balance_heating_f),
-        (TAU_C, fit.balance_cooling_f),
-    ):
-        if value is not None:
-            row[at] = value
-    return row

@@ -10,8 +10,8 @@ from typing import Final
 
 import numpy as np
 
-from normalize import jit
-from normalize.fitting.batch import take_side
+from normalize.fitting.batch import take_drivers, take_side
+from normalize.fitting.blocks import block_of
 from normalize.fitting.columns import (
     AFTER,
     BASE,
@@ -22,15 +22,16 @@ from normalize.fitting.columns import (
     TAU_C,
     TAU_H,
 )
-from normalize.fitting.correlation import positions, through_rho, weights_of
+from normalize.fitting.correlation import weights_of
 from normalize.fitting.forms import COOLING, HEATING, LINE, TWO_SLOPES
-from normalize.fitting.linear import linearise
-from normalize.fitting.mixture import difference_range, mixture_range
-from normalize.fitting.rho import RHO_ZERO
-from normalize.fitting.student import t_quantile
+from normalize.fitting.linear import linearise_with
+from normalize.fitting.mixture import difference_range_with, mixture_range_with
+from normalize.fitting.spread import through_errors
+from normalize.fitting.student import no_tables, t_quantile
 from normalize.fitting.sweep import SHIFT_F
+from normalize.jit import kernel
+from normalize.savings.one_side import unsure
 
-kernel = jit.kernel
 MOST_PARTS: Final = 5
 ESTIMATE: Final = 5  # value, low, high, plain low, plain high
 
@@ -139,25 +140,30 @@ def parts_about(row1, row2, form, k, temp, days, degrees):
 
 
 @kernel
-def _single(out, value, weight, shift, scale2, df, confidence):
-    """Value, default range and plain range of one t."""
+def _single(out, value, weight, seen, confidence, tables):
+    """Value, default range and plain range of one t.
+
+    seen : (shift (27,), scale2 (27,), plain scale², degrees of freedom).
+    """
+    shift, scale2, plain2, df = seen
     out[0] = value
-    scale = np.sqrt(scale2)
-    out[1], out[2] = mixture_range(weight, value + shift, scale, df, confidence)
-    half = t_quantile(0.5 + 0.5 * confidence, df) * scale[RHO_ZERO]
+    out[1], out[2] = mixture_range_with(
+        weight, value + shift, np.sqrt(scale2), df, confidence, tables
+    )
+    half = t_quantile(0.5 + 0.5 * confidence, df) * np.sqrt(plain2)
     out[3] = value - half
     out[4] = value + half
 
 
 @kernel
-def _difference(out, value, weight, sh1, sc1, df1, sh2, sc2, df2, confidence):
+def _difference(out, value, weight, seen1, seen2, confidence, tables):
     """Value, default range and plain range of a difference of two t, ρ shared."""
+    sh1, sc1, v1, df1 = seen1
+    sh2, sc2, v2, df2 = seen2
     out[0] = value
-    out[1], out[2] = difference_range(
-        weight, value + sh1, np.sqrt(sc1), df1, sh2, np.sqrt(sc2), df2, confidence
+    out[1], out[2] = difference_range_with(
+        weight, value + sh1, np.sqrt(sc1), df1, sh2, np.sqrt(sc2), df2, confidence, tables
     )
-    v1 = sc1[RHO_ZERO]
-    v2 = sc2[RHO_ZERO]
     welch = (v1 + v2) ** 2 / (v1 * v1 / df1 + v2 * v2 / df2) if v1 + v2 > 0.0 else df1
     half = t_quantile(0.5 + 0.5 * confidence, max(int(welch), 1)) * np.sqrt(v1 + v2)
     out[3] = value - half
@@ -165,10 +171,22 @@ def _difference(out, value, weight, sh1, sc1, df1, sh2, sc2, df2, confidence):
 
 
 @kernel
-def _through(jac, resid, w, s, e, targets):
-    """Log-likelihood, shifts and scales² of the targets through every ρ."""
-    like, shift, scale2, _ = through_rho(jac, resid, w, positions(s, e), targets)
-    return like, shift, scale2
+def _side(row, form, side, drivers, hold):
+    """One side as a straight line: (Jacobian, residuals, degrees of freedom, τ placed?)."""
+    ts, ps, y, d, w, s, e = side
+    jac, resid, _, held = linearise_with(row, form, ts, ps, y, d, w, drivers, hold)
+    _, place = block_of(s, e)
+    df = place.shape[0] - jac.shape[1]
+    placed = not hold and not held and not unsure(row, form, side, drivers, df)
+    return jac, resid, df, placed
+
+
+@kernel
+def _through(jac, resid, side, targets):
+    """The targets through every ρ and way that errors grow: (like, shift, scale2, plain2)."""
+    zero = np.empty(0)
+    none = (zero, np.empty(0, np.int32), zero, zero, zero, zero, zero)
+    return through_errors(jac, resid, side[2] - resid, side, targets, none, zero)
 
 
 @kernel
@@ -177,48 +195,57 @@ def _has_heating(form):
 
 
 @kernel
-def _targets(gradients, m, k, heating):
-    """(m + 1, k): the parts' gradients, then the heating slope's own."""
+def _targets(gradients, m, k, slope):
+    """(m + 1, k): the parts' gradients, then the heating slope's own (its column, or −1)."""
     out = np.zeros((m + 1, k))
     for j in range(m):
         for c in range(k):
             out[j, c] = gradients[j, c]
-    if heating:
-        out[m, 1] = 1.0
+    if slope >= 0:
+        out[m, slope] = 1.0
     return out
 
 
 @kernel
-def take_apart(parts, slopes, row1, form1, side1, row2, form2, side2, year, hold, confidence):
+def _seen(found, j, df):
+    """One target of what ``_through`` found, with the degrees of freedom."""
+    _, shift, scale2, plain2 = found
+    return shift[:, j].copy(), scale2[:, j].copy(), plain2[j], df
+
+
+@kernel
+def take_apart(
+    parts, slopes, row1, form1, side1, drivers1, row2, form2, side2, drivers2, year, hold,
+    confidence, tables,
+):  # fmt: skip
     """One account's parts and heating slopes; returns why there are no parts, or KNOWN.
 
     parts (MOST_PARTS, ESTIMATE), slopes (3, ESTIMATE) : written; NaN stays where nothing is
-    known.  side : (ts, ps, y, d, w, start, end); year : (temp, cum days, cum degrees).
+    known.  side : (ts, ps, y, d, w, start, end); drivers (n, k), from their normal level;
+    year : (temp, cum days, cum degrees).
     """
     if form1 < 0:
         return NO_FIT
-    ts, ps, y, d, w, s, e = side1
     temp, days, degrees = year
-    jac, resid, held = linearise(row1, form1, ts, ps, y, d, w, hold)
-    n, k = jac.shape
+    jac, resid, df, placed = _side(row1, form1, side1, drivers1, hold)
+    k = jac.shape[1]
+    # The slope's column, where a balance temperature that is placed makes it worth telling.
+    slope = 1 + drivers1.shape[1] if placed and _has_heating(form1) else -1
     none = np.zeros((0, k))
-    heating1 = _has_heating(form1)
     if form2 < 0:
-        if heating1:
-            target = _targets(none, 0, k, True)
-            like, sh, sc = _through(jac, resid, w, s, e, target)
-            _single(
-                slopes[SLOPE_BEFORE], row1[SLOPE_H], weights_of(like), sh[:, 0].copy(),
-                sc[:, 0].copy(), n - k, confidence,
-            )  # fmt: skip
+        found = _through(jac, resid, side1, _targets(none, 0, k, slope))
+        if slope >= 0:
+            weight = weights_of(found[0])
+            _single(slopes[SLOPE_BEFORE], row1[SLOPE_H], weight, _seen(found, 0, df), confidence,
+                    tables)  # fmt: skip
         return NO_FIT
-    ts2, ps2, y2, d2, w2, s2, e2 = side2
-    jac2, resid2, held2 = linearise(row2, form2, ts2, ps2, y2, d2, w2, hold)
-    n2, k2 = jac2.shape
+    jac2, resid2, df2, placed2 = _side(row2, form2, side2, drivers2, hold)
+    k2 = jac2.shape[1]
+    slope2 = 1 + drivers2.shape[1] if placed2 and _has_heating(form2) else -1
     why = KNOWN
     if form1 != form2:
         why = FORMS_DIFFER
-    elif held or held2:
+    elif form1 > LINE and not (placed and placed2):
         why = HELD
     elif temp.shape[0] == 0:
         why = NO_YEAR
@@ -230,33 +257,29 @@ def take_apart(parts, slopes, row1, form1, side1, row2, form2, side2, year, hold
         m = parts_in(form1)
         value, g1, _ = parts_about(row1, row2, form1, k, temp, days, degrees)
         _, _, g2 = parts_about(row1, row2, form1, k2, temp, days, degrees)
-    heating2 = _has_heating(form2)
-    like, sh, sc = _through(jac, resid, w, s, e, _targets(g1, m, k, heating1))
-    like2, sh2, sc2 = _through(jac2, resid2, w2, s2, e2, _targets(g2, m, k2, heating2))
-    weight = weights_of(like + like2)
+    found = _through(jac, resid, side1, _targets(g1, m, k, slope))
+    found2 = _through(jac2, resid2, side2, _targets(g2, m, k2, slope2))
+    weight = weights_of(found[0] + found2[0])
     for j in range(m):
         _difference(
-            parts[j], value[j], weight, sh[:, j].copy(), sc[:, j].copy(), n - k,
-            sh2[:, j].copy(), sc2[:, j].copy(), n2 - k2, confidence,
+            parts[j], value[j], weight, _seen(found, j, df), _seen(found2, j, df2), confidence,
+            tables,
         )  # fmt: skip
-    a, b = sh[:, m].copy(), sc[:, m].copy()
-    a2, b2 = sh2[:, m].copy(), sc2[:, m].copy()
-    if heating1:
-        _single(slopes[SLOPE_BEFORE], row1[SLOPE_H], weight, a, b, n - k, confidence)
-    if heating2:
-        _single(slopes[SLOPE_AFTER], row2[SLOPE_H], weight, a2, b2, n2 - k2, confidence)
-    if heating1 and heating2:
-        _difference(
-            slopes[SLOPE_CHANGE], row1[SLOPE_H] - row2[SLOPE_H], weight, a, b, n - k, a2, b2,
-            n2 - k2, confidence,
-        )  # fmt: skip
+    one, two = _seen(found, m, df), _seen(found2, m, df2)
+    if slope >= 0:
+        _single(slopes[SLOPE_BEFORE], row1[SLOPE_H], weight, one, confidence, tables)
+    if slope2 >= 0:
+        _single(slopes[SLOPE_AFTER], row2[SLOPE_H], weight, two, confidence, tables)
+    if slope >= 0 and slope2 >= 0:
+        change = row1[SLOPE_H] - row2[SLOPE_H]
+        _difference(slopes[SLOPE_CHANGE], change, weight, one, two, confidence, tables)
     return why
 
 
 @kernel
 def parts_batch(
-    start, end, use, side, offsets, station, fits, chosen, temp, order, soff, first_day,
-    ytemp, yoff, ydays, ydegrees, ydoff, equal, hold, confidence,
+    start, end, use, side, offsets, station, drivers, n_drivers, fits, chosen,
+    temp, order, soff, first_day, ytemp, yoff, ydays, ydegrees, ydoff, equal, hold, confidence,
 ):  # fmt: skip
     """Parts and heating slopes of every account, from the fits that ``compare_batch`` made.
 
@@ -268,6 +291,7 @@ def parts_batch(
     parts = np.full((accounts, MOST_PARTS, ESTIMATE), np.nan)
     slopes = np.full((accounts, 3, ESTIMATE), np.nan)
     why = np.zeros(accounts, dtype=np.int8)
+    tables = no_tables()
     for i in range(accounts):
         a, b = offsets[i], offsets[i + 1]
         at = station[i]
@@ -278,11 +302,15 @@ def parts_batch(
             take_side(start[a:b], end[a:b], use[a:b], side[a:b], AFTER, temp[g:h],
                       first_day[at], order[g:h], equal),
         )  # fmt: skip
+        own = (
+            take_drivers(drivers[a:b], n_drivers[i], side[a:b], BEFORE),
+            take_drivers(drivers[a:b], n_drivers[i], side[a:b], AFTER),
+        )
         y1, y2 = yoff[at], yoff[at + 1]
         d1, d2 = ydoff[at], ydoff[at + 1]
         why[i] = take_apart(
-            parts[i], slopes[i], fits[i, 0, max(chosen[i, 0], 0)], chosen[i, 0], sides[0],
-            fits[i, 1, max(chosen[i, 1], 0)], chosen[i, 1], sides[1],
-            (ytemp[y1:y2], ydays[d1:d2], ydegrees[d1:d2]), hold, confidence,
+            parts[i], slopes[i], fits[i, 0, max(chosen[i, 0], 0)], chosen[i, 0], sides[0], own[0],
+            fits[i, 1, max(chosen[i, 1], 0)], chosen[i, 1], sides[1], own[1],
+            (ytemp[y1:y2], ydays[d1:d2], ydegrees[d1:d2]), hold, confidence, tables,
         )  # fmt: skip
     return parts, slopes, why

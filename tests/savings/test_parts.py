@@ -34,6 +34,7 @@ from normalize.fitting.columns import (
 )
 from normalize.fitting.fit import side_data
 from normalize.fitting.linear import linearise
+from normalize.fitting.student import no_tables
 from normalize.fitting.sweep import SHIFT_F
 from normalize.savings.compare import Comparison, compare, run_batch
 from normalize.savings.kernel import NORMALIZED
@@ -207,7 +208,7 @@ def test_ranges_of_parts_cover_what_they_say() -> None:
     )
     known = (why == KNOWN) & (chosen == f.HEATING).all(axis=1)
     n = int(known.sum())
-    assert n > 0.95 * HOMES
+    assert n > 0.9 * HOMES  # the others: bills that place a balance temperature nowhere
     truth = truth_of(homes.year, (0.6, 0.12, 61.0), (0.6, 0.12 * 0.8, 61.0 - 0.8))
     assert truth.sum() == pytest.approx(homes.truth, rel=1e-9)
     inside = covered(parts[known, :3], truth, 1, 2)
@@ -315,12 +316,14 @@ def test_there_are_no_parts_where_a_split_would_be_an_artefact() -> None:
     assert (chosen == f.HEATING).all()
     year = (homes.year.temp_f, homes.year.cum_days, homes.year.cum_degrees)
     sides = side_arrays(homes, 0, 0), side_arrays(homes, 0, 1)
+    none = tuple(np.empty((len(side[2]), 0)) for side in sides)  # type: ignore[arg-type]
 
     def why(form2: int, hold: bool = False) -> tuple[int, NDArray[np.float64], NDArray[np.float64]]:
         parts, slopes = np.full((MOST_PARTS, 5), np.nan), np.full((3, 5), np.nan)
         found = take_apart(
-            parts, slopes, fits[0, 0, f.HEATING], chosen[0, 0], sides[0],
-            fits[0, 1, max(form2, 0)], np.int8(form2), sides[1], year, hold, 0.9,
+            parts, slopes, fits[0, 0, f.HEATING], chosen[0, 0], sides[0], none[0],
+            fits[0, 1, max(form2, 0)], np.int8(form2), sides[1], none[1], year, hold, 0.9,
+            no_tables(),
         )  # fmt: skip
         return int(found), parts, slopes
 
@@ -332,7 +335,7 @@ def test_there_are_no_parts_where_a_split_would_be_an_artefact() -> None:
     reason, parts, slopes = why(f.HEATING, hold=True)
     assert reason == HELD
     assert np.isnan(parts).all()
-    assert np.isfinite(slopes).all()
+    assert np.isnan(slopes).all()  # a slope at a stated balance temperature looks too sure
     reason, parts, slopes = why(-1)
     assert reason == NO_FIT
     assert np.isfinite(slopes[0]).all()
