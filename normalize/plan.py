@@ -23,6 +23,11 @@ if TYPE_CHECKING:
     from normalize.weather.temperature import DailyTemperature
 
 MOST_YEARS: Final = 10  # whole years of the record, where the long-term year names none
+LEAST_DAYS: Final = 20  # of a bill; shorter ones are readings
+DAILY: Final = (
+    "its readings are closer together than bills, and bills are what is planned for: sum them "
+    'to months first (sum_to = "month")'
+)
 STATED: Final = (
     "its bills do not place a balance temperature, and at a stated one the range cannot be foretold"
 )
@@ -49,6 +54,7 @@ class Outlook:
     last: int | None = None
     length: int = 0
     delivered: bool = False
+    unsure: bool = False  # the bills place its balance temperature badly
     starts: int | None = None
     work_named: bool = False
     years: tuple[int, ...] = ()
@@ -118,6 +124,8 @@ def _of(
         return replace(none, unavailable=STATED)
     mine = np.flatnonzero(np.array([label == "before" for label in found.labels]))
     length = int(np.median(before.days[mine]))
+    if length < LEAST_DAYS:
+        return replace(none, unavailable=DAILY)
     starts = work.end if site.upgrades else work.end + length
     years = _years(site)
     temp = _months_to_come(site.weather, years, starts, max(COUNTS) * length)
@@ -132,6 +140,7 @@ def _of(
         last=int(before.end[mine].max()),
         length=length,
         delivered=bills.kind == "delivery",
+        unsure=bool(found.unsure[0]),
         starts=starts,
         work_named=bool(site.upgrades),
         years=years,

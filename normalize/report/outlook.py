@@ -24,6 +24,10 @@ ODDS: Final = (
     "“Four times in five” and “even odds”: how often a saving of that size would be told from no "
     "change, if it is there."
 )
+UNSURE: Final = (
+    "The bills place the balance temperature badly, so ranges will be wider, and the smallest "
+    "saving that shows larger, than is foretold here."
+)
 SAME_SHARE: Final = (
     "It takes the saving to be the same share of every bill, and bills after the work to err as "
     "those before it do. It cannot foresee other changes in the house."
@@ -38,6 +42,8 @@ def sentences(outlook: Outlook, confidence: float, hoped: float | None) -> tuple
     out = [_a_year(outlook, fuel)]
     if hoped is not None:
         out.append(_hoped(outlook, hoped, fuel))
+    if outlook.unsure:
+        out.append(UNSURE)
     out.append(_basis(outlook, confidence))
     return tuple(out)
 

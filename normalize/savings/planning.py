@@ -27,6 +27,7 @@ from normalize.fitting.correlation import positions, through_rho, weights_of
 from normalize.fitting.mixture import difference_range_with, mixture_range_with
 from normalize.fitting.results import Fit
 from normalize.fitting.rho import RHO
+from normalize.fitting.spread import through_errors
 from normalize.fitting.student import no_tables
 from normalize.savings.evidence import MIDDLE_F, days_of, jacobian_of
 from normalize.weather.year import LongTermYear
@@ -80,7 +81,7 @@ class Prospect:
 class Baseline:
     """A baseline's fit as a straight line about its solution, seen through every correlation.
 
-    jac (n, k), lengths (n,) days; like (27,) log-likelihood of each ρ.
+    jac (n, k); resid, fitted (n,) use a day; lengths (n,) days; start, end (n,) day numbers.
     """
 
     fit: Fit
@@ -88,7 +89,9 @@ class Baseline:
     lengths: NDArray[np.float64]
     jac: NDArray[np.float64]
     resid: NDArray[np.float64]
-    place: NDArray[np.float64]
+    fitted: NDArray[np.float64]
+    start: NDArray[np.float64]
+    end: NDArray[np.float64]
 
     @classmethod
     def of(cls, aligned: Aligned, mine: NDArray[np.intp], fit: Fit, *, held: bool) -> Baseline:
@@ -103,7 +106,9 @@ class Baseline:
             lengths=lengths,
             jac=jacobian_of(fit, days, owner, lengths, with_tau=not held),
             resid=aligned.use[mine] / lengths - fitted,
-            place=positions(start, end),
+            fitted=fitted,
+            start=start,
+            end=end,
         )
 
     @property
@@ -141,33 +146,25 @@ def prospects(
     q_p − q_tail: the 5 % quantile is the range's reach at 90 %, q_p the luck allowed for.
     """
     use, jac = _ahead(baseline.fit, ahead, held=baseline.held)
-    target = np.zeros((1 + len(counts), baseline.jac.shape[1]))
+    gradient = np.zeros(baseline.jac.shape[1])
     if year is not None:
-        target[0] = _gradient(baseline.fit, year, held=baseline.held)
-    for at, n in enumerate(counts, start=1):
-        target[at] = ahead.length * jac[:n].sum(axis=0)
-    w = baseline.lengths
-    like, shift, scale2, innovation = through_rho(
-        baseline.jac, baseline.resid, w, baseline.place, target
-    )
-    weight = weights_of(like)
-    seen = _Seen(
-        like, weight, shift, scale2, innovation, baseline.spare, float(w.mean()), no_tables()
-    )
+        gradient = _gradient(baseline.fit, year, held=baseline.held)
+    tables = no_tables()
     out = []
-    for at, n in enumerate(counts, start=1):
+    for n in counts:
+        seen = _Seen.of(baseline, ahead, gradient, jac[:n], use[:n], tables)
         lacking = "" if year is not None else "there is no long-term year"
         lacking = lacking or _lacks(baseline, ahead, n)
         normalized = None
         if not lacking and year is not None:
             normalized = _normalized(
-                seen, jac[:n], target[:1], baseline.fit.nac(year), ahead, confidence
+                seen, jac[:n], gradient, baseline.fit.nac(year), ahead, confidence
             )
         out.append(
             Prospect(
                 bills=n,
                 until=ahead.first + n * ahead.length,
-                avoided=_avoided(seen, at, n, use, ahead, confidence),
+                avoided=_avoided(seen, float(ahead.length * use[:n].sum()), confidence),
                 normalized=normalized,
                 unavailable=lacking,
             )
@@ -177,7 +174,12 @@ def prospects(
 
 @dataclass(frozen=True, slots=True)
 class _Seen:
-    """The baseline through every ρ: shift, scale2 (27, targets), innovation (27,)."""
+    """The baseline through every ρ, as a range sees it.
+
+    shift, scale2 (27, 2) of NAC and of use over the bills to come, their own noise included;
+    innovation (27,) variance of what is new in each bill's error; tables of the t
+    distribution, made once for all calls.
+    """
 
     like: NDArray[np.float64]
     weight: NDArray[np.float64]
@@ -186,25 +188,59 @@ class _Seen:
     innovation: NDArray[np.float64]
     spare: int
     mean_days: float
-    tables: tuple[NDArray[np.float64], ...]  # of the t distribution, made once for all calls
+    tables: tuple[NDArray[np.float64], ...]
+
+    @classmethod
+    def of(
+        cls,
+        baseline: Baseline,
+        ahead: Ahead,
+        gradient: NDArray[np.float64],
+        jac: NDArray[np.float64],
+        use: NDArray[np.float64],
+        tables: tuple[NDArray[np.float64], ...],
+    ) -> _Seen:
+        """jac (n, k), use (n,) : of the bills to come."""
+        target = np.stack([gradient, ahead.length * jac.sum(axis=0)])
+        n, w = jac.shape[0], baseline.lengths
+        start = ahead.first + ahead.length * np.arange(n, dtype=np.float64)
+        days = np.full(n, float(ahead.length))
+        none, no_days = np.empty(0), np.empty(0, dtype=np.int32)
+        side = (none, no_days, baseline.resid, w, w, baseline.start, baseline.end)
+        rep = (none, no_days, none, days, days, start, start + days)
+        like, shift, scale2, _ = through_errors(
+            baseline.jac, baseline.resid, baseline.fitted, side, target, rep, use
+        )
+        place = positions(baseline.start, baseline.end)
+        innovation = through_rho(baseline.jac, baseline.resid, w, place, target)[3]
+        return cls(
+            like=like,
+            weight=weights_of(like),
+            shift=shift,
+            scale2=scale2,
+            innovation=innovation,
+            spare=baseline.spare,
+            mean_days=float(w.mean()),
+            tables=tables,
+        )
+
+    def column(self, which: int) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+        """(shift, scale²) of NAC (0) or of use over the bills to come (1)."""
+        shift, scale2 = (np.ascontiguousarray(x[:, which]) for x in (self.shift, self.scale2))
+        return shift, scale2
 
 
-def _avoided(
-    seen: _Seen, at: int, n: int, use: NDArray[np.float64], ahead: Ahead, confidence: float
-) -> Smallest:
+def _avoided(seen: _Seen, over: float, confidence: float) -> Smallest:
     """From the baseline alone, as the range of avoided use is."""
-    apart = np.arange(1, n)
-    pairs = n + 2.0 * (RHO[:, None] ** apart @ (n - apart).astype(np.float64))
-    noise = pairs / (1.0 - RHO * RHO)
-    total = seen.scale2[:, at] + seen.innovation * noise * ahead.length * seen.mean_days
-    shift, scale = np.ascontiguousarray(seen.shift[:, at]), np.sqrt(total)
+    shift, scale2 = seen.column(1)
 
     def quantiles(level: float) -> tuple[float, float]:
-        low, high = mixture_range_with(seen.weight, shift, scale, seen.spare, level, seen.tables)
+        low, high = mixture_range_with(
+            seen.weight, shift, np.sqrt(scale2), seen.spare, level, seen.tables
+        )
         return float(low), float(high)
 
     low = quantiles(confidence)[0]
-    over = float(ahead.length * use[:n].sum())
     return Smallest(quantiles(0.0)[1] - low, quantiles(2.0 * LIKELY - 1.0)[1] - low, over)
 
 
@@ -226,8 +262,7 @@ def _normalized(
     n, k = jac.shape
     # Rows are scaled by √(days ÷ mean days) on each side, so noise a day carries over by days.
     ratio = seen.mean_days / ahead.length
-    before2 = np.ascontiguousarray(seen.scale2[:, 0])
-    shift = np.ascontiguousarray(seen.shift[:, 0])
+    shift, before2 = seen.column(0)
     weight, centre, scale = [], [], []
     for true, share in _groups(seen.weight):
         trace = later.trace(true)
@@ -276,7 +311,7 @@ class _Later:
     def of(cls, jac: NDArray[np.float64], gradient: NDArray[np.float64]) -> _Later:
         """Of bills one after another, alike in length: V of a first-order autoregression."""
         size = np.sqrt((jac * jac).sum(axis=0))
-        x, g = jac / size, gradient[0] / size
+        x, g = jac / size, gradient / size
         rho = RHO[:, None, None]
         vx = (1.0 + rho * rho) * x
         vx[:, [0, -1]] = x[[0, -1]]

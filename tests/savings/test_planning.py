@@ -81,8 +81,9 @@ def test_the_reach_of_avoided_use_is_that_of_the_range(n: int) -> None:
 def test_a_like_fit_after_the_work_has_the_variance_that_the_kernel_gives() -> None:
     base, work, _ = baseline()
     _, jac = _ahead(base.fit, ahead(work, 12), held=base.held)
-    g = _gradient(base.fit, year(), held=base.held)[None, :]
-    later = _Later.of(jac, g)
+    gradient = _gradient(base.fit, year(), held=base.held)
+    g = gradient[None, :]
+    later = _Later.of(jac, gradient)
     resid = np.random.default_rng(3).normal(size=12)
     like, _, scale2, innovation = through_rho(jac, resid, np.full(12, 30.0), np.arange(12.0), g)
     size2 = scale2[:, 0] / innovation
@@ -96,7 +97,7 @@ def test_the_expected_residuals_by_dense_algebra() -> None:
     """tr(M_ρ V*), M = V⁻¹ − V⁻¹X(X'V⁻¹X)⁻¹X'V⁻¹, with V inverted as a dense matrix."""
     base, work, _ = baseline()
     _, jac = _ahead(base.fit, ahead(work, 10), held=base.held)
-    later = _Later.of(jac, np.ones((1, jac.shape[1])))
+    later = _Later.of(jac, np.ones(jac.shape[1]))
     apart = np.abs(np.subtract.outer(np.arange(10), np.arange(10)))
 
     def v(rho: float) -> np.ndarray:
