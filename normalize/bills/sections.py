@@ -35,7 +35,7 @@ def with_sections(
     named = {row.line: name for row in table.rows if (name := _account_named(row))}
     if len({squeeze(name) for name in named.values()}) < 2:
         return columns, tuple(body), ()
-    width = max(len(columns.headings), *(len(row.cells) for row in body))
+    width = max([len(columns.headings), *(len(row.cells) for row in body)])
     headings = (*columns.headings, *[take_apart("")] * (width - len(columns.headings)))
     lines, current = [], _last_above(named, columns.line)
     for row in body:

@@ -352,3 +352,9 @@ def test_one_blank_beside_another_fuel_is_no_reading_to_count_from(tmp_path: Pat
     assert gas.periods.use.tolist() == [110.0, 100.0, 60.0]
     assert [e.line for e in gas.ledger if e.fate == "left out"] == [2, 4, 5]
     assert any("began at an unknown date" in e.note for e in gas.ledger)
+
+
+def test_named_accounts_above_a_header_without_bills(tmp_path: Path) -> None:
+    """Found by fuzzing: no line beneath the header to take a width from."""
+    with pytest.raises(NoBills, match="no bill beneath"):
+        accounts_of(tmp_path, "Account: 7000998877\nAccount: 7000112233\nStart,End,Therms\n")

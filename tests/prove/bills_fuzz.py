@@ -16,6 +16,7 @@ import warnings
 from collections import Counter
 from pathlib import Path
 
+from normalize.bills.accounts import read_accounts
 from normalize.bills.read import read_bills
 from normalize.bills.repair import reconcile
 from normalize.errors import NormalizeError
@@ -43,6 +44,16 @@ OPTIONS: tuple[dict[str, object], ...] = (
 )  # fmt: skip
 
 
+SEVERAL = (
+    b"Account,Service,Start,End,Usage,Unit\n0011005678,Gas,2023-01-05,2023-02-06,81,therms\n"
+    b"0011005678,Electric,2023-01-05,2023-02-06,500,kWh\nB2,Gas,2023-02-06,2023-03-07,7,therms\n"
+    b",Gas,2023-02-06,2023-03-07,70.5,therms\nTotal,,,,9,\nB2,Gas,2023-01-05,2023-02-06,9,therms\n",
+    b"Account: 7000112233\nStart,End,Therms\n2023-01-05,2023-02-06,81\n2023-02-06,2023-03-07,70\n"
+    b"Account: 7000998877\nStart,End,Therms\n2023-01-05,2023-02-06,11\n",
+    b"Read date,Electric kWh,Gas therms\n2022-12-20,900,9\n2023-01-20,950,110\n2023-02-19,8,\n",
+)  # fmt: skip
+
+
 def seeds() -> list[bytes]:
     """What is mutated: the corpus, ESPI files, interval files and a workbook."""
     texts = [c.text if isinstance(c.text, bytes) else c.text.encode() for c in CORPUS]
@@ -50,7 +61,7 @@ def seeds() -> list[bytes]:
     hours = "".join(f"2023-01-{d} {h:02}:00,0.5\n" for d in (13, 14) for h in range(24))
     apart = "".join(f"1/{d}/2023,{h}:00,0.5,kWh\n" for d in (13, 14) for h in range(24))
     texts += [("Timestamp,kWh\n" + hours).encode(), ("Date,Time,Usage,Unit\n" + apart).encode()]
-    return [*texts, gas().encode(), workbook()]
+    return [*texts, *SEVERAL * 5, gas().encode(), workbook()]
 
 
 def mutated(rng: random.Random, data: bytes, others: list[bytes]) -> bytes:
@@ -82,6 +93,17 @@ def mutated(rng: random.Random, data: bytes, others: list[bytes]) -> bytes:
     return bytes(out)
 
 
+def every_account(file: Path, options: dict[str, object]) -> None:
+    """Every account of a file: no line in two of them, and none without a name of its own."""
+    found = read_accounts(file, **options)
+    lines = [(r.file, r.line) for bills in found.bills for r in bills.rows]
+    one_fuel = len({b.fuel for b in found.bills}) <= 1  # side by side, a line is of two fuels
+    if len(found.accounts) > 1 and one_fuel and len(set(lines)) != len(lines):
+        raise AssertionError("a line is in two accounts")
+    if len({a.label for a in found.accounts}) != len(found.accounts):
+        raise AssertionError("two accounts have one name")
+
+
 def fuzz(seconds: float, seed: int) -> tuple[Counter[str], list[str]]:
     """Outcomes, and tracebacks of what should not have happened."""
     warnings.simplefilter("error")
@@ -97,9 +119,12 @@ def fuzz(seconds: float, seed: int) -> tuple[Counter[str], list[str]]:
             options = dict(rng.choice(OPTIONS))
             file.write_bytes(data)
             try:
-                bills = read_bills(file, **options)  # type: ignore[arg-type]
-                reconcile(bills)
-                outcomes["read"] += 1
+                if rng.random() < 0.5:
+                    reconcile(read_bills(file, **options))  # type: ignore[arg-type]
+                    outcomes["read"] += 1
+                else:
+                    every_account(file, options)
+                    outcomes["read, every account"] += 1
             except NormalizeError as err:
                 outcomes[type(err).__name__] += 1
             except Exception:  # noqa: BLE001 (that is what is looked for)
