@@ -191,16 +191,16 @@ def checks_table(checks: tuple[Check, ...]) -> Table:
         (
             n.clean(c.name),
             c.side,
-            checks_words.number(c.value),
-            checks_words.number(c.limit),
             checks_words.outcome(c),
             checks_words.meaning(c),
+            checks_words.number(c.value),
+            checks_words.number(c.limit),
             n.clean(c.source),
         )
         for c in checks
     ]
-    header = ("check", "side", "value", "limit", "outcome", "what it means", "source")
-    return _table(CHECKS, header, rows, (2, 3))
+    header = ("check", "side", "outcome", "what it means", "value", "limit", "source")
+    return _table(CHECKS, header, rows, (4, 5))
 
 
 def weights_table(account: AccountResult) -> Table | None:
