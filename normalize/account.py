@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from normalize.account_drivers import Laid, added_use, lay, weather_only
 from normalize.bills.deliveries import fill_words, k_factor
 from normalize.errors import NormalizeError
-from normalize.fitting.align import Aligned, align
+from normalize.fitting.align import Aligned
 from normalize.savings.again import Asked
 from normalize.savings.break_words import caution_sentences
 from normalize.savings.breaks import breaks_of
@@ -25,6 +27,7 @@ from normalize.savings.results import Estimate, Price, Savings
 from normalize.savings.scrutiny import Scrutiny, scrutinise
 from normalize.savings.sides import REASONS, Work
 from normalize.savings.taken_apart import Parts
+from normalize.savings.with_and_without import with_and_without
 from normalize.savings.worth import price_of
 from normalize.site import AccountResult, Curve, KFactorRow, PeriodRow, Site
 from normalize.sitefile import AccountPlan
@@ -72,14 +75,15 @@ def assess_account(
     closely : with the evidence behind its checks, the parts and the expectation; without, only
     the answer is of use.
     """
-    aligned = align(bills.periods, site.weather)
     work = work_on(site, plan.name)
     forms = forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms)
     net = plan.net_metered and not bills.gross
-    found = compare(
-        aligned,
-        work,
-        site.year,
+    laid = lay(site, plan, bills, work, forms, net=net)
+    aligned = laid.aligned
+    ask = partial(
+        compare,
+        work=work,
+        year=site.year,
         confidence=confidence,
         forms=forms,
         occupied_since=plan.occupied_since,
@@ -87,14 +91,17 @@ def assess_account(
         year_unavailable=site.year_unavailable,
         delivered=bills.kind == "delivery",
     )
+    found = ask(aligned)
     savings = _unfit(found.savings, bills.unfit, confidence) if bills.unfit else found.savings
     close = Scrutiny()
     if closely and not bills.unfit:
         asked = Asked(aligned, site.year, forms, confidence, net, found.stated_f is not None)
         close = scrutinise(asked, found, work_start=work.start, delivered=bills.kind == "delivery")
-    changed = None if bills.unfit or not closely else _breaks(site, plan, aligned, found, work, net)
+    changed = None
+    if closely and not bills.unfit:
+        changed = _breaks(site, plan, weather_only(laid, found), found, work, net)
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
-    rows = period_rows(bills, aligned, found)
+    rows = period_rows(bills, laid, found)
     unavailable = ""
     if not savings.normalized.available and not savings.avoided.available:
         unavailable = savings.normalized.unavailable or ""
@@ -132,6 +139,7 @@ def assess_account(
         without=close.without,
         placebo=close.placebo,
         breaks=changed,
+        drivers=with_and_without(laid.chosen, found, ask) if laid.chosen and closely else None,
         **(
             _read_closely(site, plan, bills, aligned, found, savings, confidence) if closely else {}
         ),
@@ -230,9 +238,10 @@ def work_on(site: Site, account: str) -> Work:
     )
 
 
-def period_rows(bills: Bills, aligned: Aligned, found: Comparison) -> tuple[PeriodRow, ...]:
+def period_rows(bills: Bills, laid: Laid, found: Comparison) -> tuple[PeriodRow, ...]:
     """Every period with its side, its fitted use and what it would have been without the work."""
-    p = bills.periods
+    p, aligned = bills.periods, laid.aligned
+    added = added_use(laid, found)
     own = {"before": found.savings.before, "after": found.savings.after}
     rows = []
     for i in range(p.n):
@@ -255,8 +264,8 @@ def period_rows(bills: Bills, aligned: Aligned, found: Comparison) -> tuple[Peri
                 reason=aligned.reason[i] if label == "set aside" else REASONS[label],
                 mean_temp_f=float(aligned.mean_temp_f[i]),
                 use_per_day=float(p.use[i]) / days,
-                fitted_per_day=_expected(own.get(label), temp),
-                without_work_per_day=_expected(found.savings.before, temp),
+                fitted_per_day=_expected(own.get(label), temp) + float(added[i, 0]),
+                without_work_per_day=_expected(found.savings.before, temp) + float(added[i, 1]),
             )
         )
     return tuple(rows)

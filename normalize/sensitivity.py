@@ -102,18 +102,20 @@ def _variations(
     site: Site, plan: AccountPlan, bills: Bills, account: AccountResult, confidence: float
 ) -> tuple[Variation, ...]:
     from normalize.account import work_on
-    from normalize.fitting.align import align
+    from normalize.account_drivers import lay
     from normalize.savings.again import Asked
     from normalize.savings.offer import forms_offered
     from normalize.savings.variations import variations
 
     save = account.savings
+    forms = forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms)
+    net = plan.net_metered and not bills.gross
     asked = Asked(
-        aligned=align(bills.periods, site.weather),
+        aligned=lay(site, plan, bills, work_on(site, plan.name), forms, net=net).aligned,
         year=site.year,
-        forms=forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms),
+        forms=forms,
         confidence=confidence,
-        net=plan.net_metered and not bills.gross,
+        net=net,
         stated=any("stated balance" in e.method for e in (save.normalized, save.avoided)),
     )
     return variations(

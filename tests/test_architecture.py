@@ -30,6 +30,7 @@ SAME_ROOM = {
     "sensitivity": "site",
     "plan": "site",
     "site_drivers": "site",
+    "account_drivers": "site",
 }  # parts of a site's job, in files of their own
 ENTRANCES = {"__init__", "__main__"}  # of the package itself: doors to everything, lazily
 

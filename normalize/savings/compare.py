@@ -128,7 +128,7 @@ def compare(
     none stands out.  Source: docs/method.md §3-§5.
     """
     offered = tuple(forms) if forms is not None else CHOICE
-    labels = _labels(aligned, work, occupied_since, delivered)
+    labels = labels_of(aligned, work, occupied_since, delivered)
     batch, table = batch_of_one(aligned, codes(labels), offered, net_metered)
     fits, chosen, answers = run_batch(
         batch, table, [year], confidence=confidence, tried=also_tried()
@@ -182,9 +182,10 @@ def _without_after(
     return out
 
 
-def _labels(
+def labels_of(
     aligned: Aligned, work: Work, occupied_since: int | None, delivered: bool
 ) -> tuple[str, ...]:
+    """The side of every period; few deliveries are pooled over more years."""
     labels = label_periods(aligned, work, occupied_since=occupied_since)
     if delivered and min(labels.count("before"), labels.count("after")) < FEW_INTERVALS:
         return label_periods(
