@@ -59,12 +59,14 @@ def breaks_figure(account: AccountResult, key: str) -> svg.Picture | None:
 
 def _title(found: Breaks) -> str:
     claimed = found.claimed
+    if found.changes:
+        told = [
+            f"{'rose' if c.change > 0 else 'fell'} around {month(c.day)}" for c in found.changes
+        ]
+        return f"Beside the work, use {' and '.join(told[:2])}"
     if claimed is not None and claimed.announced:
         which = "the change" if claimed.meets else "the largest change"
         return f"The bills place {which} {months(claimed.low, claimed.high)}"
-    if found.changes:
-        first = found.changes[0]
-        return f"Use {'rose' if first.change > 0 else 'fell'} around {month(first.day)}"
     return "With the weather taken out, the bills single out no date of change"
 
 
@@ -119,8 +121,9 @@ def _draw_levels(axes: Axes, found: Breaks, work_start: int) -> None:
             continue
         sign = n.MINUS if level < 0 else "+"
         axes.annotate(
-            f"{sign}{abs(100.0 * level):.0f}{n.NBSP}%", (end, 100.0 * level), xytext=(-3, 4),
-            textcoords="offset points", ha="right", va="bottom", zorder=6, color=look.INK,
+            f"{sign}{abs(100.0 * level):.0f}{n.NBSP}%", (end, 100.0 * level),
+            xytext=(-3, -5 if level < 0 else 4), textcoords="offset points", ha="right",
+            va="top" if level < 0 else "bottom", zorder=6, color=look.INK,
             fontsize=look.TEXT_SIZE, bbox={"facecolor": look.PAPER, "alpha": 0.8, "pad": 1.0,
                                            "linewidth": 0.0},
         )  # fmt: skip
@@ -158,7 +161,7 @@ def _caption(found: Breaks) -> str:
              "means"]  # fmt: skip
     if found.claimed is not None and found.claimed.announced:
         parts.append(
-            "the dark stroke on the axis spans the dates that cannot be told from the most likely "
+            "the thick stroke on the axis spans the dates that cannot be told from the most likely "
             "one (90\u00a0%), found without being told of the work"
         )
     if found.changes:

@@ -32,18 +32,9 @@ class Cell:
     other: float = 1.0
 
 
-STILL = (
-    Cell(24), Cell(24, 0.5), Cell(36, 0.3), Cell(60), Cell(60, 0.5),
-    Cell(36, 0.3, 0.05), Cell(36, 0.3, 0.15), Cell(36, 0.3, 0.10, own=True),
-)  # fmt: skip
-MOVED = (
-    Cell(24, 0.0, work=0.85), Cell(48, 0.0, work=0.85), Cell(48, 0.3, work=0.85),
-    Cell(48, 0.3, 0.05, work=0.85),
-)  # fmt: skip
-OTHER = (
-    Cell(48, 0.0, work=0.85, other=1.15), Cell(48, 0.3, 0.05, work=0.85, other=1.15),
-    Cell(96, 0.3, work=0.85, other=1.15),
-)  # fmt: skip
+STILL = (Cell(24), Cell(24, 0.5, 0.15), Cell(36, 0.3, own=True), Cell(48, 0.5, 0.05))
+MOVED = (Cell(24, work=0.85), Cell(48, 0.3, work=0.85))
+OTHER = (Cell(48, 0.3, work=0.85, other=1.15),)
 
 
 @dataclass(frozen=True)
