@@ -182,7 +182,7 @@ def _balance(e: SideEvidence) -> list[Check]:
         if tau is None or span is None or (kind == "cooling" and fit.form == "two slopes"):
             continue
         width = span[1] - span[0]
-        held = "; the range allows for any of them" if e.held else ""
+        held = "; the range allows for any of them" if e.held or e.unsure else ""
         out.append(
             Check(
                 f"balance temperature for {kind} well placed", e.side, width, POOR_TAU_F,

@@ -32,7 +32,8 @@ class SideEvidence:
     side : "before" or "after".  first, last : day numbers of its span, half-open.
     low_mean_f, high_mean_f : lowest and highest mean temperature of a bill.
     weights : one a bill; spans : its start and end.  alike : correlation of the errors, or
-    None.  held : τ was held.
+    None.  held : τ was held.  unsure : the bills do not place it, so that the answer's range
+    tries every value it may have.
     """
 
     side: str
@@ -46,6 +47,7 @@ class SideEvidence:
     alike: Alike | None
     seen: Extrapolation | None
     held: bool
+    unsure: bool = False
 
 
 def evidence_of(
@@ -54,10 +56,10 @@ def evidence_of(
     """Evidence of the sides that have a fit, before first."""
     out = []
     sides = (("before", found.savings.before), ("after", found.savings.after))
-    for (side, fit), held in zip(sides, found.held, strict=True):
+    for (side, fit), held, unsure in zip(sides, found.held, found.unsure, strict=True):
         mine = np.flatnonzero(np.array([label == side for label in found.labels], dtype=np.bool_))
         if fit is not None and mine.shape[0]:
-            out.append(_side(side, fit, aligned, mine, year, bool(held)))
+            out.append(_side(side, fit, aligned, mine, year, bool(held), bool(unsure)))
     return tuple(out)
 
 
@@ -68,6 +70,7 @@ def _side(
     mine: NDArray[np.intp],
     year: LongTermYear | None,
     held: bool,
+    unsure: bool,
 ) -> SideEvidence:
     days, owner = days_of(aligned, mine)
     lengths = aligned.days[mine].astype(np.float64)
@@ -91,6 +94,7 @@ def _side(
         alike=alike(resid * np.sqrt(lengths)),
         seen=extrapolation_of(fit, year, days) if year is not None else None,
         held=held,
+        unsure=unsure,
     )
 
 
