@@ -305,6 +305,26 @@ def test_one_signature() -> None:
     assert len(parts_batch.signatures) == 1
 
 
+def test_a_driver_known_to_the_fit_leaves_the_parts_alone() -> None:
+    """An identity of least squares: use that grows with a regressor moves only its coefficient."""
+    homes = simulate(12, bills=20, rho=0.2, noise=0.06, seed=21)
+    driver = np.random.default_rng(9).uniform(-1.0, 1.0, homes.batch.use.shape[0])
+    days = homes.batch.end - homes.batch.start
+    found = []
+    for more in (0.0, 1.7):
+        use = homes.batch.use + more * driver * days
+        batch = replace(homes.batch, use=use, drivers=driver[:, None])
+        fits, chosen, answers = run_batch(batch, homes.table, [homes.year], confidence=0.9)
+        parts, _, why = run_parts(batch, homes.table, [homes.year], fits, chosen, confidence=0.9)
+        found.append((parts, why, answers[:, NORMALIZED]))
+    (parts, why, whole), (moved, why_moved, _) = found
+    same = (why == KNOWN) & (why_moved == KNOWN)
+    assert same.sum() > 6
+    assert parts[same, :3, 0].sum(axis=1) == pytest.approx(whole[same], abs=1e-8)
+    for column in (0, 3, 4):  # the value and the plain range
+        assert moved[same, :3, column] == pytest.approx(parts[same, :3, column], rel=1e-6, abs=1e-5)
+
+
 def side_arrays(homes: Homes, i: int, code: int) -> tuple[object, ...]:
     d = side_data(one_of(homes, i), homes.table, code)
     return (d.ts, d.ps, d.y, d.d, d.w, d.start, d.end)
