@@ -11,7 +11,7 @@ from normalize.savings.break_words import claim_sentences, odd_sentences, other_
 
 if TYPE_CHECKING:
     from normalize.report.tables import Table
-    from normalize.savings.break_results import Breaks
+    from normalize.savings.break_results import Breaks, ClaimedDate, FoundChange, OddPeriod
     from normalize.site import AccountResult
 
 
@@ -84,10 +84,9 @@ def _p(value: float | None) -> str:
 
 
 def as_json(found: Breaks | None) -> dict[str, Any] | None:
-    """The scan for JSON; null where none was made."""
+    """The key ``breaks`` of an account (docs/json.md); null where no scan was made."""
     if found is None:
         return None
-    c = found.claimed
     return {
         "unavailable": found.unavailable or None,
         "n_periods": found.n,
@@ -95,42 +94,61 @@ def as_json(found: Breaks | None) -> dict[str, Any] | None:
         "form": found.form or None,
         "error_power": found.power,
         "rho": found.rho,
-        "claimed": None
-        if c is None
-        else {
-            "f": c.f,
-            "p": c.p,
-            "most_likely": iso(c.day),
-            "from": iso(c.low),
-            "to": iso(c.high),
-            "f_any_date": c.f_any,
-            "p_any_date": c.p_any,
-            "threshold": c.threshold,
-            "announced": c.announced,
-            "meets_work": c.meets,
-        },
+        "claimed": _claimed_json(found.claimed),
         "scan": [
             {"date": iso(day), "f": f if f == f else None}
             for day, f in zip(found.dates, found.f, strict=True)
         ],
-        "changes": [
-            {
-                "most_likely": iso(x.day), "from": iso(x.low), "to": iso(x.high), "side": x.side,
-                "change": x.change, "change_low": x.change_low, "change_high": x.change_high,
-                "fraction": x.fraction, "fraction_low": x.fraction_low,
-                "fraction_high": x.fraction_high, "p": x.p, "declared": x.explained or None,
-                "in_answer": x.mixed,
-            }
-            for x in found.changes
-        ],
+        "changes": [_change_json(c) for c in found.changes],
         "p_further": found.p_rest,
         "not_searched": list(found.not_searched),
-        "odd_periods": [
-            {
-                "start": iso(o.start), "end": iso(o.end), "periods": list(o.numbers),
-                "use_per_day": o.use_per_day, "expected_per_day": o.expected_per_day, "t": o.t,
-                "p": o.p, "declared": o.explained or None,
-            }
-            for o in found.odd
-        ],
-    }  # fmt: skip
+        "odd_periods": [_odd_json(o) for o in found.odd],
+    }
+
+
+def _claimed_json(c: ClaimedDate | None) -> dict[str, Any] | None:
+    if c is None:
+        return None
+    return {
+        "f": c.f,
+        "p": c.p,
+        **_dates(c),
+        "f_any_date": c.f_any,
+        "p_any_date": c.p_any,
+        "threshold": c.threshold,
+        "announced": c.announced,
+        "meets_work": c.meets,
+    }
+
+
+def _dates(c: ClaimedDate | FoundChange) -> dict[str, str]:
+    return {"most_likely": iso(c.day), "from": iso(c.low), "to": iso(c.high)}
+
+
+def _change_json(c: FoundChange) -> dict[str, Any]:
+    return {
+        **_dates(c),
+        "side": c.side,
+        "change": c.change,
+        "change_low": c.change_low,
+        "change_high": c.change_high,
+        "fraction": c.fraction,
+        "fraction_low": c.fraction_low,
+        "fraction_high": c.fraction_high,
+        "p": c.p,
+        "declared": c.explained or None,
+        "in_answer": c.mixed,
+    }
+
+
+def _odd_json(o: OddPeriod) -> dict[str, Any]:
+    return {
+        "start": iso(o.start),
+        "end": iso(o.end),
+        "periods": list(o.numbers),
+        "use_per_day": o.use_per_day,
+        "expected_per_day": o.expected_per_day,
+        "t": o.t,
+        "p": o.p,
+        "declared": o.explained or None,
+    }

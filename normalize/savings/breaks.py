@@ -85,7 +85,8 @@ def breaks_of(
     """
     history = history_of(aligned, labels, work)
     form = fuller(chosen) or chosen_form(history, forms, net)
-    least = 2 * trimmed(0, FORMS[form or "flat"].parameters)
+    stated = 0 if stated_f is None else 1  # a balance temperature that need not be found
+    least = 2 * trimmed(0, FORMS[form or "flat"].parameters - stated)
     if not form or history.n < least:
         return Breaks(n=history.n, unavailable=_too_short(history, form, least))
     asked = Asked(form, net, stated_f, work, year, tuple(declared), confidence)
