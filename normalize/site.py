@@ -284,7 +284,7 @@ def assess(site: Site, *, confidence: float = defaults.CONFIDENCE) -> SiteResult
         total_normalized=_total(accounts, "normalized"),
         total_avoided=_total(accounts, "avoided"),
         cautions=_site_cautions(site, accounts),
-        settings=_settings(site, confidence),
+        settings=(*_settings(site, confidence), *_driver_settings(accounts)),
         versions=_versions(),
         moved=how_firm(site, accounts, confidence),
     )
@@ -363,6 +363,17 @@ def _settings(site: Site, confidence: float) -> tuple[tuple[str, str], ...]:
         ("choice of form", "Bayesian information criterion (BIC)"),
         ("long-term year", site.year.name if site.year else site.year_unavailable),
     )
+
+
+def _driver_settings(accounts: tuple[AccountResult, ...]) -> tuple[tuple[str, str], ...]:
+    """Of each account with drivers: which were kept, and what a normal year has of them."""
+    rows = []
+    for a in accounts:
+        for t in a.drivers.trials if a.drivers else ():
+            kept = "kept" if t.kept else "not kept"
+            level = f"{t.normal:.4g} a day" if t.kind == "level" else f"{365 * t.normal:.4g} a year"
+            rows.append((f"driver, {a.account}", f"{t.name}, {kept}; normal: {level}"))
+    return tuple(rows)
 
 
 def _versions() -> tuple[tuple[str, str], ...]:

@@ -88,6 +88,8 @@ WORDS: tuple[tuple[str, str, float], ...] = (
     ("days", "no of days", 11), ("days", "num days", 11), ("days", "bill days", 11),
     ("days", "days in period", 11), ("days", "days of service", 11), ("days", "service days", 11),
     ("days", "day count", 10), ("days", "days billed", 11), ("days", "days in billing period", 12),
+    ("ignore", "school days", 14), ("ignore", "occupied days", 14), ("ignore", "open days", 14),
+    ("ignore", "working days", 14), ("ignore", "production days", 14),
     ("year", "year", 9), ("year", "yr", 8), ("month", "month", 9), ("month", "mo", 7),
     ("month", "bill month", 9), ("month", "billing month", 9), ("day", "day", 9),
     ("day", "day of month", 10),

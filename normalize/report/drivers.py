@@ -64,15 +64,20 @@ def _title(name: str) -> str:
 
 
 def _kept(trial: DriverTrial, unit: str) -> str:
-    effects = [
-        f"{_adds(effect, trial.kind, unit)} {side} the work"
+    """What one more does on either side, and how many a normal year has."""
+    sides = [
+        (side, effect)
         for side, effect in (("before", trial.before), ("after", trial.after))
         if effect is not None
     ]
-    each = "each of these days" if trial.kind == "day type" else "one more of it"
+    told = [f"{_adds(effect, trial.kind, unit)} {side} the work" for side, effect in sides]
+    verbs = {effect.value >= 0.0 for _, effect in sides}
+    if len(told) == 2 and len(verbs) == 1:
+        told[1] = told[1].split(" ", 1)[1].removeprefix("off ")
     normal = f"a normal year has {normal_words(trial)} ({n.clean(trial.normal_from)})"
     return (
-        f"{_title(trial.name)} ({n.clean(trial.source)}): {each} {' and '.join(effects)}; {normal}."
+        f"{_title(trial.name)} (from {n.clean(trial.source)}): each one {' and '.join(told)}; "
+        f"{normal}."
     )
 
 
@@ -89,9 +94,7 @@ def normal_words(trial: DriverTrial) -> str:
     """A driver's normal amount: a year's sum, or the level on a day."""
     if trial.kind == "level":
         return f"{n.short(trial.normal)} on a day"
-    return f"{n.short(trial.normal * YEAR)} of it" if trial.kind == "total" else (
-        f"{n.short(trial.normal * YEAR)} of these days"
-    )  # fmt: skip
+    return n.short(trial.normal * YEAR)
 
 
 def _estimate(answer: DriverAnswer, *, normal: bool) -> Estimate:
