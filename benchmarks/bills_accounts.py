@@ -22,7 +22,7 @@ MONTHS = 24
 
 def text_of(accounts: int, *, by_date: bool) -> str:
     """A file of that many accounts, one after the other or in order of dates."""
-    rng = random.Random(1)  # noqa: S311 (invented bills)
+    rng = random.Random(1)
     lines = []
     for k in range(accounts):
         day = date(2021, 1, 3) + timedelta(days=k % 28)

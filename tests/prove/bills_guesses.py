@@ -131,8 +131,9 @@ class Histories:
         side[self.start >= WORK[1]] = AFTER
         homes = self.offsets.shape[0] - 1
         wanted = np.tile(wanted_mask(forms_offered("natural gas")), (homes, 1))
-        batch = Batch(self.start.astype(np.int32), self.end.astype(np.int32), self.use, side, self.offsets,
-                      np.zeros(homes, np.int32), wanted, np.zeros(homes, bool))  # fmt: skip
+        start, end = self.start.astype(np.int32), self.end.astype(np.int32)
+        batch = Batch(start, end, self.use, side, self.offsets, np.zeros(homes, np.int32),
+                      wanted, np.zeros(homes, bool))  # fmt: skip
         table = stations([(FIRST, self.temp)], int(self.start.min()), int(self.end.max()))
         fits = {code: fit_batch(batch, table, code) for code in (BEFORE, AFTER)}
         found = []
