@@ -91,7 +91,7 @@ def unmarked(rng: np.random.Generator, lines: Lines) -> Lines:
 
 
 def _some(rng: np.random.Generator, lines: Lines, share: float) -> list[int]:
-    return np.flatnonzero(rng.random(len(lines)) < share)[::-1].tolist()
+    return [int(k) for k in np.flatnonzero(rng.random(len(lines)) < share)[::-1]]
 
 
 def doubled(rng: np.random.Generator, lines: Lines) -> Lines:
@@ -150,7 +150,7 @@ def subtotals(rng: np.random.Generator, lines: Lines) -> Lines:
     """A line of each year's total stands among the bills."""
     for k in (24, 12):
         year = lines[k - 12 : k]
-        total = round(sum(float(line[2]) for line in year), 1)  # type: ignore[arg-type]
+        total = round(sum(float(str(line[2])) for line in year), 1)
         lines.insert(k, [year[0][0], year[-1][1], total, "A"])
     return lines
 
