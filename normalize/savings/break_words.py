@@ -67,8 +67,6 @@ def claim_sentences(found: Breaks, work_start: int, work_end: int) -> list[str]:
     claimed = found.claimed
     if claimed is None:
         return ["When use changed could not be looked for: no date can be tried with these bills."]
-            "When use changed could not be looked for: the bills leave no date that can be tried."
-        ]
     work = months(work_start, work_end - 1)
     if not claimed.announced:
         out = "Without being told of the work, the bills do not single out a date of change"
