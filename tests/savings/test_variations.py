@@ -102,7 +102,7 @@ def test_a_wider_window_is_the_comparison_with_longer_work() -> None:
     rows, found, asked, work = varied()
     al = asked.aligned
     last = [i for i, label in enumerate(found.labels) if label == "before"][-1]
-    first = [i for i, label in enumerate(found.labels) if label == "after"][0]
+    first = next(i for i, label in enumerate(found.labels) if label == "after")
     wider = Work(int(al.start[last]), int(al.end[first]))
     expected = compare(al, wider, year(), forms=FORMS).savings
     row = next(v for v in rows if v.name.startswith("one more bill"))
@@ -155,7 +155,7 @@ def test_the_average_of_forms_that_cannot_be_told_apart_is_wider_than_either_alo
     """A weak heating signal: flat and heating are both alive, and disagree."""
     found = ()
     for noise in (0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0):
-        rows, chosen, _, _ = varied(12, 12, noise)
+        rows, _, _, _ = varied(12, 12, noise)
         found = kinds(rows, AVERAGED)
         if found:
             break
