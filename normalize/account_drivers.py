@@ -35,7 +35,20 @@ def lay(
     site: Site, plan: AccountPlan, bills: Bills, work: Work, forms: tuple[str, ...], *, net: bool
 ) -> Laid:
     """An account's periods over the site's weather and the drivers that site.toml names."""
-    aligned = align(bills.periods, site.weather)
+    return lay_over(align(bills.periods, site.weather), site, plan, bills, work, forms, net=net)
+
+
+def lay_over(
+    aligned: Aligned,
+    site: Site,
+    plan: AccountPlan,
+    bills: Bills,
+    work: Work,
+    forms: tuple[str, ...],
+    *,
+    net: bool,
+) -> Laid:
+    """The same for periods that are over the weather already."""
     drivers = drivers_named(site, plan)
     if not drivers or bills.unfit:
         return Laid(aligned)

@@ -92,6 +92,7 @@ def _of(
 ) -> Outlook:
     import numpy as np
 
+    from normalize.account_drivers import lay_over, weather_only
     from normalize.fitting.align import align
     from normalize.savings.compare import compare
     from normalize.savings.offer import forms_offered
@@ -106,14 +107,17 @@ def _of(
     whole = align(bills.periods, site.weather)
     work = _work(site, plan.name, whole)
     before = whole.only(whole.end <= work.start, "it is not before the work")
+    forms = forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms)
+    net = plan.net_metered and not bills.gross
+    laid = lay_over(before, site, plan, bills, work, forms, net=net)
     found = compare(
-        before,
+        laid.aligned,
         work,
         site.year,
         confidence=confidence,
-        forms=forms_offered(plan.fuel, space_heating=plan.space_heating, asked=plan.forms),
+        forms=forms,
         occupied_since=plan.occupied_since,
-        net_metered=plan.net_metered and not bills.gross,
+        net_metered=net,
         year_unavailable=site.year_unavailable,
         delivered=bills.kind == "delivery",
     )
@@ -122,6 +126,7 @@ def _of(
         return replace(none, unavailable=found.savings.before_unavailable)
     if found.stated_f is not None:
         return replace(none, unavailable=STATED)
+    before = weather_only(laid, found)
     mine = np.flatnonzero(np.array([label == "before" for label in found.labels]))
     length = int(np.median(before.days[mine]))
     if length < LEAST_DAYS:
