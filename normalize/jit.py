@@ -120,6 +120,19 @@ def kernel(function: F) -> F:
 
     One signature each: callers coerce at the gate (C-contiguous arrays, one dtype each).
     """
+    return _compiled(function, inline="never")
+
+
+def part(function: F) -> F:
+    """A kernel that is compiled as part of the one or two kernels that call it.
+
+    A function's machine code is optimised again inside every caller, and theirs inside
+    theirs: for large functions with a single caller that is most of the time to compile.
+    """
+    return _compiled(function, inline="always")
+
+
+def _compiled(function: F, *, inline: str) -> F:
     import numba
     from numba.core import config
 
@@ -134,6 +147,7 @@ def kernel(function: F) -> F:
             error_model="numpy",
             fastmath=False,
             parallel=False,
+            inline=inline,
         )(function)
     finally:
         config.CACHE_DIR = before

@@ -32,7 +32,7 @@ from normalize.fitting.linear import design_and_jacobian, linearise_with, times
 from normalize.fitting.rho import RHO
 from normalize.fitting.spread import mixed, through_errors
 from normalize.fitting.student import t_quantile
-from normalize.jit import kernel
+from normalize.jit import kernel, part
 from normalize.savings.normal_year import nac_gradient, nac_of
 
 NODES_ONE: Final = 21  # balance temperatures tried over the range, one of them in the form
@@ -57,7 +57,7 @@ def _rss_at(row, form, side, drivers, tau_h, tau_c):
     return rss, ok
 
 
-@kernel
+@part
 def unsure(row, form, side, drivers, df):
     """Whether the bills fail to place a balance temperature inside its range."""
     if form <= LINE:
@@ -148,7 +148,7 @@ def _half_log_det(cov):
     return total
 
 
-@kernel
+@part
 def _at_node(row, form, side, drivers, rep, rep_drivers, year, taus):
     """One balance temperature: (like, centres, scale2) of both targets through ρ."""
     ts, ps, y, d, w, _, _ = side
@@ -179,7 +179,7 @@ def _at_node(row, form, side, drivers, rep, rep_drivers, year, taus):
     return like, shift + values, scale2
 
 
-@kernel
+@part
 def _over_range(row, form, side, drivers, rep, rep_drivers, year):
     """(like, centre, scale2) of both targets, mixed over balance temperatures."""
     nodes = _nodes(row, form)
