@@ -266,6 +266,7 @@ def period_rows(bills: Bills, laid: Laid, found: Comparison) -> tuple[PeriodRow,
                 use_per_day=float(p.use[i]) / days,
                 fitted_per_day=_expected(own.get(label), temp) + float(added[i, 0]),
                 without_work_per_day=_expected(found.savings.before, temp) + float(added[i, 1]),
+                drivers_per_day=float(added[i, 0]),
             )
         )
     return tuple(rows)

@@ -76,6 +76,7 @@ class PeriodRow:
     reason : why it is not used, empty for before/after periods that are.
     mean_temp_f : mean of its days.  use_per_day, fitted_per_day (own side's fit),
     without_work_per_day (the baseline fit at this period's weather); NaN where unknown.
+    drivers_per_day : of the fitted use, what drivers add from their normal levels.
     """
 
     number: int
@@ -91,6 +92,7 @@ class PeriodRow:
     use_per_day: float
     fitted_per_day: float
     without_work_per_day: float
+    drivers_per_day: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)

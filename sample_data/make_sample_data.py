@@ -1,9 +1,9 @@
-"""Make the sample data: an invented place, its weather, three buildings and their bills.
+"""Make the sample data: an invented place, its weather, four buildings and their bills.
 
     python sample_data/make_sample_data.py [FOLDER]
 
 Writes into its own folder, or into FOLDER: the stations' files, the bills, truth.json and
-README.md.  The three site.toml are written by hand.  Running it again gives the same bytes.
+README.md.  The four site.toml are written by hand.  Running it again gives the same bytes.
 """
 
 from __future__ import annotations
@@ -315,6 +315,58 @@ def write_library_electricity(path: Path, account: Account) -> None:
     write_workbook(path, fill)
 
 
+# ---- Tarn Lane School: new boilers, and fewer school days after them -----------------------
+
+SCHOOL_WORK = (date(2023, 7, 3), date(2023, 8, 11))
+SCHOOL_DAYS = 175.0  # a year, in a normal year
+SCHOOL_TERMS = ((8, 28, 12, 21), (1, 4, 3, 29), (4, 8, 6, 16))  # month and day, first and last
+BREAKS = ((10, 16, 10, 20), (2, 12, 2, 16))
+CLOSED_FROM = date(2024, 1, 4)  # on Fridays, from then on
+
+
+def is_school_day(day: date) -> bool:
+    """Whether there is school: in a term, no weekend, no break; no Fridays after the work."""
+
+    def inside(spans: tuple[tuple[int, int, int, int], ...]) -> bool:
+        return any((a, b) <= (day.month, day.day) <= (c, d) for a, b, c, d in spans)
+
+    if day.weekday() >= 5 or not inside(SCHOOL_TERMS) or inside(BREAKS):
+        return False
+    return day < CLOSED_FROM or day.weekday() != 4
+
+
+def write_school(folder: Path, cape: Station) -> dict[str, Account]:
+    """Gas for heat and hot water; a school day takes more of both."""
+    gas = Account(
+        cape,
+        "natural gas",
+        "ccf",
+        Behaviour(base_load=20.0, heating_slope=0.95, balance_heating_f=59.0),
+        Behaviour(base_load=18.5, heating_slope=0.84, balance_heating_f=58.0),
+        SCHOOL_WORK,
+        0.04,
+        driver=lambda day: float(is_school_day(day)),
+        normal=SCHOOL_DAYS / 365.0,
+        each=(30.0, 28.0),
+    )
+    reads = read_days(date(2021, 3, 1), date(2025, 12, 12), 1, 6, "school gas reads")
+    rows: list[list[object]] = [["Start", "End", "Usage (ccf)", "Cost ($)", "School days"]]
+    for bill in billed(gas, reads, "school gas 3"):
+        days = [bill.start + timedelta(n) for n in range(bill.days)]
+        rows.append(
+            [
+                bill.start.isoformat(),
+                bill.end.isoformat(),
+                f"{bill.use:.0f}",
+                f"{48.0 + 1.37 * bill.use:.2f}",
+                sum(map(is_school_day, days)),
+            ]
+        )
+    write_csv(folder / "gas.csv", rows)
+    write_cape_station(folder / "station.csv", cape)
+    return {"gas": gas}
+
+
 def make(folder: Path) -> None:
     """Write everything into the folder."""
     valley, cape = stations()
@@ -323,6 +375,7 @@ def make(folder: Path) -> None:
         ("quince_street", write_quince, valley),
         ("harrow_farm", write_harrow, valley),
         ("mill_library", write_library, cape),
+        ("tarn_lane_school", write_school, cape),
     ):
         (folder / name).mkdir(parents=True, exist_ok=True)
         sites[name] = write(folder / name, station)

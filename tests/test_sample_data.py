@@ -17,7 +17,7 @@ from typing import Any
 import pytest
 
 DATA = Path(__file__).parent.parent / "sample_data"
-SITES = ("quince_street", "harrow_farm", "mill_library")
+SITES = ("quince_street", "harrow_farm", "mill_library", "tarn_lane_school")
 MADE_WITH = "3.1.5"  # openpyxl; another version may lay out the same cells in other bytes
 
 Truth = dict[str, Any]
@@ -240,3 +240,18 @@ def test_library_workbooks_hold_text_numbers_and_a_row_twice() -> None:
     told = zip(pairwise(ends), days[1:], strict=True)
     gap = sum((end - before).days != count for (before, end), count in told)
     assert gap == 1  # the bill that was never filed
+
+
+def test_the_schools_bills_count_its_school_days(truth: Truth) -> None:
+    """Fewer of them after 2023, none at weekends: as many as its calendar can hold."""
+    rows = table(DATA / "tarn_lane_school" / "gas.csv", "Start")
+    spans = [(date.fromisoformat(r[0]), date.fromisoformat(r[1]), int(r[4])) for r in rows]
+    for start, end, school in spans:
+        weekdays = sum((start + timedelta(n)).weekday() < 5 for n in range((end - start).days))
+        assert 0 <= school <= weekdays
+    yearly = {
+        year: math.fsum(n for start, _, n in spans if start.year == year)
+        for year in (2022, 2023, 2024, 2025)
+    }
+    assert yearly[2022] > 170 > 160 > yearly[2024]
+    assert truth["sites"]["tarn_lane_school"]["gas"]["driver_normal_a_year"] == 175.0

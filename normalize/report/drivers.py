@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any, Final, NamedTuple
 
 from normalize.report import numbers as n
 from normalize.report import words
-from normalize.report.tables import Table, form_words
+from normalize.report.tables import Table
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -151,7 +151,7 @@ def answers_table(account: AccountResult, report: DriverReport) -> Table:
     rows = []
     for answer in report.answers:
         e = _estimate(answer, normal=normal)
-        forms = [form_words(f) for f in (answer.form_before, answer.form_after) if f]
+        forms = [f for f in (answer.form_before, answer.form_after) if f]
         rows.append(
             (
                 label(answer),
@@ -167,13 +167,13 @@ def answers_table(account: AccountResult, report: DriverReport) -> Table:
             )
         )
     head = (
-        "with", "change", "low", "high", "share", "CV(RMSE) before", "CV(RMSE) after",
-        "bills before", "bills after", "form",
+        "with", "change", "low", "high", "share", "CV before", "CV after", "bills before",
+        "bills after", "form",
     )  # fmt: skip
     when = "in a normal year" if normal else "since the work"
     caption = (
         f"The change {when} with and without each driver, {words.unit_word(account.unit)}; less "
-        "is positive"
+        "is positive. CV is CV(RMSE)."
     )
     return Table(caption, head, tuple(rows), frozenset(range(1, 9)))
 

@@ -11,6 +11,7 @@ if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
 
     from normalize.savings.results import Estimate
     from normalize.site import AccountResult
@@ -59,12 +60,7 @@ def placebo_figure(account: AccountResult, key: str) -> svg.Picture | None:
             _name(axes, real)
         axes_by_hand.time_axis(axes, every[0].day, every[-1].day)
         axes_by_hand.number_axis(axes, "y")
-        unit = "percent" if share else words.unit_word(account.unit)
-        figure.text(
-            0.0, 1.0 - (TOP - 14.0) / HEIGHT,
-            svg.drawn(f"{unit} less in a normal year; below the line: more"),
-            fontsize=look.SMALL_SIZE, color=look.QUIET,
-        )  # fmt: skip
+        _unit(figure, "percent" if share else words.unit_word(account.unit))
         return svg.picture(
             figure,
             key,
@@ -74,6 +70,14 @@ def placebo_figure(account: AccountResult, key: str) -> svg.Picture | None:
             caption=_caption(invented, real),
             height=HEIGHT,
         )
+
+
+def _unit(figure: Figure, unit: str) -> None:
+    figure.text(
+        0.0, 1.0 - (TOP - 14.0) / HEIGHT,
+        svg.drawn(f"{unit} less in a normal year; below the line: more"),
+        fontsize=look.SMALL_SIZE, color=look.QUIET,
+    )  # fmt: skip
 
 
 def _point(day: int, e: Estimate, share: bool) -> _Point | None:

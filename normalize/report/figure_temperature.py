@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
     from normalize.fitting.results import Fit
-    from normalize.site import AccountResult, Curve
+    from normalize.site import AccountResult, Curve, PeriodRow
     from normalize.weather.year import LongTermYear
 
 HEIGHT: Final = 452.0
@@ -32,11 +32,7 @@ def temperature_figure(
     account: AccountResult, year: LongTermYear | None, key: str
 ) -> svg.Picture | None:
     """Bills, both fits, balance temperatures, the normal year's days; None without bills."""
-    rows = [
-        r
-        for r in account.periods
-        if marks.drawable(r.mean_temp_f) and marks.drawable(r.use_per_day)
-    ]
+    rows = [r for r in account.periods if marks.drawable(r.mean_temp_f) and marks.drawable(_use(r))]
     if not rows:
         return None
     low, high = _span(account, [r.mean_temp_f for r in rows], year)
@@ -45,8 +41,8 @@ def temperature_figure(
         svg.title(figure, title, under, height=HEIGHT)
         axes, strip = _panels(figure, account.unit)
         lines = _draw_lines(axes, account, low, high)
-        marks.draw_marks(axes, ((r.mean_temp_f, r.use_per_day, r) for r in rows))
-        ends = _limits(axes, strip, low, high, [r.use_per_day for r in rows], lines)
+        marks.draw_marks(axes, ((r.mean_temp_f, _use(r), r) for r in rows))
+        ends = _limits(axes, strip, low, high, [_use(r) for r in rows], lines)
         _label_lines(axes, lines, ends, low, high)
         _draw_balances(strip, account)
         if year is not None:
@@ -345,9 +341,17 @@ def fit_in_words(fit: Fit, unit: str) -> str:
     return ", ".join(parts)
 
 
+def _use(row: PeriodRow) -> float:
+    """Use a day at a normal amount of every driver, as the lines are."""
+    return row.use_per_day - row.drivers_per_day
+
+
 def _caption(account: AccountResult, rows: list, year: LongTermYear | None) -> str:  # type: ignore[type-arg]
     parts = [marks.marks_sentence(rows)]
     save = account.savings
+    if account.drivers is not None and account.drivers.kept:
+        names = " and ".join(n.name(name) for name in account.drivers.kept)
+        parts.append(f"Bills and lines are shown at a normal amount of {names}.")
     if save.before is not None or save.after is not None:
         parts.append(
             "Beneath the axis, a tick is a balance temperature and the thick stretch its range."

@@ -28,6 +28,7 @@ FIRST_DRAWS: Final = 99
 ENOUGH_ABOVE: Final = 15  # of the first draws: p is far above 0.05 and no more are needed
 SEED: Final = 1993  # of every scan's draws: the same bytes each run
 TRIM: Final = 0.15  # of the periods, on either side of a candidate date (Andrews 1993)
+ROUNDING: Final = 1e-20  # share of Σy² below which a residual is rounding
 POORLY_TOLD: Final = 1e-3  # share of a column's length that must survive the others
 
 
@@ -195,13 +196,16 @@ class Prepared:
 def scan(
     x: Array, y: Array, blocks: Array, place: Array, *, grid: tuple[float, ...] = GRID
 ) -> Scan | None:
-    """Is there a change at any of the dates?  None where no date can be tried.
+    """Is there a change at any of the dates?  None where no date can be tried or all fits exactly.
 
     x (n, p), y (n,), blocks (dates, n, q), place (n,): see ``Prepared``.
     """
     x = x[:, independent(x)]
     if blocks.shape[0] == 0 or x.shape[0] <= x.shape[1] + blocks.shape[2] + 1:
         return None
+    left = y - x @ np.linalg.lstsq(x, y, rcond=None)[0]
+    if not float(left @ left) > ROUNDING * float(y @ y):
+        return None  # an exact fit: what is left is rounding
     ready = Prepared(x, blocks, place, grid)
     if not ready.known.any():
         return None
@@ -274,6 +278,8 @@ def odd_ones(x: Array, y: Array) -> tuple[Array, Array]:
     resid = y - q @ (q.T @ y)
     free = 1.0 - (q * q).sum(axis=1)
     rss = float(resid @ resid)
+    if not rss > ROUNDING * float(y @ y):
+        return np.full(n, np.nan), np.ones(n)
     with np.errstate(divide="ignore", invalid="ignore"):
         without = (rss - resid * resid / free) / df
         t = np.where(free > POORLY_TOLD, resid / np.sqrt(without * free), np.nan)

@@ -66,7 +66,7 @@ def claim_sentences(found: Breaks, work_start: int, work_end: int) -> list[str]:
         return [f"When use changed could not be looked for: {found.unavailable}."]
     claimed = found.claimed
     if claimed is None:
-        return ["When use changed could not be looked for: no date leaves enough on either side."]
+        return ["When use changed could not be looked for: no date can be tried with these bills."]
     work = months(work_start, work_end - 1)
     if not claimed.announced:
         out = "Without being told of the work, the bills do not single out a date of change"

@@ -29,6 +29,7 @@ from normalize.savings.results import Check, Estimate, Savings
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
+    from normalize.fitting.results import Fit
     from normalize.savings.evidence import SideEvidence
     from normalize.savings.influence import Without
     from normalize.savings.placebo import Placebo
@@ -109,7 +110,6 @@ def _guideline(savings: Savings, n_after: int) -> list[Check]:
     rho = min(max(before.rho, 0.0), 0.9)
     df = max(before.n_periods - form_named(before.form).parameters, 1)
     months = savings.reporting_days / DAYS_A_MONTH
-    bills = effective_bills(before.n_periods, rho)
     beyond = n_after > before.n_periods
     factors = (
         ("", FSU_K, "k = 1.26"),
@@ -128,16 +128,7 @@ def _guideline(savings: Savings, n_after: int) -> list[Check]:
         )
         if not math.isfinite(value):
             continue
-        means = (
-            f"by the guideline's formula the change since the work is known to within "
-            f"{percent(value)} of itself, about two times in three. It counts the "
-            f"{before.n_periods} bills before the work as {bills:.1f} independent ones "
-            f"(serial correlation {rho:.2f}; k = {k:.2f})"
-        )
-        if beyond:
-            means += (
-                "; it says too little where more bills are compared than the baseline has, as here"
-            )
+        means = _guideline_words(value, before, rho, k, beyond)
         out.append(
             Check(
                 f"fractional savings uncertainty at 68 %{name}", "both", value, FSU_LIMIT,
@@ -147,6 +138,20 @@ def _guideline(savings: Savings, n_after: int) -> list[Check]:
             )
         )  # fmt: skip
     return out
+
+
+def _guideline_words(value: float, before: Fit, rho: float, k: float, beyond: bool) -> str:
+    bills = effective_bills(before.n_periods, rho)
+    return (
+        f"by the guideline's formula the change since the work is known to within "
+        f"{percent(value)} of itself, about two times in three. It counts the "
+        f"{before.n_periods} bills before the work as {bills:.1f} independent ones "
+        f"(serial correlation {rho:.2f}; k = {k:.2f})"
+    ) + (
+        "; it says too little where more bills are compared than the baseline has, as here"
+        if beyond
+        else ""
+    )
 
 
 def _without(savings: Savings, without: Sequence[Without]) -> list[Check]:

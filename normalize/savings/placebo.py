@@ -39,6 +39,10 @@ if TYPE_CHECKING:
 MOST_DATES = 48  # more boundaries than this are thinned evenly: they add hardly anything
 FEWEST_DATES = 8  # tried of daily readings, of which a date costs more
 MOST_ROWS = 6_000  # dates times readings, above which dates are thinned further
+NO_DATE = (
+    "no invented date leaves bills on both sides that show how use answers to weather: a few "
+    "more months of older bills would help"
+)
 ROWS_AT_ONCE = 200_000  # of a program's batch, so that memory stays small
 
 
@@ -121,13 +125,7 @@ def placebo_of(
         if sure[i] and not np.isnan(found.answers[i, NORMALIZED])
     )
     if not dates:
-        return Placebo(
-            without_answer=int(days.shape[0]),
-            unavailable=(
-                "no invented date leaves bills on both sides that show how use answers to "
-                "weather: a few more months of older bills would help"
-            ),
-        )
+        return Placebo(without_answer=int(days.shape[0]), unavailable=NO_DATE)
     first, last = int(aligned.start[mine].min()), int(aligned.end[mine].max())
     return Placebo(dates, int(days.shape[0]) - len(dates), first, last)
 

@@ -13,10 +13,10 @@ HEAD = """\
 # Sample data
 
 Everything here is invented: Varrowmere County, its stations Varrow Mills Airfield and Corrow
-Point, the three buildings, their accounts and suppliers do not exist.  The weather has a cool
+Point, the four buildings, their accounts and suppliers do not exist.  The weather has a cool
 climate's means, swings and persistence, but never happened.
 
-`make_sample_data.py` (with `maker/`) writes every file but the three `site.toml`, and gives
+`make_sample_data.py` (with `maker/`) writes every file but the four `site.toml`, and gives
 the same bytes whenever it is run; change it, not the files.  A test runs it and compares.
 
 - `quince_street/`, a house heated with gas; attic insulation and air sealing, 2023-09-11 to 22.
@@ -33,6 +33,10 @@ the same bytes whenever it is run; change it, not the files.  A test runs it and
     twice, one estimate.
   - `electricity.xlsx`: light, machines and cooling; one bill missing, one estimate.  The longer
     hours that `site.toml` mentions leave no trace in the bills.
+- `tarn_lane_school/`, a school; new boilers, 2023-07-03 to 2023-08-11.
+  - `gas.csv`: tidy, with a column of school days.  Each takes 30 ccf before the work and 28 after,
+    and from 2024 on there is no school on Fridays: an answer from the weather alone takes the
+    fewer days for a saving.  A normal year has 175 school days; the base loads below belong to it.
 
 The last winter before the works was cold and the first after them mild, so that comparing bills
 without the weather flatters the work.  The stations' files (2012-01-01 to 2026-06-30, daily

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import asdict, dataclass
 from datetime import date, timedelta
 from itertools import pairwise
@@ -31,7 +32,11 @@ class Behaviour:
 
 @dataclass(frozen=True, slots=True)
 class Account:
-    """An account and its truth. work : first and last day of the work."""
+    """An account and its truth. work : first and last day of the work.
+
+    driver : an amount a day that use answers to beside the weather; normal : its mean in a
+    normal year, which the base loads belong to; each : use for one more, before and after.
+    """
 
     station: Station
     fuel: str
@@ -40,13 +45,20 @@ class Account:
     after: Behaviour
     work: tuple[date, date]
     noise: float  # standard deviation of a bill, as a share of use
+    driver: Callable[[date], float] | None = None
+    normal: float = 0.0
+    each: tuple[float, float] = (0.0, 0.0)
 
     def use(self, day: date) -> float:
         """Expected use of one day; while the work goes on it moves from before to after."""
         temp, (first, last) = self.station.mean_f(day), self.work
         done = ((day - first).days + 0.5) / ((last - first).days + 1)
         done = min(max(done, 0.0), 1.0)
-        return (1.0 - done) * self.before.use(temp) + done * self.after.use(temp)
+        weather = (1.0 - done) * self.before.use(temp) + done * self.after.use(temp)
+        if self.driver is None:
+            return weather
+        each = (1.0 - done) * self.each[0] + done * self.each[1]
+        return weather + each * (self.driver(day) - self.normal)
 
     def expected(self, start: date, end: date) -> float:
         """Expected use of ``[start, end)``."""
@@ -60,6 +72,11 @@ class Account:
     def truth(self) -> dict[str, object]:
         """What an analysis of the bills should find, within its range."""
         before, after = self.normal_year(self.before), self.normal_year(self.after)
+        driver = (
+            {}
+            if self.driver is None
+            else {"driver_each": list(self.each), "driver_normal_a_year": 365.0 * self.normal}
+        )
         return {
             "fuel": self.fuel,
             "unit": self.unit,
@@ -72,6 +89,7 @@ class Account:
             "fraction": round((before - after) / before, 6),
             "bill_noise": self.noise,
             "bill_correlation": CORRELATION,
+            **driver,
         }
 
 

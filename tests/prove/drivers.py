@@ -8,6 +8,7 @@ an answer from the weather alone takes that for a saving.
 from __future__ import annotations
 
 import dataclasses
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,6 +23,7 @@ from normalize.weather.temperature import DailyTemperature
 from normalize.weather.year import LongTermYear, year_from_sample
 from tests.fitting.accounts import weather
 
+PAGE = Path(__file__).parent.parent.parent / "docs" / "evidence-drivers.md"
 HOMES = 500
 BILLS = (12, 24)
 RHOS = (0.0, 0.3)
@@ -169,3 +171,15 @@ def prove() -> str:
                     f"{got.covered_with:.3f} | {got.covered_without:.3f} | {got.moved:.2f} |"
                 )
     return "\n".join(lines) + "\n"
+
+
+def main() -> None:
+    """Measure, and write the page of its own."""
+    from tests.prove.__main__ import heading
+
+    head = heading().replace("# Evidence", "# Evidence: drivers", 1)
+    PAGE.write_text(f"{head}\n{prove()}", encoding="utf-8")
+
+
+if __name__ == "__main__":
+    main()

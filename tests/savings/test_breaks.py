@@ -172,6 +172,17 @@ def test_an_empty_month_is_an_odd_bill_and_no_change() -> None:
     assert "below what its weather" in odd_sentences(found)[0]
 
 
+@pytest.mark.parametrize("use", [0.0, 1.0])
+def test_bills_without_any_scatter_announce_nothing(use: float) -> None:
+    one = simulated(Cell(36))
+    flat = use * one.aligned.days.astype(float)
+    found = scanned(replace(one, aligned=replace(one.aligned, use=flat)))
+    assert found.claimed is None
+    assert not found.changes
+    assert not found.odd
+    assert claim_sentences(found, one.work, one.work + 1)
+
+
 def test_too_short_a_history_says_what_is_missing() -> None:
     one = simulated(Cell(9))
     found = scanned(one)
