@@ -41,7 +41,8 @@ def kernel_hash(module: str) -> str:
         digest.update(file.relative_to(here).as_posix().encode())
         digest.update(file.read_bytes())
     versions = (numba.__version__, numpy.__version__, sys.version)
-    digest.update(repr((versions, os.environ.get("NUMBA_BOUNDSCHECK", ""))).encode())
+    switches = [os.environ.get(name, "") for name in ("NUMBA_BOUNDSCHECK", "NUMBA_OPT")]
+    digest.update(repr((versions, switches)).encode())
     return digest.hexdigest()[:12]
 
 

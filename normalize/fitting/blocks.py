@@ -81,8 +81,10 @@ def judge_in_blocks(rows, ts, ps, y, d, w, drivers, start, end, wanted, net, set
         return
     n, k = drivers.shape
     both = np.empty((n, k + 1))
-    both[:, :k] = drivers
-    both[:, k] = y
+    for p in range(n):
+        for j in range(k):
+            both[p, j] = drivers[p, j]
+        both[p, k] = y[p]
     means, days = in_blocks(both, d, which, count)
     weight = np.zeros(count)
     for p in range(n):
