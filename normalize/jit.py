@@ -41,7 +41,8 @@ def kernel_hash(module: str) -> str:
         digest.update(file.relative_to(here).as_posix().encode())
         digest.update(file.read_bytes())
     versions = (numba.__version__, numpy.__version__, sys.version)
-    digest.update(repr((versions, os.environ.get("NUMBA_BOUNDSCHECK", ""))).encode())
+    switches = [os.environ.get(name, "") for name in ("NUMBA_BOUNDSCHECK", "NUMBA_OPT")]
+    digest.update(repr((versions, switches)).encode())
     return digest.hexdigest()[:12]
 
 
@@ -120,6 +121,19 @@ def kernel(function: F) -> F:
 
     One signature each: callers coerce at the gate (C-contiguous arrays, one dtype each).
     """
+    return _compiled(function, inline="never")
+
+
+def part(function: F) -> F:
+    """A kernel that is compiled as part of the one or two kernels that call it.
+
+    A function's machine code is optimised again inside every caller, and theirs inside
+    theirs: for large functions with a single caller that is most of the time to compile.
+    """
+    return _compiled(function, inline="always")
+
+
+def _compiled(function: F, *, inline: str) -> F:
     import numba
     from numba.core import config
 
@@ -134,6 +148,7 @@ def kernel(function: F) -> F:
             error_model="numpy",
             fastmath=False,
             parallel=False,
+            inline=inline,
         )(function)
     finally:
         config.CACHE_DIR = before

@@ -25,7 +25,7 @@ from normalize.fitting.columns import (
 from normalize.fitting.correlation import positions
 from normalize.fitting.forms import FITTED, N_FORMS
 from normalize.fitting.side import fit_side
-from normalize.jit import kernel
+from normalize.jit import kernel, part
 
 BLOCK_DAYS: Final = 28  # four whole weeks
 BLOCK_BELOW_DAYS: Final = 7  # periods typically shorter than this are put into blocks
@@ -72,7 +72,7 @@ def in_blocks(columns, d, which, count):
     return out, days
 
 
-@kernel
+@part
 def judge_in_blocks(rows, ts, ps, y, d, w, drivers, start, end, wanted, net, settings):
     """For daily data: what decides a form (screens, criteria, errors) taken from the blocks."""
     which, place = block_of(start, end)
@@ -81,8 +81,10 @@ def judge_in_blocks(rows, ts, ps, y, d, w, drivers, start, end, wanted, net, set
         return
     n, k = drivers.shape
     both = np.empty((n, k + 1))
-    both[:, :k] = drivers
-    both[:, k] = y
+    for p in range(n):
+        for j in range(k):
+            both[p, j] = drivers[p, j]
+        both[p, k] = y[p]
     means, days = in_blocks(both, d, which, count)
     weight = np.zeros(count)
     for p in range(n):

@@ -30,7 +30,9 @@ def jacobian(form, x, ts, ps, tn, pn, d, slope_h, slope_c, tau_h, tau_c, with_ta
     if with_tau and form > LINE:
         extra = 2 if form > TWO_SLOPES else 1
     out = np.empty((n, k + extra))
-    out[:, :k] = x
+    for p in range(n):
+        for j in range(k):
+            out[p, j] = x[p, j]
     if extra == 0:
         return out
     column = np.zeros(n)
@@ -38,14 +40,15 @@ def jacobian(form, x, ts, ps, tn, pn, d, slope_h, slope_c, tau_h, tau_c, with_ta
     if heating:
         column = slope_h * days_below(ts, ps, n, tau_h) / d
         if form != TWO_SLOPES:
-            out[:, at] = column
+            for p in range(n):
+                out[p, at] = column[p]
             at += 1
     if cooling:
         above = days_below(tn, pn, n, -tau_c)
-        if form == TWO_SLOPES:
-            out[:, at] = column - slope_c * above / d
-        else:
-            out[:, at] = -slope_c * above / d
+        for p in range(n):
+            out[p, at] = -slope_c * above[p] / d[p]
+            if form == TWO_SLOPES:
+                out[p, at] += column[p]
     return out
 
 

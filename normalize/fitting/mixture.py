@@ -50,6 +50,15 @@ def _worth_keeping(weight):
 
 
 @kernel
+def _picked(values, at):
+    """Values at positions: numba compiles a loop far sooner than an array index."""
+    out = np.empty(at.shape[0])
+    for i in range(at.shape[0]):
+        out[i] = values[at[i]]
+    return out
+
+
+@kernel
 def _cdf(x, scale, df, values):
     """(P(scale·T ≤ x), density)."""
     if not scale > 0.0:
@@ -183,8 +192,9 @@ def mixture_range_with(weight, centre, scale, df, confidence, tables):
     at, kept = _worth_keeping(weight)
     make_table(tables, df)
     dfs = np.full(at.shape[0], df)
-    low, _, _ = _quantile(tail, kept, centre[at], scale[at], dfs, tables[0])
-    high, _, _ = _quantile(1.0 - tail, kept, centre[at], scale[at], dfs, tables[0])
+    middle, width = _picked(centre, at), _picked(scale, at)
+    low, _, _ = _quantile(tail, kept, middle, width, dfs, tables[0])
+    high, _, _ = _quantile(1.0 - tail, kept, middle, width, dfs, tables[0])
     return low, high
 
 
@@ -194,11 +204,10 @@ def _nodes_of(df, df2, tables):
     short = df >= FEW_DF and df2 >= FEW_DF
     rule = WEIGHTS_HALF if short else WEIGHTS
     out = np.empty((2, rule.shape[0]))
-    for which, own in ((0, df2), (1, df)):
-        if short:
-            out[which] = tables[2][own]
-        else:
-            out[which] = tables[1][own]
+    full = tables[2] if short else tables[1]
+    for i in range(rule.shape[0]):
+        out[0, i] = full[df2, i]
+        out[1, i] = full[df, i]
     return out, rule
 
 
@@ -215,7 +224,7 @@ def difference_range_with(
     make_table(tables, df)
     make_table(tables, df2)
     values = tables[0]
-    middle = centre[at] - centre2[at]
+    middle = _picked(centre - centre2, at)
     joint = np.empty(n)
     joint_df = np.empty(n, dtype=np.int64)
     wide = np.empty(n)

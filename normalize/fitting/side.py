@@ -51,7 +51,7 @@ from normalize.fitting.forms import (
 from normalize.fitting.least_squares import orthonormal, residual, weighted_fit
 from normalize.fitting.pair import pair_search
 from normalize.fitting.sweep import SHIFT_F, degree_days_per_day, polish, sweep
-from normalize.jit import kernel
+from normalize.jit import kernel, part
 
 BOUND_F = 1e-6  # a balance temperature this close to the edge of its range lies on it
 TINY = 1e-20  # share of Σw·y² below which a residual is rounding, not misfit
@@ -189,7 +189,7 @@ def _one_tau(row, form, ts, ps, r, q, d, z, settings, swap):
     return True
 
 
-@kernel
+@part
 def _two_taus(out, ts, ps, tn, pn, y, r, w, q, d, z, settings):
     """Heating and cooling together, within the ranges that each alone was allowed."""
     row = out[HEATING_AND_COOLING]

@@ -19,6 +19,16 @@ LEAST_LEVEL = 0.1  # of mean use: no period is taken to err by less than one of 
 
 
 @kernel
+def columns_of(rows, first, last):
+    """(n, last − first) columns of a matrix, contiguous."""
+    out = np.empty((rows.shape[0], last - first))
+    for p in range(rows.shape[0]):
+        for j in range(first, last):
+            out[p, j - first] = rows[p, j]
+    return out
+
+
+@kernel
 def levels(fitted, mean):
     """(n,) fitted use against its mean, not below the least level; 1 where there is no mean."""
     out = np.ones(fitted.shape[0])
@@ -84,21 +94,23 @@ def through_errors(jac, resid, fitted, side, targets, rep, rep_fitted):
     _, _, _, d2, w2, s2, e2 = rep
     n, k = jac.shape
     columns = np.empty((n, k + 2))
-    columns[:, :k] = jac
-    columns[:, k] = resid
-    columns[:, k + 1] = fitted
+    for p in range(n):
+        for j in range(k):
+            columns[p, j] = jac[p, j]
+        columns[p, k] = resid[p]
+        columns[p, k + 1] = fitted[p]
     rows, days, weight, place = rows_of(columns, d, w, s, e)
-    x = np.ascontiguousarray(rows[:, :k])
-    y = np.ascontiguousarray(rows[:, k])
-    mean_use = (rows[:, k + 1] * days).sum() / days.sum()
-    level = levels(rows[:, k + 1], mean_use)
+    x = columns_of(rows, 0, k)
+    y = columns_of(rows, k, k + 1).ravel()
+    used = columns_of(rows, k + 1, k + 2).ravel()
+    mean_use = (used * days).sum() / days.sum()
+    level = levels(used, mean_use)
     has_rep = d2.shape[0] > 0
-    rep_rows = np.empty((d2.shape[0], 1))
-    rep_rows[:, 0] = rep_fitted
+    rep_rows = rep_fitted.copy().reshape(d2.shape[0], 1)
     length, rep_weight, rep_place = d2, w2, d2
     if has_rep:
         rep_rows, length, rep_weight, rep_place = rows_of(rep_rows, d2, w2, s2, e2)
-    rep_level = levels(rep_rows[:, 0], mean_use)
+    rep_level = levels(rep_rows.ravel(), mean_use)
     m = POWERS.shape[0]
     like = np.empty((m, RHO.shape[0]))
     shift = np.empty((m, RHO.shape[0], targets.shape[0]))
@@ -106,8 +118,12 @@ def through_errors(jac, resid, fitted, side, targets, rep, rep_fitted):
     error = np.empty(length.shape[0])
     for i in range(m):
         own, mean, log_scale = _weights_at(weight, level, POWERS[i])
-        like[i], shift[i], scale2[i], innovation = through_rho(x, y, own, place, targets)
-        like[i] += log_scale
+        found, moved, spread, innovation = through_rho(x, y, own, place, targets)
+        for r in range(RHO.shape[0]):
+            like[i, r] = found[r] + log_scale
+            for t in range(targets.shape[0]):
+                shift[i, r, t] = moved[r, t]
+                scale2[i, r, t] = spread[r, t]
         if has_rep:
             for p in range(length.shape[0]):
                 root = np.sqrt(mean / rep_weight[p])
@@ -131,9 +147,7 @@ def mixed(like, centre, scale2):
     out_scale2 = np.zeros((n_rho, n_targets))
     top = like.max()
     if not top > -np.inf:
-        out_centre[:] = centre[0]
-        out_scale2[:] = scale2[0]
-        return out_like, out_centre, out_scale2
+        return out_like, centre[0].copy(), scale2[0].copy()
     weight = np.empty(m)
     for r in range(n_rho):
         total = 0.0

@@ -150,8 +150,11 @@ def make_table(tables, df):
     values, nodes, half = tables
     if df > TABLES_UP_TO or nodes[df, 0] < 0.0:
         return
-    nodes[df] = t_nodes(df, NODES)
-    half[df] = t_nodes(df, NODES_HALF)
+    long, short = t_nodes(df, NODES), t_nodes(df, NODES_HALF)
+    for i in range(NODES.shape[0]):
+        nodes[df, i] = long[i]
+    for i in range(NODES_HALF.shape[0]):
+        half[df, i] = short[i]
     height = math.exp(t_log_norm(df)) * math.sqrt(df)
     for i in range(CELLS + 1):
         s = i / CELLS

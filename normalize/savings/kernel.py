@@ -15,7 +15,7 @@ from normalize.fitting.mixture import difference_range_with, mixture_range_with
 from normalize.fitting.rho import RHO
 from normalize.fitting.side import choose, fit_side
 from normalize.fitting.student import no_tables, t_quantile
-from normalize.jit import kernel
+from normalize.jit import kernel, part
 from normalize.savings.one_side import side_evidence
 
 # Columns of an account's answer.  Each estimate has value, low, high, plain low, plain high.
@@ -49,7 +49,7 @@ def _one_range(out, at, value, like_w, seen, confidence, tables):
     out[at + 4] = value + half
 
 
-@kernel
+@part
 def _normalized(out, n1, like1, seen1, n2, like2, seen2, confidence, tables):
     """Ranges of both NAC and of their difference, ρ shared between before and after."""
     weight = weights_of(like1 + like2)
@@ -79,7 +79,7 @@ def _flag(yes):
     return 1.0 if yes else 0.0
 
 
-@kernel
+@part
 def compare_sides(
     out, row1, form1, side1, drivers1, row2, form2, side2, drivers2, year, hold, confidence, tables
 ):  # fmt: skip
@@ -121,7 +121,7 @@ def compare_sides(
     _normalized(out, values[0], like, seen1, values2[0], like2, seen2, confidence, tables)
 
 
-@kernel
+@part
 def fit_both(sides, drivers, offered, wanted, net, forced, settings, criterion):
     """Every form on both sides, and the form chosen or forced on each."""
     fits = np.empty((2, N_FORMS, WIDTH))

@@ -32,7 +32,7 @@ from normalize.fitting.linear import design_and_jacobian, linearise_with, times
 from normalize.fitting.rho import RHO
 from normalize.fitting.spread import mixed, through_errors
 from normalize.fitting.student import t_quantile
-from normalize.jit import kernel
+from normalize.jit import kernel, part
 from normalize.savings.normal_year import nac_gradient, nac_of
 
 NODES_ONE: Final = 21  # balance temperatures tried over the range, one of them in the form
@@ -57,7 +57,7 @@ def _rss_at(row, form, side, drivers, tau_h, tau_c):
     return rss, ok
 
 
-@kernel
+@part
 def unsure(row, form, side, drivers, df):
     """Whether the bills fail to place a balance temperature inside its range."""
     if form <= LINE:
@@ -89,7 +89,8 @@ def _nodes(row, form):
         if form == COOLING:
             low, high = row[LOW_C], row[HIGH_C]
         for i in range(NODES_ONE):
-            out[i, :] = low + (high - low) * i / (NODES_ONE - 1.0)
+            out[i, 0] = low + (high - low) * i / (NODES_ONE - 1.0)
+            out[i, 1] = out[i, 0]
         return out
     out = np.empty((NODES_TWO * NODES_TWO, 2))
     count = 0
@@ -116,6 +117,13 @@ def _fitted_at(row, form, coef, drivers):
     if form >= COOLING:
         there[SLOPE_C] = coef[at]
     return there
+
+
+@kernel
+def _into(rows, at, values):
+    """Values into one row: numba compiles a loop far sooner than a slice."""
+    for j in range(values.shape[0]):
+        rows[at, j] = values[j]
 
 
 @kernel
@@ -148,7 +156,7 @@ def _half_log_det(cov):
     return total
 
 
-@kernel
+@part
 def _at_node(row, form, side, drivers, rep, rep_drivers, year, taus):
     """One balance temperature: (like, centres, scale2) of both targets through ρ."""
     ts, ps, y, d, w, _, _ = side
@@ -164,13 +172,13 @@ def _at_node(row, form, side, drivers, rep, rep_drivers, year, taus):
     targets = np.zeros((2, k))
     values = np.zeros(2)
     if temp.shape[0] > 0:
-        targets[0] = nac_gradient(there, form, k, drivers.shape[1], temp, days, degrees)
+        _into(targets, 0, nac_gradient(there, form, k, drivers.shape[1], temp, days, degrees))
         values[0] = nac_of(there, form, temp, days, degrees)
     rep_fitted = np.empty(d2.shape[0])
     if d2.shape[0] > 0:
         x2, _ = design_and_jacobian(there, form, ts2, ps2, d2, rep_drivers, False)
         rep_fitted = times(x2, coef)
-        targets[1] = _totals(x2, d2)
+        _into(targets, 1, _totals(x2, d2))
         values[1] = (rep_fitted * d2).sum()
     fitted = times(x, coef)
     like, shift, scale2, _ = through_errors(x, y - fitted, fitted, side, targets, rep, rep_fitted)
@@ -179,7 +187,7 @@ def _at_node(row, form, side, drivers, rep, rep_drivers, year, taus):
     return like, shift + values, scale2
 
 
-@kernel
+@part
 def _over_range(row, form, side, drivers, rep, rep_drivers, year):
     """(like, centre, scale2) of both targets, mixed over balance temperatures."""
     nodes = _nodes(row, form)
@@ -191,9 +199,14 @@ def _over_range(row, form, side, drivers, rep, rep_drivers, year):
     for i in range(m):
         rss, ok = _rss_at(row, form, side, drivers, nodes[i, 0], nodes[i, 1])
         if ok and (rss / row[RSS]) ** (-0.5 * n) > IMPLAUSIBLE:
-            like[i], centre[i], scale2[i] = _at_node(
+            found, middle, spread = _at_node(
                 row, form, side, drivers, rep, rep_drivers, year, nodes[i]
             )
+            for r in range(RHO.shape[0]):
+                like[i, r] = found[r]
+                for t in range(2):
+                    centre[i, r, t] = middle[r, t]
+                    scale2[i, r, t] = spread[r, t]
     return mixed(like, centre, scale2)
 
 
@@ -215,13 +228,13 @@ def side_evidence(row, form, side, drivers, rep, rep_drivers, year, hold):
     targets = np.zeros((2, k))
     values = np.zeros(2)
     if temp.shape[0] > 0:
-        targets[0] = nac_gradient(row, form, k, drivers.shape[1], temp, days, degrees)
+        _into(targets, 0, nac_gradient(row, form, k, drivers.shape[1], temp, days, degrees))
         values[0] = nac_of(row, form, temp, days, degrees)
     rep_fitted = np.empty(d2.shape[0])
     if d2.shape[0] > 0:
         x2, jac2 = design_and_jacobian(row, form, ts2, ps2, d2, rep_drivers, not held)
         rep_fitted = times(x2, coef)
-        targets[1] = _totals(jac2, d2)
+        _into(targets, 1, _totals(jac2, d2))
         values[1] = (rep_fitted * d2).sum()
     like, shift, scale2, plain2 = through_errors(
         jac, resid, y - resid, side, targets, rep, rep_fitted
