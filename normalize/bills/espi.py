@@ -7,7 +7,7 @@ clocks in local_days.py.  In the ledger a "line" is the number of the reading in
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -16,9 +16,9 @@ from normalize.bills import espi_codes as codes
 from normalize.bills.answers import Answers, Understood
 from normalize.bills.columns import answer
 from normalize.bills.day_rows import DayRows
-from normalize.bills.espi_links import Series, join, place_of, refusal
+from normalize.bills.espi_links import Series, join, refusal
 from normalize.bills.espi_numbers import Numbers, added, cautions_of, merged
-from normalize.bills.espi_spans import billed_spans
+from normalize.bills.espi_spans import billed_spans, summaries_of
 from normalize.bills.espi_xml import Entry, Reading, read_entries
 from normalize.bills.local_days import Clock, clock_of, espi_clock
 from normalize.bills.periods import BillRow
@@ -32,12 +32,16 @@ _COMPLETE_PARTS = 2  # parts by time of use or tier, beside no total, are added 
 
 @dataclass(frozen=True, slots=True)
 class Opened:
-    """An ESPI file, its series joined. notes : what was passed over."""
+    """An ESPI file, its series joined. notes : what was passed over.
+
+    clocks : entries that set a clock.  summaries : of bills, by the place of their usage point.
+    """
 
     name: str
-    entries: tuple[Entry, ...]
     series: tuple[Series, ...]
     notes: tuple[str, ...]
+    clocks: tuple[Entry, ...]
+    summaries: Mapping[int, Sequence[Entry]]
 
 
 def open_espi(data: bytes, name: str) -> Opened:
@@ -45,10 +49,12 @@ def open_espi(data: bytes, name: str) -> Opened:
     entries = read_entries(data, name)
     every = join(entries, name)
     notes: list[str] = []
-    usable = _usable(every, name, notes) or _from_summaries(entries, notes)
+    summaries = summaries_of(entries, name)
+    usable = _usable(every, name, notes) or _from_summaries(entries, summaries, notes)
     if not usable:
         raise _nothing(every, name)
-    return Opened(name, tuple(entries), tuple(usable), tuple(notes))
+    clocks = tuple(e for e in entries if e.kind in ("localtimeparameters", "timeconfiguration"))
+    return Opened(name, tuple(usable), tuple(notes), clocks, summaries)
 
 
 def meters_of(opened: Opened, said: Answers) -> list[tuple[str, str, Opened]]:
@@ -71,7 +77,7 @@ def read_espi(data: bytes, name: str, said: Answers) -> Understood:
 
 def understand_meter(opened: Opened, said: Answers) -> Understood:
     """Rows of the one account that the answers choose.  Raises as read_espi does."""
-    entries, name, notes = opened.entries, opened.name, list(opened.notes)
+    name, notes = opened.name, list(opened.notes)
     usable = list(opened.series)
     if said.rows is not None:
         usable = _named_meter(usable, said.rows, name)
@@ -79,13 +85,14 @@ def understand_meter(opened: Opened, said: Answers) -> Understood:
     chosen, exports = _choose(usable, name, notes)
     fuel = _fuel_of(chosen[0], said, name)
     unit, factor = _unit_of(chosen[0], fuel, said, name)
-    clock = _clock(entries, said, name)
+    clock = _clock(opened.clocks, said, name)
     notes.append(f"days are those of the clock: {clock.name}")
     table = Numbers.of(chosen, exports, factor, name)
     rows, more = _rows(table, clock, said, name)
     costs = {}
+    summaries = opened.summaries.get(chosen[0].point, ())
     if np.all(np.isnan(table.cost)):
-        costs = _summary_costs(entries, clock, chosen[0].point)
+        costs = _summary_costs(summaries, clock)
     if costs and not isinstance(rows, DayRows):
         rows = tuple(replace(r, cost=costs.get((r.start or 0, r.end or 0))) for r in rows)
         more.append("cost from the usage summaries")
@@ -98,7 +105,7 @@ def understand_meter(opened: Opened, said: Answers) -> Understood:
         ),
         cautions_of(table), sent=bool(exports) or table.net,
         currency=codes.CURRENCIES.get(number or 0),
-        spans=billed_spans(entries, clock, chosen[0].point),
+        spans=billed_spans(summaries, clock),
     )  # fmt: skip
 
 
@@ -133,19 +140,22 @@ def _nothing(every: Sequence[Series], name: str) -> UnreadableBills:
     )
 
 
-def _from_summaries(entries: Sequence[Entry], notes: list[str]) -> list[Series]:
+def _from_summaries(
+    entries: Sequence[Entry], summaries: Mapping[int, Sequence[Entry]], notes: list[str]
+) -> list[Series]:
     """Series made of the bills that usage summaries speak of; for files without readings."""
     found: dict[tuple[int | None, ...], Series] = {}
     points = [e for e in entries if e.kind == "usagepoint"]
-    summaries = [e for e in entries if e.kind.endswith("usagesummary")]
-    for k, entry in enumerate(summaries, start=1):
+    place_of = {id(e): place for place, some in summaries.items() for e in some}
+    every = [e for e in entries if id(e) in place_of]
+    for k, entry in enumerate(every, start=1):
         total = "overallconsumptionlastperiod/"
         value, start = entry.whole(total + "value"), entry.whole("billingperiod/start")
         seconds, uom = entry.whole("billingperiod/duration"), entry.whole(total + "uom")
         if value is None or start is None or seconds is None:
             continue
         power = entry.whole(total + "poweroftenmultiplier")
-        place = place_of(entry, points)
+        place = place_of[id(entry)]
         kind = points[place - 1].whole("servicecategory/kind") if place else None
         key = (place, uom, power, entry.whole("commodity"))
         if key not in found:
@@ -322,12 +332,10 @@ def _rows(
     return rows, []
 
 
-def _clock(entries: Sequence[Entry], said: Answers, name: str) -> Clock:
+def _clock(clocks: Sequence[Entry], said: Answers, name: str) -> Clock:
     if said.time_zone is not None:
         return clock_of(said.time_zone, where=name)
-    for entry in entries:
-        if entry.kind not in ("localtimeparameters", "timeconfiguration"):
-            continue
+    for entry in clocks:
         offset = entry.whole("tzoffset")
         if offset is None:
             continue
@@ -345,17 +353,10 @@ def _clock(entries: Sequence[Entry], said: Answers, name: str) -> Clock:
     )
 
 
-def _summary_costs(
-    entries: Sequence[Entry], clock: Clock, point: int
-) -> dict[tuple[int, int], float]:
+def _summary_costs(summaries: Sequence[Entry], clock: Clock) -> dict[tuple[int, int], float]:
     """(first day, end) of a billing period → what its bill came to, for one meter."""
     found = {}
-    points = [e for e in entries if e.kind == "usagepoint"]
-    for entry in entries:
-        if not entry.kind.endswith("usagesummary"):
-            continue
-        if len(points) > 1 and place_of(entry, points) != point:
-            continue
+    for entry in summaries:
         start, seconds = entry.whole("billingperiod/start"), entry.whole("billingperiod/duration")
         money = entry.whole("billlastperiod")
         if start is None or seconds is None or money is None or not abs(start) < 2**40:

@@ -6,7 +6,7 @@ passed over because nothing says what it is.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 
 from normalize.bills import espi_codes as codes
@@ -32,97 +32,187 @@ class Series:
         return self.type.whole(name)
 
 
+MOST_PARTS = 20  # of a path; the standard's have eight, and what is longer links nothing
+MOST_LINKS = 200_000  # of meters and usage points (our own, against files made to exhaust)
+MOST_OF_TYPE = 100  # links of a kind of readings that are looked at
 NOTHING = Entry("readingtype", "", "", (), {})
 
 
-def belongs(child: Entry, parent: Entry) -> bool:
-    """Whether links say that one entry hangs below, or is named by, another.
+class _Paths:
+    """Places of entries under the paths of some of their links.
 
-    Sound links come in either direction, and some files carry only one of them.
+    Of entries under one path the best is kept, so that a search takes as long with two as with
+    two thousand.  Paths are the same when they are equal, or when one is written from further
+    up: /a/UsagePoint/1 and UsagePoint/1.
     """
-    if child.own and any(_same(child.own, link) for link in parent.related):
-        return True
-    if parent.own and any(_same(parent.own, link) for link in child.related):
-        return True
-    if child.up and any(_same(child.up, link) for link in parent.related):
-        return True
-    return bool(parent.own) and any(
-        _below(link, parent.own) for link in (child.up, child.own) if link
-    )
+
+    def __init__(self) -> None:
+        self.whole: dict[str, tuple[int, bool]] = {}
+        self.ends: dict[str, tuple[int, bool]] = {}
+
+    def add(self, path: str, place: int, rank: Sequence[int]) -> None:
+        """rank : of every place; of equals the first is the best."""
+        if path.count("/") < MOST_PARTS:
+            _keep(self.whole, path, place, rank)
+            for end in _ends(path):
+                _keep(self.ends, end, place, rank)
+
+    def same(self, path: str) -> Iterator[tuple[int, bool]]:
+        """(best place, whether it is one of several) under the same path, once or more."""
+        if path.count("/") >= MOST_PARTS:
+            return
+        wanted = ((self.whole, path), (self.ends, path), *((self.whole, e) for e in _ends(path)))
+        for table, key in wanted:
+            if key and key in table:
+                yield table[key]
 
 
-def _same(a: str, b: str) -> bool:
-    """Equal paths, or one written from further up: /a/UsagePoint/1 and UsagePoint/1."""
-    if a == b:
-        return bool(a)
-    short, long = sorted((a, b), key=len)
-    return "/" in short and long.endswith("/" + short)
+def _keep(table: dict[str, tuple[int, bool]], key: str, place: int, rank: Sequence[int]) -> None:
+    if not key:
+        return
+    if key not in table:
+        table[key] = (place, False)
+    elif (before := table[key][0]) != place:
+        table[key] = (max(before, place, key=lambda p: (rank[p], -p)), True)
 
 
-def _below(link: str, parent: str) -> bool:
-    return link == parent or link.startswith(parent + "/") or f"/{parent}/" in f"/{link}/"
+def _ends(path: str) -> Iterator[str]:
+    """What a path ends on, down to two parts: the last part alone is a number that many share.
+
+    >>> list(_ends("a/b/c"))
+    ['b/c']
+    """
+    at = path.find("/")
+    while at >= 0 and (following := path.find("/", at + 1)) >= 0:
+        yield path[at + 1 :]
+        at = following
+
+
+def _stretches(path: str, lengths: Iterable[int]) -> Iterator[str]:
+    """Every run of parts of a path: what it can hang below.
+
+    >>> list(_stretches("a/b/c", [2]))
+    ['a/b', 'b/c']
+    """
+    parts = path.split("/")
+    if len(parts) <= MOST_PARTS:
+        for n in lengths:
+            for k in range(len(parts) - n + 1):
+                yield "/".join(parts[k : k + n])
+
+
+class Parents:
+    """Entries that others hang below, by their links.
+
+    Links say so in either direction, and some files carry only one of them: a link to, or from,
+    or a path that is written below the parent's.
+    """
+
+    def __init__(self, parents: Sequence[Entry], name: str) -> None:
+        self.parents = parents
+        self.own, self.related = _Paths(), _Paths()
+        rank = [len(p.own) for p in parents]
+        links = sum(len(p.related) for p in parents)
+        if links > MOST_LINKS:
+            raise UnreadableBills(f"its meters have more than {MOST_LINKS:,} links", where=name)
+        for place, parent in enumerate(parents):
+            self.own.add(parent.own, place, rank)
+            for link in parent.related:
+                self.related.add(link, place, rank)
+        self.lengths = sorted({p.own.count("/") + 1 for p in parents if p.own})
+        self.rank = rank
+
+    def place(self, child: Entry) -> int | None:
+        """The parent's place, the one named most fully; the only one if links say nothing."""
+        found = [
+            *self.related.same(child.own), *self.related.same(child.up),
+            *(hit for link in child.related for hit in self.own.same(link)),
+            *(self.own.whole[s] for link in (child.up, child.own) if link
+              for s in _stretches(link, self.lengths) if s in self.own.whole),
+        ]  # fmt: skip
+        if found:
+            return max((place for place, _ in found), key=lambda p: (self.rank[p], -p))
+        return 0 if len(self.parents) == 1 else None
+
+    def of(self, child: Entry) -> Entry | None:
+        """The parent."""
+        place = self.place(child)
+        return None if place is None else self.parents[place]
+
+
+class _Types:
+    """Kinds of readings, by links."""
+
+    def __init__(self, types: Sequence[Entry], users: Sequence[Entry], name: str) -> None:
+        self.types, self.name = types, name
+        self.own, self.related, self.up = _Paths(), _Paths(), _Paths()
+        self.below: dict[str, tuple[int, bool]] = {}
+        rank = [0] * len(types)
+        users_own = {u.own for u in users if u.own}
+        lengths = sorted({own.count("/") + 1 for own in users_own})
+        for place, kind in enumerate(types):
+            self.own.add(kind.own, place, rank)
+            self.up.add(kind.up, place, rank)
+            for link in kind.related[:MOST_OF_TYPE]:
+                self.related.add(link, place, rank)
+            for link in (kind.up, kind.own):
+                for stretch in _stretches(link, lengths):
+                    if stretch in users_own:
+                        _keep(self.below, stretch, place, rank)
+
+    def of(self, block: Entry, meter: Entry | None) -> Entry:
+        """The kind of a block's readings.  Raises UnreadableBills if the links leave it open."""
+        for child in (meter, block):
+            if child is None:
+                continue
+            hits = [hit for link in child.related for hit in self.own.same(link)]
+            hits = hits or [
+                *self.related.same(child.own),
+                *(hit for link in child.related for hit in self.up.same(link)),
+                *([self.below[child.own]] if child.own in self.below else []),
+            ]
+            if len({place for place, _ in hits}) == 1 and not any(many for _, many in hits):
+                return self.types[hits[0][0]]
+        if len(self.types) > 1:
+            raise UnreadableBills(
+                f"the file describes {len(self.types)} kinds of readings, and its links do not "
+                "say which readings are of which kind",
+                where=self.name,
+                next_step="Download a file of one meter, or a CSV.",
+            )
+        return self.types[0] if self.types else NOTHING
 
 
 def join(entries: Sequence[Entry], name: str) -> list[Series]:
     """Series of a file, in its order.  Raises UnreadableBills if the links leave it open."""
-    of = {k: [e for e in entries if e.kind == k] for k in ("usagepoint", "meterreading")}
-    types = [e for e in entries if e.kind == "readingtype"]
-    found: dict[tuple[int, int, str], Series] = {}
-    parents: dict[tuple[str, str], Entry | None] = {}
-    for block in (e for e in entries if e.kind == "intervalblock"):
-        if block.own and (block.up, "") not in parents:
-            parents[block.up, ""] = _one(block, of["meterreading"])
-        meter = parents[block.up, ""] if block.own else _one(block, of["meterreading"])
-        kind = _type_of(block, meter, types, name)
-        point = _point_of(block, meter, of["usagepoint"])
-        key = (id(kind), id(point), "" if meter is not None else block.up)
+    meters = Parents([e for e in entries if e.kind == "meterreading"], name)
+    points = points_of(entries, name)
+    blocks = [e for e in entries if e.kind == "intervalblock"]
+    types = _Types(
+        [e for e in entries if e.kind == "readingtype"], [*meters.parents, *blocks], name
+    )
+    found: dict[tuple[int, int | None, str], Series] = {}
+    parents: dict[str, Entry | None] = {}
+    for block in blocks:
+        if block.own and block.up not in parents:
+            parents[block.up] = meters.of(block)
+        meter = parents[block.up] if block.own else meters.of(block)
+        kind = types.of(block, meter)
+        place = points.place(meter) if meter is not None else None
+        place = points.place(block) if place is None else place
+        key = (id(kind), place, "" if meter is not None else block.up)
         if key not in found:
-            place = _place(point, of["usagepoint"])
+            point = None if place is None else points.parents[place]
             service = point.whole("servicecategory/kind") if point is not None else None
-            found[key] = Series(kind, place, service)
+            found[key] = Series(kind, 0 if place is None else place + 1, service)
         for each in block.blocks:
             found[key].readings += _with_times(each.readings, each.start, kind)
     return list(found.values())
 
 
-def place_of(entry: Entry, points: Sequence[Entry]) -> int:
-    """The place, from 1, of an entry's usage point in the file; 0 where links do not say."""
-    return _place(_one(entry, points), points)
-
-
-def _place(point: Entry | None, points: Sequence[Entry]) -> int:
-    return next((n for n, p in enumerate(points, start=1) if p is point), 0)
-
-
-def _one(child: Entry, parents: Sequence[Entry]) -> Entry | None:
-    """The parent of an entry; the only one there is if links say nothing."""
-    hits = [p for p in parents if belongs(child, p)]
-    if hits:
-        return max(hits, key=lambda p: len(p.own))
-    return parents[0] if len(parents) == 1 else None
-
-
-def _type_of(block: Entry, meter: Entry | None, types: Sequence[Entry], name: str) -> Entry:
-    for child in (meter, block):
-        if child is None:
-            continue
-        hits = [t for t in types if any(_same(t.own, link) for link in child.related if t.own)]
-        hits = hits or [t for t in types if belongs(t, child)]
-        if len({id(t) for t in hits}) == 1:
-            return hits[0]
-    if len(types) > 1:
-        raise UnreadableBills(
-            f"the file describes {len(types)} kinds of readings, and its links do not say which "
-            "readings are of which kind",
-            where=name,
-            next_step="Download a file of one meter, or a CSV.",
-        )
-    return types[0] if types else NOTHING
-
-
-def _point_of(block: Entry, meter: Entry | None, points: Sequence[Entry]) -> Entry | None:
-    found = _one(meter, points) if meter is not None else None
-    return found or _one(block, points)
+def points_of(entries: Sequence[Entry], name: str) -> Parents:
+    """The usage points of a file, to look up whose something is."""
+    return Parents([e for e in entries if e.kind == "usagepoint"], name)
 
 
 def _with_times(

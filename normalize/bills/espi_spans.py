@@ -10,7 +10,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from normalize.bills import espi_codes as codes
-from normalize.bills.espi_links import place_of
+from normalize.bills.espi_links import points_of
 from normalize.bills.espi_xml import Entry
 from normalize.bills.local_days import Clock
 from normalize.bills.periods import Spans
@@ -19,19 +19,28 @@ HALF_A_DAY = 43_200  # seconds: a bill begins and ends at the midnight nearest t
 LONGEST_BILL = 800 * 86_400  # seconds; a longer one is a mistake
 
 
-def billed_spans(entries: Sequence[Entry], clock: Clock, point: int) -> Spans | None:
+def summaries_of(entries: Sequence[Entry], name: str) -> dict[int, list[Entry]]:
+    """Usage summaries by the place, from 1, of their usage point; 0 where links do not say.
+
+    In a file of one usage point, or none, they are its own.
+    """
+    points = points_of(entries, name)
+    found: dict[int, list[Entry]] = {}
+    for entry in entries:
+        if entry.kind.endswith("usagesummary"):
+            place = points.place(entry)
+            found.setdefault(0 if place is None else place + 1, []).append(entry)
+    return found
+
+
+def billed_spans(summaries: Sequence[Entry], clock: Clock) -> Spans | None:
     """The bills of one meter, in order; None where there are none.
 
     Of summaries of the same days the last counts; one that overlaps the bill before it starts
     where that one ends, or is passed over where nothing of it is left.
     """
-    points = [e for e in entries if e.kind == "usagepoint"]
     found: dict[tuple[int, int], float] = {}
-    for entry in entries:
-        if not entry.kind.endswith("usagesummary"):
-            continue
-        if len(points) > 1 and place_of(entry, points) != point:
-            continue
+    for entry in summaries:
         start, seconds = entry.whole("billingperiod/start"), entry.whole("billingperiod/duration")
         if start is None or seconds is None or not abs(start) < 2**40:
             continue

@@ -260,6 +260,8 @@ def _drop_unreal(moments: Moments, use: Float, keep: Byte) -> None:
     if clock is None or moments.zoned:
         return
     leap = np.flatnonzero(np.diff(clock.offset) > 0)
+    if leap.size == 0:  # a clock that never changes
+        return
     begin, end = (clock.since[leap] + clock.offset[leap + k] for k in (0, 1))
     at = np.searchsorted(begin, moments.local, side="right") - 1
     keep[(at >= 0) & (moments.local < end[at]) & (use == 0)] = 0

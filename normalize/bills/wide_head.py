@@ -103,8 +103,8 @@ def _clocks(mine: list[tuple[int, int]]) -> tuple[dict[int, int], int, tuple[int
         values[-1] = DAY
         seconds[list(seconds)[-1]] = DAY
     steps = {b - a for a, b in pairwise(values)}
-    step = steps.pop()
-    if steps or step not in STEPS or len(values) * step != DAY or values[0] not in (0, step):
+    step = steps.pop() if len(steps) == 1 else 0  # one time over and over has no step
+    if step not in STEPS or len(values) * step != DAY or values[0] not in (0, step):
         return None
     if len(extra) * step > MOST_EXTRA:
         return None

@@ -177,6 +177,24 @@ def test_a_workbook_of_dates_and_times_and_a_wide_one(tmp_path: Path) -> None:
     assert again == found
 
 
+@pytest.mark.parametrize("zone", ["-05:00", "+14:00", "UTC"])
+def test_a_clock_that_never_changes(zone: str, tmp_path: Path) -> None:
+    """Found by fuzzing: no hour is leapt over, so readings of nothing are readings."""
+    cells = {"2023-03-12": [*["0.5"] * 2, "0", *["0.5"] * 21]}
+    bills = read(wide("2023-03-11", cells), tmp_path, time_zone=zone)
+    assert days_of(bills) == {"2023-03-11": 12.0, "2023-03-12": 11.5, "2023-03-13": 12.0}
+    assert all(not row.problem for row in bills.rows)
+
+
+@pytest.mark.parametrize("label", ["0:00", "2023", "12:00 AM", "7:15"])
+def test_one_time_in_every_heading_heads_no_day(label: str, tmp_path: Path) -> None:
+    """Found by fuzzing: a header of one time of day, over and over."""
+    lines = [",".join(["Date", *[label] * 24])]
+    lines += [",".join([f"{d}", *["0.5"] * 24]) for d in days("2023-01-13", 3)]
+    with pytest.raises(NormalizeError):
+        read(lines, tmp_path, fuel="electricity", unit="kWh")
+
+
 @settings(
     max_examples=25, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture]
 )
