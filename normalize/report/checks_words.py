@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from normalize.report import numbers as n
-from normalize.savings.influence import LOOK_COOK, STRONG_COOK
+from normalize.savings.cook import LOOK_COOK, STRONG_COOK
 
 if TYPE_CHECKING:
     from collections.abc import Sequence

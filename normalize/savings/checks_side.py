@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING, Protocol
 
 from normalize.days import iso
 from normalize.savings.cautions import POOR_TAU_F
+from normalize.savings.cook import LOOK_COOK, STRONG_COOK
 from normalize.savings.guideline import GUIDELINE, cv_limit
-from normalize.savings.influence import LOOK_COOK, STRONG_COOK
 from normalize.savings.results import Check
 
 if TYPE_CHECKING:

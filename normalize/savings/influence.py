@@ -16,9 +16,7 @@ from normalize.savings.again import Asked, ask_again
 from normalize.savings.results import Estimate
 from normalize.savings.sides import codes
 
-LOOK_COOK = 4.0  # Cook's distance over this ÷ n is worth a look (common practice, no source)
 MOST_SINGLE = 120  # more readings than this (days, not bills): none is left out singly
-STRONG_COOK = 1.0  # over this one bill moves the fit a lot: Cook & Weisberg 1982 (memory)
 
 
 @dataclass(frozen=True, slots=True)

@@ -9,7 +9,8 @@ import numpy as np
 from normalize.fitting.columns import BASE, BEFORE, SLOPE_H, TAU_H
 from normalize.fitting.forms import HEATING
 from normalize.savings.checks import MOST_ANNOUNCED
-from normalize.savings.influence import LOOK_COOK, STRONG_COOK, weigh
+from normalize.savings.cook import LOOK_COOK, STRONG_COOK
+from normalize.savings.influence import weigh
 from normalize.savings.placebo import placebo_counts
 from tests.savings.homes import Homes, simulate
 
