@@ -20,7 +20,9 @@ def main(arguments: list[str]) -> int:
     """Run, or finish, the study."""
     parser = argparse.ArgumentParser(prog="python -m tests.prove.calibration", description=__doc__)
     parser.add_argument("--homes", type=int, default=2000, help="homes a cell (default 2000)")
-    parser.add_argument("--daily-homes", type=int, help="homes a cell of daily data")
+    parser.add_argument("--spoke-homes", type=int, help="of the spokes (default: as the core)")
+    parser.add_argument("--choice-homes", type=int, help="of the choice of form (default: half)")
+    parser.add_argument("--daily-homes", type=int, help="of daily data (default: a quarter)")
     parser.add_argument("--cells", default=",".join(PARTS), help=f"some of {', '.join(PARTS)}")
     parser.add_argument("--processes", type=int, default=2)
     parser.add_argument("--cache", type=Path, help="folder of kept results")
@@ -43,13 +45,14 @@ def study_of(options: argparse.Namespace, wanted: list[str]) -> Study:
     how = {"processes": options.processes, "cache": options.cache}
     core = plan.core()
     spokes = plan.spokes() if "spokes" in wanted else {}
-    cells = [*core, *(c for rows in spokes.values() for c in rows)]
-    found = results_of(COVERAGE, cells, options.homes, **how)
-    choices = results_of(CHOICE, plan.choice() if "choice" in wanted else [], options.homes, **how)
+    some = options.spoke_homes or options.homes
+    found = results_of(COVERAGE, [c for rows in spokes.values() for c in rows], some, **how)
+    found |= results_of(COVERAGE, core, options.homes, **how)
+    half = options.choice_homes or max(options.homes // 2, 1)
+    choices = results_of(CHOICE, plan.choice() if "choice" in wanted else [], half, **how)
     few = options.daily_homes or max(options.homes // 4, 1)
     daily = results_of(COVERAGE, plan.daily() if "daily" in wanted else [], few, **how)
     return Study(
-        options.homes,
         [found[c] for c in core],
         {name: [found[c] for c in rows] for name, rows in spokes.items()},
         list(choices.values()),

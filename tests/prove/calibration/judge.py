@@ -175,6 +175,7 @@ def _parts(result: Result) -> list[str]:
         ("other form before", "homes whose baseline was given another form"),
         ("τ on its bound", "homes whose balance temperature ended on its bound"),
         ("τ held", "homes whose balance temperature was held"),
+        ("τ integrated over", "homes whose balance temperature was integrated over"),
         ("τ stated", "homes answered at a stated balance temperature"),
     ):
         coverage, count = result.parts.get(name, (float("nan"), 0))

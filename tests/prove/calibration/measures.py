@@ -17,6 +17,8 @@ from normalize.savings.kernel import (
     NORMALIZED,
     PREDICTED,
     RHO_MEAN,
+    UNSURE_AFTER,
+    UNSURE_BEFORE,
 )
 from tests.prove.calibration.answers import Answers, answers_of
 from tests.prove.calibration.cells import Cell
@@ -132,6 +134,7 @@ def measure(cell: Cell, homes: int) -> Result:
     }
     right = found.chosen[:, 0] == form_named(cell.form).code
     held = (found.rows[:, HELD_BEFORE] == 1.0) | (found.rows[:, HELD_AFTER] == 1.0)
+    unsure = (found.rows[:, UNSURE_BEFORE] == 1.0) | (found.rows[:, UNSURE_AFTER] == 1.0)
     edge = found.before()[:, ON_BOUND] == 1.0
     normal = bounds["normalized/default"]
     parts = {
@@ -140,6 +143,7 @@ def measure(cell: Cell, homes: int) -> Result:
             ("right form before", right), ("other form before", ~right),
             ("same form on both sides", found.chosen[:, 0] == found.chosen[:, 1]),
             ("τ on its bound", edge), ("τ held", held), ("τ stated", found.stated),
+            ("τ integrated over", unsure),
         )
     }  # fmt: skip
     return Result(

@@ -8,6 +8,7 @@ import textwrap
 from collections.abc import Sequence
 from importlib.metadata import version
 
+from normalize.jit import kernel_hash
 from tests.prove.calibration import judge, tables
 from tests.prove.calibration.cells import FORMS, Cell
 from tests.prove.calibration.choice import Choice
@@ -19,13 +20,13 @@ PACKAGES = ("numpy", "numba", "scipy")
 
 
 class Study:
-    """All results of a run. spokes, daily : name → results; choices; real : a section or ""."""
+    """All results of a run. spokes : name → results; real : a section or ""."""
 
     def __init__(
-        self, homes: int, core: Sequence[Result], spokes: dict[str, Sequence[Result]],
+        self, core: Sequence[Result], spokes: dict[str, Sequence[Result]],
         choices: Sequence[Choice], daily: Sequence[Result], real: str,
     ) -> None:  # fmt: skip
-        self.homes, self.core, self.spokes = homes, list(core), spokes
+        self.core, self.spokes = list(core), spokes
         self.choices, self.daily, self.real = list(choices), list(daily), real
 
     @property
@@ -70,15 +71,22 @@ def tidy(text: str) -> str:
 
 def _head(study: Study) -> str:
     versions = ", ".join(f"{name} {version(name)}" for name in PACKAGES)
-    error = monte_carlo_error(0.9, study.homes)
+    parts = {
+        "the core": study.core,
+        "the spokes": [r for rows in study.spokes.values() for r in rows],
+        "the choice of form": study.choices,
+        "daily data": study.daily,
+    }
+    sizes = "; ".join(
+        f"{name} {min(r.homes for r in rows):,} in {len({r.cell for r in rows})} cells "
+        f"(± {monte_carlo_error(0.9, min(r.homes for r in rows)):.3f})"
+        for name, rows in parts.items()
+        if rows
+    )
     return HEAD.format(
-        homes=f"{study.homes:,}",
-        cells=len(study.bills),
-        core=len(study.core),
-        error=f"{error:.4f}",
-        daily=len(study.daily),
-        daily_homes=f"{study.daily[0].homes:,}" if study.daily else "0",
+        sizes=sizes,
         versions=f"Python {platform.python_version()}, {versions}",
+        kernels=kernel_hash("savings.kernel"),
     )
 
 

@@ -58,7 +58,7 @@ def version(makers: Sequence[str]) -> str:
     """Twelve hex digits that change with the kernels or with what simulates and counts."""
     from normalize.jit import kernel_hash
 
-    digest = hashlib.sha256(kernel_hash("savings").encode())
+    digest = hashlib.sha256(kernel_hash("savings.kernel").encode())
     for name in makers:
         digest.update((HERE / f"{name}.py").read_bytes())
     return digest.hexdigest()[:12]

@@ -10,9 +10,9 @@ HEAD = """
 # Calibration: does 90 % mean 90 %?
 
 Written by `make calibration`; every number, and every sentence with a number, comes from the run.
-{homes} simulated homes a cell, {cells} cells of bills ({core} of them the core) and {daily} of
-daily data ({daily_homes} homes a cell), and as many homes again on which nothing was done. A
-coverage of 0.9 has a Monte Carlo standard error of {error}. {versions}.
+Simulated homes a cell, and the Monte Carlo standard error of a coverage of 0.9: {sizes}. As many
+homes again in every cell of bills and days, on which nothing was done. {versions}; kernels
+{kernels}, cell by cell: with them the same cell gives the same numbers.
 
 A range that is called 90 % should hold the truth nine times in ten. Here the truth is known,
 because the homes are invented, so it can be counted: for this program's default, for the plain
