@@ -233,7 +233,7 @@ def test_the_savings_path_loads_no_tables_and_no_statistics(site: Path) -> None:
 
 def test_every_sample_site_has_an_answer_for_every_account(run: Run, samples: Path) -> None:
     folders = sorted(file.parent for file in samples.glob("*/site.toml"))
-    assert len(folders) == 3
+    assert len(folders) >= 3
     for folder in folders:
         ran = run("savings", folder, "--json", "-")
         assert ran.code == 0
