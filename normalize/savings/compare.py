@@ -88,7 +88,8 @@ def run_batch(
     days = [y.cum_days if y else np.zeros(1) for y in years]
     degrees = [y.cum_degrees if y else np.zeros(1) for y in years]
     pairs = np.broadcast_to(np.asarray(forced, dtype=np.int8), (offered.shape[0], 2))
-    force = np.array(pairs)  # a copy: what is broadcast may not be written to, another signature
+    # A copy: an array that is broadcast may not be written to, which is another signature.
+    force = np.array(pairs, order="C")
     fits: NDArray[np.float64]
     chosen: NDArray[np.int8]
     answers: NDArray[np.float64]
