@@ -1,7 +1,8 @@
 """Very many meters in one ESPI file: does the time grow with them, and not with their square?
 
 ``python -m benchmarks.bills_meters [most meters]`` prints a table for docs/evidence-bills.md.
-Seconds are those of work (CPU).  Invented readings: each meter with its own kind of readings, two months in two blocks and a bill.
+Seconds are those of work (CPU).  Invented: each meter with its own kind of readings, two months in
+two blocks, and a bill.
 """
 
 from __future__ import annotations

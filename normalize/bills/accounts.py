@@ -27,7 +27,7 @@ from normalize.bills.groups import (
     masked,
 )
 from normalize.bills.periods import Bills, LedgerEntry
-from normalize.bills.read import bills_of, interval_head, read_bills, table_score, understand_file
+from normalize.bills.read import bills_of, interval_head, read_bills, table_score
 from normalize.bills.records import Proven, settled_by_all
 from normalize.bills.select import lines_of_unit
 from normalize.bills.table import BillFile, RawTable, open_file, read_tables
@@ -36,6 +36,7 @@ from normalize.errors import AmbiguousBills, NoBills, NormalizeError
 
 if TYPE_CHECKING:
     from normalize.bills.dates import Order
+    from normalize.bills.interval_head import IntervalHead
 
 LEAD = 0.8  # of the accounts that settle how ends are meant: the rest follow (our own, no source)
 LEFT_OUT = "left out"
@@ -277,9 +278,8 @@ def _years_on_sheets(parts: Sequence[_Part], results: Sequence[_Result]) -> list
 def _taken_apart(file: BillFile, said: Answers, sheet: str | None) -> _Found:
     if looks_like_xml(file.data):
         return _meters(file, said)
-    if interval_head(file, said, sheet) is not None:
-        whole = _Part(Group((), "", ()), "", 0, lambda a: understand_file(file, a, sheet))
-        return _Found([whole])
+    if (head := interval_head(file, said, sheet)) is not None:
+        return _intervals(file, head, said)
     found = _Found()
     tables = read_tables(file, score=table_score(said), sheet=sheet)
     for table in tables:
@@ -299,6 +299,35 @@ def _raiser(err: NormalizeError) -> Callable[[Answers], Understood]:
         raise err
 
     return understand
+
+
+def _intervals(file: BillFile, head: IntervalHead, said: Answers) -> _Found:
+    """The accounts, meters and fuels of an interval file."""
+    from normalize.bills.intervals import open_intervals, understand_account
+
+    opened = open_intervals(file, head, said)
+    groups, places = opened.accounts.groups, opened.accounts.places
+    if len(groups) < 2:
+        which, notes = opened.accounts.chosen(said, opened.where)
+        alone = _Part(
+            Group((), "", ()), "", 0, lambda a: understand_account(opened, which, a, notes)
+        )
+        return _Found([alone])
+
+    def understood(n: int) -> Callable[[Answers], Understood]:
+        fuel = groups[n].fuel or None
+        return lambda a: understand_account(opened, places[n], replace(a, fuel=a.fuel or fuel))
+
+    parts = [
+        _Part(group, "", places[n].size, understood(n), choice)
+        for n, (group, choice) in enumerate(zip(groups, answers_that_choose(groups), strict=True))
+    ]
+    nobodys = []
+    for why, lines in opened.accounts.nobodys:
+        more = f" (the first of {lines.size:,} such lines)" if lines.size > 1 else ""
+        line = opened.taken.line(int(lines[0]))
+        nobodys.append(LedgerEntry(file.name, line, LEFT_OUT, why + more))
+    return _Found(parts, nobodys)
 
 
 def _meters(file: BillFile, said: Answers) -> _Found:

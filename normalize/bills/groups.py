@@ -24,6 +24,7 @@ from normalize.units import canonical_fuel, canonical_unit
 
 SURE_METER_LINES = 2  # of each meter, before a replacement is believed (our own, no source)
 MOST_REPLACED = 4  # meters in a row that are believed to be one account's (our own, no source)
+SAMPLE = 50  # values looked at to tell whether a column holds dates
 SHOWN_END = 4  # of an account number: its last characters
 MOST_LABEL = 60
 FEW_DIGITS = 2  # "Unit 12" is a name, not a number
@@ -116,7 +117,7 @@ def group_lines(columns: Columns, body: Sequence[RawRow], *, fuel: str | None) -
     whole: dict[Key, list[tuple[RawRow, str]]] = {}
     partial: list[tuple[Key, tuple[RawRow, str]]] = []
     for row, named in own:
-        parts = [_name(cell(row, k)) for k in telling]
+        parts = [own_name(cell(row, k)) for k in telling]
         key = (*parts, named) if several_fuels else tuple(parts)
         if all(key):
             whole.setdefault(key, []).append((row, named))
@@ -150,7 +151,7 @@ def _of_some_fuel(
     for row in body:
         texts = as_text(cell(row, named)), as_text(cell(row, unit))
         if texts not in fuels:
-            fuels[texts] = _fuel_of_line(*texts, named is not None)
+            fuels[texts] = fuel_of_line(*texts, named is not None)
         found, problem = fuels[texts]
         if not problem and fuel is not None and found not in ("", fuel):
             problem = f"{found}, another fuel"
@@ -161,7 +162,7 @@ def _of_some_fuel(
     return own, other
 
 
-def _fuel_of_line(fuel: str, unit: str, has_fuels: bool) -> tuple[str, str]:
+def fuel_of_line(fuel: str, unit: str, has_fuels: bool) -> tuple[str, str]:
     """Canonical fuel ("" where not said), or why the line is of none."""
     found = ""
     if not is_blank(fuel):
@@ -181,12 +182,28 @@ def _tells(own: Sequence[tuple[RawRow, str]], k: int) -> bool:
     """Whether a column tells accounts apart: two values or more that are no dates."""
     values: dict[str, Cell] = {}
     for row, _ in own:
-        text = _name(cell(row, k))
+        text = own_name(cell(row, k))
         if text and text not in values:
             values[text] = cell(row, k)
-    # A "Meter" column of dates is no column of meters.
-    sample = list(values.values())[:50]
-    return len(values) > 1 and not all(read_written(v).parts is not None for v in sample)
+    return len(values) > 1 and not all_dates(list(values.values()))
+
+
+def all_dates(values: Sequence[Cell]) -> bool:
+    """Whether a column's values are dates, for a "Meter" column of dates is none of meters.
+
+    Digits alone are numbers of accounts, though eight of them can be read as a date.
+
+    >>> all_dates(["11112222", "20230105"]), all_dates(["1/5/2023", "2023-02-06"])
+    (False, True)
+    """
+    return all(_is_date(value) for value in values[:SAMPLE])
+
+
+def _is_date(value: Cell) -> bool:
+    if plain(value).isdecimal():
+        return False
+    written = read_written(value)
+    return any(settle(written, order)[0] is not None for order in ORDERS[:2])
 
 
 def _placed(
@@ -258,10 +275,10 @@ def _succeed(when: int | None, meters: Sequence[Sequence[tuple[RawRow, str]]]) -
 
 def _names(columns: Columns, lines: Sequence[tuple[RawRow, str]]) -> tuple[str, ...]:
     names = (plain(cell(row, k)) for k in columns.accounts for row, _ in lines)
-    return tuple(dict.fromkeys(name for name in names if _name(name)))
+    return tuple(dict.fromkeys(name for name in names if own_name(name)))
 
 
-def _name(value: Cell) -> str:
+def own_name(value: Cell) -> str:
     """An account's name for comparing; "" where there is none, or the word "Total"."""
     text = squeeze(plain(value))
     first = plain(value).lower().split(" ", 1)[0]

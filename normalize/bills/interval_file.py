@@ -7,7 +7,7 @@ interval_kernel.py; what the arrays mean is in intervals.py.
 from __future__ import annotations
 
 import csv
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -36,7 +36,8 @@ class Taken:
     """An interval file taken apart. data : its bytes, recoded if need be.  first : its first line.
 
     roles : of the kernel, one for each column.  numbers, kinds : role, or column of an account,
-    to its place among the numbers and the words.
+    to its place among the numbers and the words.  at : (n,) numbers of the lines of one account;
+    None where all are there, one after the other.
     """
 
     name: str
@@ -48,6 +49,7 @@ class Taken:
     numbers: dict[str, int]
     kinds: dict[str | int, int]
     decimal: Decimal
+    at: NDArray[np.int64] | None = None
 
     @classmethod
     def of(cls, file: BillFile, head: IntervalHead, columns: Columns, decimal: Decimal) -> Taken:
@@ -81,6 +83,36 @@ class Taken:
             return []
         return [self.text(int(a), int(b)) for a, b in self.lines.words[place]]
 
+    def line(self, place: int) -> int:
+        """The number, in the file, of a line."""
+        return self.first + place if self.at is None else int(self.at[place])
+
+    def line_numbers(self) -> NDArray[np.int64]:
+        """Numbers of all lines, or (1,) the first where they follow each other."""
+        return np.full(1, self.first, np.int64) if self.at is None else self.at
+
+    def only(self, which: NDArray[np.intp]) -> tuple[Taken, NDArray[np.intp]]:
+        """Some of the lines, in order, and the numbers that their dates had before.
+
+        Each time that a column is asked for its words, it has only those of these lines.
+        """
+        a = self.lines
+        date = a.date[which]
+        used, again = np.unique(date[date >= 0].astype(np.intp), return_inverse=True)
+        dates = np.full(date.shape, -1, np.int32)
+        dates[date >= 0] = again
+        word, words = a.word[which], []
+        for k, spans in enumerate(a.words):
+            there, column = np.unique(word[:, k]), word[:, k].copy()
+            there = there[there >= 0]
+            word[:, k] = np.where(column >= 0, np.searchsorted(there, column), -1)
+            words.append(spans[there])
+        lines = Lines(
+            a.state[which], dates, a.second[which], a.offset[which], a.value[which], word,
+            a.parts[used], a.spans[used], tuple(words), a.odd[:0],
+        )  # fmt: skip
+        return replace(self, lines=lines, at=which.astype(np.int64) + self.first), used
+
     def number(self, role: str) -> NDArray[np.float64]:
         """A column of numbers, NaN for none."""
         return self.lines.value[:, self.numbers[role]]
@@ -110,7 +142,9 @@ def _roles(
         if (k := columns.get(role)) is not None:
             roles[k] = use
     roles[columns.by_role[stamp_role(columns)]] = STAMP
-    words = {k: role for role in ("unit", "estimated") if (k := columns.get(role)) is not None}
+    words = {
+        k: role for role in ("unit", "estimated", "fuel") if (k := columns.get(role)) is not None
+    }
     kinds: dict[str | int, int] = {}
     for k in range(len(roles)):
         if (k in words or k in columns.accounts) and roles[k] == SKIP:

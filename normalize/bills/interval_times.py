@@ -53,13 +53,14 @@ class Moments:
     cautions: tuple[str, ...]
 
 
-def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: str) -> Moments:
-    """Moments of an interval file. role : of the column of stamps: start, read or end.
+def moments_of(
+    lines: Lines, days: Long, note: str, role: str, answers: Answers, where: str
+) -> Moments:
+    """Moments of one account. role : of the column of stamps: start, read or end.
 
-    Raises AmbiguousBills, UnreadableBills.
+    days, note : as days_of gives them for the whole file.  Raises AmbiguousBills, UnreadableBills.
     """
-    days, note = _days(lines, data, answers, where)
-    second = _bare_numbers(lines.second)
+    second = lines.second
     local, known = np.empty(second.shape, np.int64), np.empty(second.shape, np.uint8)
     if local_seconds(lines.date, second, days, local, known) == 0:
         raise UnreadableBills("no line begins with a moment of time", where=where)
@@ -85,11 +86,10 @@ def moments_of(lines: Lines, role: str, data: bytes, answers: Answers, where: st
 
 
 def wide_moments(
-    lines: Lines, wide: WideHead, data: bytes, answers: Answers, where: str
+    lines: Lines, days: Long, note: str, wide: WideHead, answers: Answers, where: str
 ) -> Moments:
     """Moments of a wide file's readings, line by line. Raises as moments_of does."""
-    days, note = _days(lines, data, answers, where)
-    day = np.where(lines.date >= 0, days[np.maximum(lines.date, 0)], NO_DAY)
+    day = np.append(days, NO_DAY)[lines.date]  # the last for -1, no date
     if not np.any(day != NO_DAY):
         raise UnreadableBills("no line begins with a date", where=where)
     # The hour that comes twice when clocks go back is, nearly everywhere, the one from 1 to 2.
@@ -114,7 +114,7 @@ def _offsets(offset: Int, known: Byte) -> tuple[Int, bool]:
     return offset, True
 
 
-def _bare_numbers(second: Int) -> Int:
+def bare_numbers(second: Int) -> Int:
     """Times such as 13, 1300 or 130000 to seconds; which of these they are, all of them show."""
     bare = second <= BARE_HOUR
     if not np.any(bare):
@@ -132,7 +132,7 @@ def _bare_numbers(second: Int) -> Int:
     return out
 
 
-def _days(lines: Lines, data: bytes, answers: Answers, where: str) -> tuple[Long, str]:
+def days_of(lines: Lines, data: bytes, answers: Answers, where: str) -> tuple[Long, str]:
     """Day number of each date, NO_DAY for none, and a sentence on their order."""
     parts = lines.parts.astype(np.int64)
     bad = np.flatnonzero(parts[:, 0] < 0)

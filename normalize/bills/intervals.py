@@ -9,16 +9,15 @@ those of every table (columns.py, groups.py).
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from normalize.bills.amounts import Decimal, decide_decimal
+from normalize.bills.amounts import Decimal, as_text, decide_decimal
 from normalize.bills.answers import Answers, Understood
 from normalize.bills.columns import (
     Columns,
-    answer,
     choose_cost,
     choose_usage,
     described,
@@ -26,18 +25,24 @@ from normalize.bills.columns import (
 )
 from normalize.bills.day_rows import DayRows
 from normalize.bills.fuel_and_unit import fuel_of, unit_of
-from normalize.bills.groups import cell, masked
-from normalize.bills.headings import squeeze
+from normalize.bills.groups import cell, fuel_of_line
+from normalize.bills.interval_accounts import IntervalAccounts, accounts_of_intervals
 from normalize.bills.interval_file import Taken, stamp_role
 from normalize.bills.interval_head import IntervalHead, whole_sheet
 from normalize.bills.interval_kernel import BLANK, FULL, TOO_WIDE
 from normalize.bills.interval_sums import keep_lines
-from normalize.bills.interval_times import Moments, moments_of, wide_moments
+from normalize.bills.interval_times import (
+    Moments,
+    bare_numbers,
+    days_of,
+    moments_of,
+    wide_moments,
+)
 from normalize.bills.local_days import DAY
 from normalize.bills.records import is_estimated
 from normalize.bills.sum_rows import day_rows, several
 from normalize.bills.table import BillFile, RawRow, RawTable
-from normalize.errors import AmbiguousBills, NoBills, UnreadableBills
+from normalize.errors import NoBills
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -70,27 +75,70 @@ class _Readings:
     room: int | None = None
 
 
-def read_intervals(file: BillFile, head: IntervalHead, answers: Answers) -> Understood:
-    """Local days of one account.  Raises as read_bills does."""
+@dataclass(frozen=True, slots=True)
+class OpenedIntervals:
+    """An interval file, its lines told apart.  days, note : of the dates, settled by all lines."""
+
+    head: IntervalHead
+    columns: Columns
+    taken: Taken
+    accounts: IntervalAccounts
+    days: Long
+    note: str
+    fuel: str
+    where: str
+    notes: tuple[str, ...]
+
+
+def open_intervals(file: BillFile, head: IntervalHead, answers: Answers) -> OpenedIntervals:
+    """Take a file apart, once for all its accounts.  Raises as read_bills does."""
     table = RawTable(file.name, file.sha256, head.rows, head.delimiter)
     columns, body = find_columns(table, answers.named)
     if head.sheet:
         head = whole_sheet(file, head)
     where = f"{file.name}:{columns.line}"
-    columns, usage_notes = choose_usage(
-        columns, fuel=answers.fuel, unit=answers.unit, where=file.name
-    )
-    fuel = answers.fuel or fuel_of(columns, body, answers.unit, where)
+    columns, notes = choose_usage(columns, fuel=answers.fuel, unit=answers.unit, where=file.name)
+    fuel = answers.fuel or fuel_of(columns, _of_a_fuel(columns, body), answers.unit, where)
     columns = choose_cost(columns, fuel)
     taken = Taken.of(file, head, columns, _decimal(columns, body, head, answers, where))
-    own, other_notes = _of_account(taken, columns, answers, where)
+    taken.look_again()
+    taken = replace(taken, lines=replace(taken.lines, second=bare_numbers(taken.lines.second)))
+    accounts = accounts_of_intervals(taken, columns, answers, where)
+    days, note = days_of(taken.lines, taken.data, answers, where)
+    return OpenedIntervals(head, columns, taken, accounts, days, note, fuel, where, tuple(notes))
+
+
+def _of_a_fuel(columns: Columns, body: Sequence[RawRow]) -> Sequence[RawRow]:
+    """Rows whose fuel can be read, if any."""
+    k = columns.get("fuel")
+    if k is None:
+        return body
+    return [r for r in body if not fuel_of_line(as_text(cell(r, k)), "", True)[1]] or body
+
+
+def read_intervals(file: BillFile, head: IntervalHead, answers: Answers) -> Understood:
+    """Local days of one account.  Raises as read_bills does."""
+    opened = open_intervals(file, head, answers)
+    which, notes = opened.accounts.chosen(answers, opened.where)
+    return understand_account(opened, which, answers, notes)
+
+
+def understand_account(
+    opened: OpenedIntervals, which: NDArray[np.intp] | None, answers: Answers,
+    notes: Sequence[str] = (),
+) -> Understood:  # fmt: skip
+    """Local days of the account on some lines, or on all.  Raises as read_bills does."""
+    columns, where, head = opened.columns, opened.where, opened.head
+    taken, days, fuel = opened.taken, opened.days, answers.fuel or opened.fuel
+    if which is not None:
+        taken, dates = taken.only(which)
+        days = days[dates]
     unit, unit_note = unit_of(
         columns, _unit_rows(taken, columns), (), said=answers.unit, fuel=fuel, where=where
     )
-    taken.look_again()
     make = _long if head.wide is None else _wide
-    readings = make(taken, head, columns, own, answers, where)
-    rows, notes = _summed(readings, taken)
+    readings = make(taken, head, columns, days, opened.note, answers, where)
+    rows, more = _summed(readings, taken)
     roles = [role for role in ("start", "end", "read", "time") if columns.get(role) is not None]
     return Understood(
         fuel, unit, "meter", rows,
@@ -98,27 +146,35 @@ def read_intervals(file: BillFile, head: IntervalHead, answers: Answers) -> Unde
             *((f"sheet {head.sheet[:40]!r}",) if head.sheet else ()),
             f"interval data, header on line {columns.line}", f"fuel: {fuel}", unit_note,
             *described(columns, (*roles, *(("usage", "cost") if head.wide is None else ()))),
-            *usage_notes, *other_notes, *readings.moments.notes, *notes,
+            *opened.notes, *notes, *readings.moments.notes, *more,
         ),
         readings.moments.cautions, sent=bool(np.any(readings.use < 0)),
     )  # fmt: skip
 
 
 def _long(
-    taken: Taken, head: IntervalHead, columns: Columns, own: Byte, answers: Answers, where: str
-) -> _Readings:
+    taken: Taken, head: IntervalHead, columns: Columns, days: Long, note: str, answers: Answers,
+    where: str,
+) -> _Readings:  # fmt: skip
     """Readings of a file with a line for each."""
-    moments = moments_of(taken.lines, stamp_role(columns), taken.data, answers, where)
+    lines = taken.lines
+    moments = moments_of(lines, days, note, stamp_role(columns), answers, where)
     return _Readings(
-        moments, taken.lines.state, own, np.ascontiguousarray(taken.number("usage")),
+        moments, lines.state, _own(lines.state), np.ascontiguousarray(taken.number("usage")),
         taken.number("cost") if "cost" in taken.numbers else np.full(1, np.nan),
-        _estimated(taken, columns), np.full(1, taken.first),
+        _estimated(taken, columns), taken.line_numbers(),
     )  # fmt: skip
 
 
+def _own(state: Byte) -> Byte:
+    own: Byte = (state == FULL).view(np.uint8)
+    return own
+
+
 def _wide(
-    taken: Taken, head: IntervalHead, columns: Columns, own: Byte, answers: Answers, where: str
-) -> _Readings:
+    taken: Taken, head: IntervalHead, columns: Columns, days: Long, note: str, answers: Answers,
+    where: str,
+) -> _Readings:  # fmt: skip
     """Readings of a file with a line for each day."""
     if head.wide is None:
         raise TypeError("a wide head is needed")
@@ -127,11 +183,14 @@ def _wide(
         if k in wide.extra:  # filled once a year, and with noughts on all other days
             lines.value[lines.value[:, slot] == 0, slot] = np.nan
     guessed = _estimated(taken, columns)
-    number = np.arange(taken.first, taken.first + lines.state.size, dtype=np.int64)
+    number = taken.at
+    if number is None:
+        number = np.arange(taken.first, taken.first + lines.state.size, dtype=np.int64)
     return _Readings(
-        wide_moments(lines, wide, taken.data, answers, where),
-        np.repeat(lines.state, width), np.repeat(own, width), lines.value.reshape(-1),
-        np.full(1, np.nan), np.repeat(guessed, width) if guessed.size > 1 else guessed,
+        wide_moments(lines, days, note, wide, answers, where),
+        np.repeat(lines.state, width), np.repeat(_own(lines.state), width),
+        lines.value.reshape(-1), np.full(1, np.nan),
+        np.repeat(guessed, width) if guessed.size > 1 else guessed,
         np.repeat(number, width), width, None if wide.extra else DAY,
     )  # fmt: skip
 
@@ -144,40 +203,6 @@ def _decimal(
     used += head.wide.columns if head.wide is not None else ()
     cells = [cell(row, k) for k in used if k is not None for row in body[: SAMPLE // len(used)]]
     return decide_decimal(cells, delimiter=head.delimiter, answer=answers.decimal, where=where)[0]
-
-
-def _of_account(
-    big: Taken, columns: Columns, answers: Answers, where: str
-) -> tuple[Byte, tuple[str, ...]]:
-    """1 for lines that are the account's; asks where the file holds several."""
-    own = big.lines.state == FULL
-    for k in columns.accounts:
-        words = big.words(k)
-        known = [w for w in words if squeeze(w) and w != columns.headings[k].text]
-        if len(known) < 2:
-            continue
-        shown = sorted({masked(w) for w in known})
-        if answers.rows is None:
-            raise AmbiguousBills(
-                f"column {columns.headings[k].text!r} tells {len(known)} accounts or meters "
-                f"apart ({', '.join(shown[:8])})",
-                where=where,
-                wanted="to know which is meant, for they are never added up",
-                next_step=answer("rows", *(s.lstrip("…") for s in shown[:2])),
-            )
-        wanted = squeeze(answers.rows)
-        hits = [
-            n
-            for n, w in enumerate(words)
-            if squeeze(w) == wanted or (len(wanted) >= 4 and squeeze(w).endswith(wanted))
-        ]
-        if not hits:
-            raise UnreadableBills("no line belongs to what rows names", where=where,
-                                  wanted="one of " + ", ".join(shown[:12]))  # fmt: skip
-        kept = own & np.isin(big.lines.word[:, big.kinds[k]], hits)
-        other = int(own.sum() - kept.sum())
-        return kept.view(np.uint8), (f"{several(other, 'line')} of other accounts or meters",)
-    return own.view(np.uint8), ()
 
 
 def _unit_rows(big: Taken, columns: Columns) -> list[RawRow]:
@@ -237,7 +262,7 @@ def _summed(r: _Readings, taken: Taken) -> tuple[DayRows, list[str]]:
     if unread.size:
         notes.append(
             f"passed over: {several(unread.size, 'line')} without a time and a number, or with "
-            f"more cells than the header (first on line {int(unread[0]) + taken.first})"
+            f"more cells than the header (first on line {taken.line(int(unread[0]))})"
         )
     if repeated:
         what = "line" if r.width == 1 else "reading"

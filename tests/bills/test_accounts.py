@@ -51,6 +51,24 @@ def test_accounts_and_fuels_on_lines_of_their_own(tmp_path: Path) -> None:
     assert "0011005678" not in repr(found)
 
 
+@pytest.mark.parametrize(
+    ("one", "two"),
+    [("11112222", "33334444"), ("70001122", "70003344"), ("12-99-3456", "45-67-8901")],
+)
+def test_account_numbers_that_look_like_dates(one: str, two: str, tmp_path: Path) -> None:
+    """Else the bills of one account pass for later versions of the other's."""
+    text = "Account,Start,End,Therms\n" + "".join(
+        f"{one},{a},{b},1\n{two},{a},{b},9\n" for a, b in SPANS
+    )
+    found = accounts_of(tmp_path, text)
+    assert uses(found) == {f"…{one[-4:]}": [1.0] * 3, f"…{two[-4:]}": [9.0] * 3}
+
+
+def test_a_meter_column_of_dates_tells_no_accounts(tmp_path: Path) -> None:
+    text = "Meter,Start,End,Therms\n" + "".join(f"{b},{a},{b},1\n" for a, b in SPANS)
+    assert len(accounts_of(tmp_path, text).accounts) == 1
+
+
 def test_two_fuels_side_by_side(tmp_path: Path) -> None:
     text = "Start,End,Electric (kWh),Electric cost,Gas (therms),Gas cost\n" + "".join(
         f"{a},{b},100,20,10,9\n" for a, b in SPANS

@@ -61,6 +61,9 @@ def seeds() -> list[bytes]:
     hours = "".join(f"2023-01-{d} {h:02}:00,0.5\n" for d in (13, 14) for h in range(24))
     apart = "".join(f"1/{d}/2023,{h}:00,0.5,kWh\n" for d in (13, 14) for h in range(24))
     texts += [("Timestamp,kWh\n" + hours).encode(), ("Date,Time,Usage,Unit\n" + apart).encode()]
+    turns = "".join(f"{a},2023-01-{d} {h:02}:00,0.5\n" for d in (13, 14) for h in range(24)
+                    for a in ("11112222", "7000445566"))  # fmt: skip
+    texts += [("Meter,Timestamp,kWh\n" + turns).encode()] * 3
     return [*texts, *SEVERAL * 5, gas().encode(), workbook()]
 
 
