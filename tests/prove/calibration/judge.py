@@ -16,6 +16,8 @@ MOST_ALARMS = 0.12
 RIGHT_FORM = {"flat": 0.93, "heating": 0.93, "cooling": 0.93, "heating and cooling": 0.80}
 RIGHT_BILLS, RIGHT_NOISE = 24, 0.10
 PROMISED = 0.90
+MANY = 0.25  # of homes: enough to colour a cell
+NEAR = "within two Monte Carlo errors of the target"
 ALARM_QUANTITIES = ("normalized", "avoided")
 
 
@@ -138,13 +140,11 @@ def reasons(result: Result) -> str:
     coverage = result.of(worst).coverage
     found: list[str] = []
     if max(result.of(q).coverage for q in QUANTITIES) > HIGH and coverage >= LOW:
-        return (
-            "cautious: so few bills cannot rule out strong correlation, and the range allows for it"
-        )
+        return _cautious(result)
     if cell.form not in cell.offered:
         found.append("the true form was not offered, so the fit is another's")
     found += _parts(result)
-    if cell.rho - result.rho > 0.08:
+    if cell.schedule != "daily" and cell.rho - result.rho > 0.08:
         found.append(
             f"correlation is judged too low (mean {result.rho:.2f} where {cell.rho:g} is true): "
             "the fit takes up part of it and few bills tell the rest"
@@ -162,8 +162,26 @@ def reasons(result: Result) -> str:
         found.append("t ranges are made for normal errors")
     margin = min(abs(coverage - LOW), abs(coverage - HIGH))
     if margin <= 2.0 * result.of(worst).error:
-        found.append("within two Monte Carlo errors of the target")
+        found.append(NEAR)
     return "; ".join(found) or "no single reason stands out"
+
+
+def _cautious(result: Result) -> str:
+    """Why a coverage is above the band."""
+    found = [
+        "cautious: so few bills cannot rule out strong correlation, and the range allows for it"
+    ]
+    coverage, count = result.parts.get("τ integrated over", (float("nan"), 0))
+    share = count / result.homes
+    if share >= MANY and coverage > PROMISED:
+        found.append(
+            f"in {share:.0%} of homes the bills place the balance temperature badly and the range "
+            f"integrates over it (coverage {coverage:.2f})"
+        )
+    top = max(QUANTITIES, key=lambda q: result.of(q).coverage)
+    if result.of(top).coverage - HIGH <= 2.0 * result.of(top).error:
+        found.append(NEAR)
+    return "; ".join(found)
 
 
 def _parts(result: Result) -> list[str]:

@@ -83,8 +83,10 @@ def _head(study: Study) -> str:
         for name, rows in parts.items()
         if rows
     )
+    missing = " and ".join(name for name, rows in parts.items() if not rows)
     return HEAD.format(
         sizes=sizes,
+        missing=f"**Left out of this run: {missing}.**" if missing else "",
         versions=f"Python {platform.python_version()}, {versions}",
         kernels=kernel_hash("savings.kernel"),
     )

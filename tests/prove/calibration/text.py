@@ -12,7 +12,7 @@ HEAD = """
 Written by `make calibration`; every number, and every sentence with a number, comes from the run.
 Simulated homes a cell, and the Monte Carlo standard error of a coverage of 0.9: {sizes}. As many
 homes again in every cell of bills and days, on which nothing was done. {versions}; kernels
-{kernels}, cell by cell: with them the same cell gives the same numbers.
+{kernels}: with these the same cell gives the same numbers. {missing}
 
 A range that is called 90 % should hold the truth nine times in ten. Here the truth is known,
 because the homes are invented, so it can be counted: for this program's default, for the plain
