@@ -49,19 +49,19 @@ def fit_with(
     code: int,
     drivers: NDArray[np.float64],
     *,
-    in_fortnights: bool = False,
+    by_blocks: bool = False,
 ) -> DriverFit | None:
     """The side's best form with these drivers, or None where none can be fitted.
 
-    batch : of one account.  drivers : (rows, k) of all its periods.  in_fortnights : daily
-    data are put into fortnights first (fitting/blocks.py), where errors are less alike.
+    batch : of one account.  drivers : (rows, k) of all its periods.  by_blocks : daily
+    data are put into blocks first (fitting/blocks.py), where errors are less alike.
     """
     side = side_data(batch, table, code)
     mine = np.ascontiguousarray(drivers[batch.side == code], dtype=np.float64)
     if mine.shape[0] == 0:
         return None
-    if in_fortnights:
-        side, mine = _in_fortnights(side, mine)
+    if by_blocks:
+        side, mine = _by_blocks(side, mine)
     rows = fit_side(
         side.ts, side.ps, side.y, side.d, side.w, mine, batch.wanted[0],
         bool(batch.net[0]), settings(),
@@ -72,8 +72,8 @@ def fit_with(
     return _described(rows[form], form, side, mine)
 
 
-def fortnights(side: SideData, columns: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Means of columns (n, k) over fortnights; the columns themselves where data are no days."""
+def block_means(side: SideData, columns: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Means of columns (n, k) over blocks; the columns themselves where data are no days."""
     which, place = block_of(side.start, side.end)
     means: NDArray[np.float64] = in_blocks(
         np.ascontiguousarray(columns), side.d, which, place.shape[0]
@@ -81,13 +81,13 @@ def fortnights(side: SideData, columns: NDArray[np.float64]) -> NDArray[np.float
     return means
 
 
-def fortnight_days(side: SideData) -> NDArray[np.float64]:
-    """Days of each fortnight, or of each period where data are no days."""
+def block_lengths(side: SideData) -> NDArray[np.float64]:
+    """Days of each block, or of each period where data are no days."""
     which, place = block_of(side.start, side.end)
     return np.bincount(which, side.d, place.shape[0]).astype(np.float64)
 
 
-def _in_fortnights(
+def _by_blocks(
     side: SideData, drivers: NDArray[np.float64]
 ) -> tuple[SideData, NDArray[np.float64]]:
     which, place = block_of(side.start, side.end)

@@ -27,9 +27,9 @@ from normalize.fitting.batch import Batch, Stations
 from normalize.fitting.columns import AFTER, BEFORE, UNUSED
 from normalize.fitting.driver_fit import (
     DriverFit,
+    block_lengths,
+    block_means,
     fit_with,
-    fortnight_days,
-    fortnights,
     shared_with,
 )
 from normalize.fitting.drivers import (
@@ -41,7 +41,7 @@ from normalize.fitting.drivers import (
 from normalize.fitting.fit import batch_of_one, side_data
 from normalize.savings.sides import codes
 
-EVEN_SHARE: Final = 0.02  # of a driver's variance that is left between fortnights
+EVEN_SHARE: Final = 0.02  # of a driver's variance that is left between blocks
 SIDES: Final = (("before", BEFORE), ("after", AFTER))
 
 
@@ -84,7 +84,7 @@ class Chosen:
 
     trials : every driver, in the order of site.toml.  aligned : the periods with the drivers
     kept, those without a known amount of one set aside.  rhythm : (n, 2) use a day that was
-    taken off daily readings for kinds of days that come round every fortnight, by the effects
+    taken off daily readings for kinds of days that come round evenly, by the effects
     before and after the work; a period's own side's was taken off.
     original : the periods as they came.  amounts, normals : of every driver.
     """
@@ -132,13 +132,13 @@ class _Bench:
     table: Stations
     values: NDArray[np.float64]
     done: dict[tuple[int, ...], tuple[DriverFit | None, DriverFit | None]]
-    in_fortnights: bool = False
+    by_blocks: bool = False
 
     def fits(self, names: tuple[int, ...]) -> tuple[DriverFit | None, DriverFit | None]:
         if names not in self.done:
             x = np.ascontiguousarray(self.values[:, list(names)])
             before, after = (
-                fit_with(self.batch, self.table, code, x, in_fortnights=self.in_fortnights)
+                fit_with(self.batch, self.table, code, x, by_blocks=self.by_blocks)
                 for _, code in SIDES
             )
             self.done[names] = (before, after)
@@ -149,10 +149,10 @@ class _Bench:
         mine = self.batch.side == code
         x = np.ascontiguousarray(self.values[mine])
         days = (self.batch.end - self.batch.start)[mine].astype(np.float64)
-        if not self.in_fortnights:
+        if not self.by_blocks:
             return x, days
         side = side_data(self.batch, self.table, code)
-        return fortnights(side, x), fortnight_days(side)
+        return block_means(side, x), block_lengths(side)
 
     def bic(self, names: tuple[int, ...]) -> float:
         """Of both sides together; of those that can be fitted without any driver."""
@@ -199,7 +199,7 @@ def choose_drivers(
     fast = tuple(j for j in open_ if _comes_round(days, j))
     kept_fast = _screened(days, drivers, fast, refused)
     calm, rhythm = _without_rhythm(days, tried_on, labels, kept_fast)
-    bench = _bench(calm, side, values, forms, net, in_fortnights=True)
+    bench = _bench(calm, side, values, forms, net, by_blocks=True)
     kept_slow = _screened(bench, drivers, [j for j in open_ if j not in fast], refused)
     trials = tuple(
         _trial(days, d, j, refused[j], levels[j], kept_fast)
@@ -232,11 +232,11 @@ def _bench(
     forms: Sequence[str],
     net: bool,
     *,
-    in_fortnights: bool = False,
+    by_blocks: bool = False,
 ) -> _Bench:
     bare = replace(aligned, drivers=None)
     batch, table = batch_of_one(bare, side, tuple(forms), net)
-    return _Bench(batch, table, values, {}, in_fortnights)
+    return _Bench(batch, table, values, {}, by_blocks)
 
 
 def _screened(
@@ -250,12 +250,12 @@ def _screened(
 
 
 def _comes_round(bench: _Bench, j: int) -> bool:
-    """Whether a driver of daily readings comes round so evenly that fortnights all have as
-    much of it, as weekends do.  Its effect shows from day to day; a year's total hardly knows it.
+    """Whether a driver of daily readings comes round so evenly that blocks all have as much
+    of it, as weekends do.  Its effect shows from day to day; a year's total hardly knows it.
     """
     side = side_data(bench.batch, bench.table, BEFORE)
     x = bench.values[bench.batch.side == BEFORE][:, [j]]
-    means = fortnights(side, x) if x.shape[0] else x
+    means = block_means(side, x) if x.shape[0] else x
     if means.shape[0] == x.shape[0]:
         return False
     return float(means.var()) < EVEN_SHARE * float(x.var())
