@@ -270,6 +270,7 @@ def _marks(bills: Bills, i: int) -> str:
 
 
 def _periods(bills: Bills) -> str:
+    from normalize.bills.gaps import gap_words
     from normalize.days import iso
     from normalize.report.numbers import plain
 
@@ -292,7 +293,8 @@ def _periods(bills: Bills) -> str:
         rows = rows[:MOST_PERIODS] + gap + rows[-MOST_PERIODS:]
     head = ["period", "start", "end", "days", bills.unit, "a day", "cost", ""]
     days, use = int(p.days.sum()), plain(float(p.use.sum()), 1)
-    return f"{table(head, rows, left=3)}\n\n{p.n} periods, {days} days, {use} {bills.unit}"
+    gaps = f"\n{paragraph(gap_words(p))}" if gap_words(p) else ""
+    return f"{table(head, rows, left=3)}\n\n{p.n} periods, {days} days, {use} {bills.unit}{gaps}"
 
 
 def _ledger(bills: Bills) -> str:
