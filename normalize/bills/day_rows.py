@@ -6,6 +6,7 @@ reads them they are sequences of BillRow and LedgerEntry like any other.
 
 from __future__ import annotations
 
+from abc import abstractmethod
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, TypeVar, overload
@@ -29,8 +30,9 @@ class _Made(Sequence[T]):
 
     __slots__ = ()
 
+    @abstractmethod
     def _item(self, k: int) -> T:
-        raise NotImplementedError
+        """The item at place k, 0 ≤ k < len(self)."""
 
     @overload
     def __getitem__(self, k: int) -> T: ...

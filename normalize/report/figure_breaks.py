@@ -40,7 +40,7 @@ def breaks_figure(account: AccountResult, key: str) -> svg.Picture | None:
         )
         _limits(axes, steps)
         axes.axhline(0.0, color=look.QUIET, linewidth=0.8)
-        _draw_work(axes, account)
+        marks.draw_work(axes, account)
         _draw_steps(axes, steps)
         _draw_levels(axes, found, account.work_start or 0)
         _draw_dates(axes, found)
@@ -77,21 +77,6 @@ def _limits(axes: Axes, steps: list[Step]) -> None:
     first, last = steps[0].start, steps[-1].end
     edge = 0.01 * (last - first)
     axes.set_xlim(first - edge, last + edge)
-
-
-def _draw_work(axes: Axes, account: AccountResult) -> None:
-    start, end = account.work_start, account.work_end
-    left, right = axes.get_xlim()
-    if start is None or end is None or end < left or start > right:
-        return
-    axes.axvspan(max(start, left), min(end, right), color=look.RULE, alpha=0.75, linewidth=0)
-    axes.axvline(max(start, left), color=look.QUIET, linewidth=0.8)
-    late = start > left + 0.85 * (right - left)
-    axes.annotate(
-        "work", (start if late else end, 1.0), xycoords=("data", "axes fraction"),
-        xytext=(-4 if late else 4, -1), textcoords="offset points", ha="right" if late else "left",
-        va="top", color=look.QUIET, fontsize=look.SMALL_SIZE,
-    )  # fmt: skip
 
 
 def _draw_steps(axes: Axes, steps: list[Step]) -> None:

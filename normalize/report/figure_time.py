@@ -37,7 +37,7 @@ def time_figure(account: AccountResult, key: str) -> svg.Picture | None:
         middles = ((0.5 * (r.start + r.end), r.use_per_day, r) for r in rows)
         marks.draw_marks(axes, middles)
         _limits(axes, rows)
-        _draw_work(axes, account)
+        marks.draw_work(axes, account)
         axes_by_hand.time_axis(axes, rows[0].start, rows[-1].end)
         axes_by_hand.number_axis(axes, "y")
         _unit(figure, account.unit)
@@ -117,22 +117,6 @@ def _limits(axes: Axes, rows: list[PeriodRow]) -> None:
     axes.set_ylim(bottom * 1.08, top + 0.08 * (top - bottom))
     edge = 0.01 * (rows[-1].end - rows[0].start)
     axes.set_xlim(rows[0].start - edge, rows[-1].end + edge)
-
-
-def _draw_work(axes: Axes, account: AccountResult) -> None:
-    """The work window as a band, named at its top."""
-    start, end = account.work_start, account.work_end
-    left, right = axes.get_xlim()
-    if start is None or end is None or end < left or start > right:
-        return
-    axes.axvspan(max(start, left), min(end, right), color=look.RULE, alpha=0.75, linewidth=0)
-    axes.axvline(max(start, left), color=look.QUIET, linewidth=0.8)
-    late = start > left + 0.85 * (right - left)
-    axes.annotate(
-        "work", (start if late else end, 1.0), xycoords=("data", "axes fraction"),
-        xytext=(-4 if late else 4, -1), textcoords="offset points", ha="right" if late else "left",
-        va="top", color=look.QUIET, fontsize=look.SMALL_SIZE,
-    )  # fmt: skip
 
 
 def _unit(figure: Figure, unit: str) -> None:

@@ -12,7 +12,7 @@ if TYPE_CHECKING:
 
     from matplotlib.axes import Axes
 
-    from normalize.site import PeriodRow
+    from normalize.site import AccountResult, PeriodRow
 
 USED: Final = ("before", "after")
 ELSEWHERE: Final = ("older", "later", "between", "earlier occupant")  # sound, but of other times
@@ -85,3 +85,19 @@ def steps(spans: Iterable[tuple[float, float, float]]) -> tuple[list[float], lis
         xs += [start, end]
         ys += [value, value]
     return xs, ys
+
+
+def draw_work(axes: Axes, account: AccountResult) -> None:
+    """The work window as a band, named at its top."""
+    start, end = account.work_start, account.work_end
+    left, right = axes.get_xlim()
+    if start is None or end is None or end < left or start > right:
+        return
+    axes.axvspan(max(start, left), min(end, right), color=look.RULE, alpha=0.75, linewidth=0)
+    axes.axvline(max(start, left), color=look.QUIET, linewidth=0.8)
+    late = start > left + 0.85 * (right - left)
+    axes.annotate(
+        "work", (start if late else end, 1.0), xycoords=("data", "axes fraction"),
+        xytext=(-4 if late else 4, -1), textcoords="offset points", ha="right" if late else "left",
+        va="top", color=look.QUIET, fontsize=look.SMALL_SIZE,
+    )  # fmt: skip
