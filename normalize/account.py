@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from functools import partial
 from typing import TYPE_CHECKING, Any
 
@@ -93,13 +94,34 @@ def assess_account(
     )
     found = ask(aligned)
     savings = _unfit(found.savings, bills.unfit, confidence) if bills.unfit else found.savings
-    close = Scrutiny()
+    close, changed = Scrutiny(), None
     if closely and not bills.unfit:
         asked = Asked(aligned, site.year, forms, confidence, net, found.stated_f is not None)
         close = scrutinise(asked, found, work_start=work.start, delivered=bills.kind == "delivery")
-    changed = None
-    if closely and not bills.unfit:
         changed = _breaks(site, plan, weather_only(laid, found), found, work, net)
+    result = _laid_out(site, plan, bills, laid, found, savings, work, close, changed)
+    if not closely:
+        return result
+    return replace(
+        result,
+        drivers=with_and_without(laid.chosen, found, ask) if laid.chosen else None,
+        **_read_closely(site, plan, bills, aligned, found, savings, confidence),
+    )
+
+
+def _laid_out(
+    site: Site,
+    plan: AccountPlan,
+    bills: Bills,
+    laid: Laid,
+    found: Comparison,
+    savings: Savings,
+    work: Work,
+    close: Scrutiny,
+    changed: Breaks | None,
+) -> AccountResult:
+    """The answer with its price, checks, cautions and all that a report draws."""
+    aligned = laid.aligned
     price = price_of(bills.periods, stated=plan.price, delivered=bills.kind == "delivery")
     rows = period_rows(bills, laid, found)
     unavailable = ""
@@ -139,10 +161,6 @@ def assess_account(
         without=close.without,
         placebo=close.placebo,
         breaks=changed,
-        drivers=with_and_without(laid.chosen, found, ask) if laid.chosen and closely else None,
-        **(
-            _read_closely(site, plan, bills, aligned, found, savings, confidence) if closely else {}
-        ),
     )
 
 
